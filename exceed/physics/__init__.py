@@ -1,0 +1,1 @@
+"""Pure functions of numpy arrays in SI: the physics behind every derived quantity, each with its source."""

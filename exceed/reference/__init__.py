@@ -1,0 +1,1 @@
+"""Published check values as CSV, and the one routine that compares our functions with them."""
