@@ -1,0 +1,1 @@
+"""Options become a call, findings an exit code."""

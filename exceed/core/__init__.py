@@ -1,0 +1,1 @@
+"""What everybody may import and what imports nobody."""

@@ -1,0 +1,1 @@
+"""A Recording becomes a Trace: every derived quantity, with its method."""

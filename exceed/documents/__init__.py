@@ -1,0 +1,1 @@
+"""What the user writes: YAML files, read with line and column."""

@@ -1,0 +1,1 @@
+"""A Trace and rules become Findings."""

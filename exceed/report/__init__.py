@@ -1,0 +1,1 @@
+"""Findings become words, tables and pages; nothing here computes."""
