@@ -1,8 +1,8 @@
 """Trace: a recording with every way to have its derived quantities, evaluated on demand, block by block.
 
 A trace holds no derived samples. It holds *steps* (one chosen method a quantity) and works them out on the stretch
-that is asked for, with as much neighbourhood as the steps reach. So a log of any length is judged in cache-sized blocks,
-a page can draw one stretch later, and both see the same numbers.
+that is asked for, with as much neighbourhood as the steps reach. So a log of any length is judged in cache-sized
+blocks, a page can draw one stretch later, and both see the same numbers.
 """
 
 from __future__ import annotations
@@ -32,6 +32,8 @@ class Step:
     facts : parameter name -> aircraft fact, bound. reach : s on either side that the function looks at; 0 means sample
     by sample. uncertainty : the method's own standard uncertainty in SI, besides what its inputs bring. one_sided : the
     value is a bound by construction, so it can never clear a limit (a level turn's 1/cos Φ). cap : highest certainty.
+    main : the inputs whose samples are the method's own; the others only correct them and are interpolated onto these
+    (none named: all).
     """
 
     quantity: str
@@ -46,6 +48,7 @@ class Step:
     cap: str | None = None
     constant: float | None = None
     source: str = ""
+    main: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -95,14 +98,23 @@ class Trace:
             todo.extend(self.steps[name].inputs.values())
         return found
 
-    def leaves(self, names: Iterable[str]) -> set[str]:
-        """Names of the channels that these rest on."""
-        found = set()
-        for name in self.closure(names):
+    def leaves(self, names: Iterable[str], main_only: bool = False) -> set[str]:
+        """Names of the channels that these rest on; `main_only` leaves out those that only correct."""
+        found: set[str] = set()
+        seen: set[str] = set()
+        todo = list(names)
+        while todo:
+            name = todo.pop()
+            if name == TIME or name in seen:
+                continue
+            seen.add(name)
+            if name.startswith("recorded:"):
+                found.add(name.removeprefix("recorded:"))
+                continue
             step = self.steps[name]
             if step.function is None and step.constant is None:
                 found.add(name)
-            found.update(value.removeprefix("recorded:") for value in step.inputs.values() if value[:9] == "recorded:")
+            todo.extend(step.main if main_only and step.main else step.inputs.values())
         return found
 
     def reach(self, name: str) -> float:
@@ -114,7 +126,7 @@ class Trace:
 
     def grid(self, names: Iterable[str]) -> Grid:
         """The instants of the fastest channel that these quantities use (of equally fast ones the first by name)."""
-        leaves = self.leaves(names)
+        leaves = self.leaves(names, main_only=True)
         if not leaves:
             return self._grid_of("")
 
