@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from types import MappingProxyType
 
 from exceed.core.recording import Rejected
 
@@ -92,7 +91,7 @@ class Event:
     levels: tuple[Level, ...]
     rows: tuple[int, int]
     row: int
-    context: Mapping[str, float] = field(default_factory=lambda: MappingProxyType({}))
+    context: Mapping[str, float] = field(default_factory=dict)
     cut_by: str | None = None
     task: Task | None = None
     notes: tuple[str, ...] = ()
