@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 from scenario.air import G0, KT
 
@@ -58,7 +59,7 @@ def interpolate(x: float, table: tuple[tuple[float, float], ...]) -> float:
     """Linear between rows, held beyond the ends."""
     if x <= table[0][0]:
         return table[0][1]
-    for (x0, y0), (x1, y1) in zip(table, table[1:], strict=False):
+    for (x0, y0), (x1, y1) in pairwise(table):
         if x <= x1:
             return y0 + (y1 - y0) * (x - x0) / (x1 - x0)
     return table[-1][1]

@@ -7,7 +7,14 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from scenario.air import (
-    DENSITY_0, G0, GAS_CONSTANT, Array, calibrated_airspeed, indicated_airspeed, mach_number, standard_pressure,
+    DENSITY_0,
+    G0,
+    GAS_CONSTANT,
+    Array,
+    calibrated_airspeed,
+    indicated_airspeed,
+    mach_number,
+    standard_pressure,
 )  # fmt: skip
 from scenario.airframes import Airframe
 
@@ -95,6 +102,7 @@ def channels_from_rows(airframe: Airframe, rows: list[tuple[float, ...]], sim: S
         "track_angle": np.mod(np.where(np.hypot(v_n, v_e) > 0.3, np.arctan2(v_e, v_n), heading), 2 * np.pi),
         "static_pressure": static_pressure,
         "static_air_temperature": temperature,
+        "outside_air_temperature": temperature,
         "total_air_temperature": temperature * (1.0 + 0.2 * mach**2),
         "load_factor": load_factor,
         "longitudinal_load_factor": longitudinal_body,

@@ -119,7 +119,9 @@ def take_off(flaps_deg: float = 0.0) -> Manoeuvre:
     return run
 
 
-def climb(to_ft: float, kcas: float, rate_ft_min: float, mach: float | None = None, clean_at_ft: float = 500.0) -> Manoeuvre:
+def climb(
+    to_ft: float, kcas: float, rate_ft_min: float, mach: float | None = None, clean_at_ft: float = 500.0
+) -> Manoeuvre:
     """Climb on the present heading; gear and flaps come up a certain height above the aerodrome."""
 
     def run(sim: Sim) -> Iterator[Command]:
@@ -148,7 +150,9 @@ def level(seconds: float, kcas: float, alt_ft: float, mach: float | None = None,
     return run
 
 
-def rough_air(seconds: float, kcas: float, alt_ft: float, rms: float, gusts: list[tuple[float, float, float]]) -> Manoeuvre:
+def rough_air(
+    seconds: float, kcas: float, alt_ft: float, rms: float, gusts: list[tuple[float, float, float]]
+) -> Manoeuvre:
     """Level flight in turbulence of an rms vertical speed in m/s, with 1-cosine gusts (after s, lasting s, m/s up)."""
 
     def run(sim: Sim) -> Iterator[Command]:
@@ -283,7 +287,11 @@ def recover(alt_ft: float, kcas: float, seconds: float = 20.0) -> Manoeuvre:
     return level(seconds, kcas, alt_ft)
 
 
-def descend(to_ft: float, kcas: float, rate_ft_min: float, mach: float | None = None, airbrakes: bool = False) -> Manoeuvre:
+def descend(
+    to_ft: float, kcas: float, rate_ft_min: float, mach: float | None = None, airbrakes: bool = False
+) -> Manoeuvre:
+    """Descend on the present heading."""
+
     def run(sim: Sim) -> Iterator[Command]:
         sim.label, sim.airbrakes_wanted = "descent", airbrakes
         while sim.pressure_altitude > to_ft * FT + 15.0:
@@ -307,7 +315,9 @@ def configure(flaps_deg: float | None = None, gear_down: bool | None = None) -> 
     return run
 
 
-def approach(kcas: float, flaps: list[tuple[float, float]], down_to_ft: float = 40.0, angle_deg: float = 3.0) -> Manoeuvre:
+def approach(
+    kcas: float, flaps: list[tuple[float, float]], down_to_ft: float = 40.0, angle_deg: float = 3.0
+) -> Manoeuvre:
     """Final approach along a glide path; flaps: (height in ft, setting in deg), highest first."""
 
     def run(sim: Sim) -> Iterator[Command]:
@@ -336,7 +346,8 @@ def landing(sink_ft_min: float, impact_s: float = 0.18) -> Manoeuvre:
             rise = final + (start_rise - final) * max(0.0, (share - 0.25) / 0.75)
             yield _steady(sim, rise, 0.0, kcas - 4.0, quick=2.0)
         sim.touch_down()
-        start, pitch = sim.time, max(0.02, sim.airframe.incidence(1.0, sim.equivalent_airspeed, sim.mass, sim.flaps_deg))
+        incidence = sim.airframe.incidence(1.0, sim.equivalent_airspeed, sim.mass, sim.flaps_deg)
+        start, pitch = sim.time, max(0.02, incidence)
         while sim.speed > 10.0 * KT:
             inside = sim.time - start
             nose = 0.02 + (pitch - 0.02) * max(0.0, 1.0 - inside / 2.5)

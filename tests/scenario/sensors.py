@@ -1,4 +1,4 @@
-"""Recording imperfections: sampling, position, bias, noise, steps, range, dropouts, spikes. The truth stays as it is."""
+"""How recording departs from the truth: sampling, place, bias, noise, steps, range, dropouts, spikes."""
 
 from __future__ import annotations
 
@@ -48,7 +48,9 @@ ANGLES_ROUND = ("heading", "track_angle", "wind_direction")
 STATES = ("gear_down", "airbrakes_out", "weight_on_wheels", "stall_warning")
 
 
-def sample(flight: Flight, name: str, sensor: Sensor, seed: int, start: float = 0.0, end: float | None = None) -> tuple[Array, Array]:
+def sample(
+    flight: Flight, name: str, sensor: Sensor, seed: int, start: float = 0.0, end: float | None = None
+) -> tuple[Array, Array]:
     """Sample a channel of a flight.
 
     Parameters: name of a truth channel; start, end: the recorder's first and last time in s of the flight.
@@ -87,7 +89,7 @@ def _blanked(time: Array, values: Array, sensor: Sensor) -> Array:
 
 
 def beyond(time: Array, values: Array, limit: float, *, above: bool = True) -> list[tuple[float, float, float, float]]:
-    """Stretches beyond a limit: (start, end, peak, time of the peak), by linear crossings. The truth's own yardstick."""
+    """Stretches beyond a limit as (start, end, peak, time of the peak), by linear crossings: the truth's yardstick."""
     sign = 1.0 if above else -1.0
     over = sign * (values - limit) > 0.0
     edges = np.flatnonzero(np.diff(over.astype(int)))

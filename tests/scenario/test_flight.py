@@ -6,6 +6,7 @@ from functools import lru_cache
 
 import numpy as np
 import pytest
+
 from scenario import manoeuvres as do
 from scenario.air import DEG, FT, G0, KT, standard_pressure, standard_temperature
 from scenario.airframes import LARKSPUR
@@ -67,9 +68,10 @@ def test_specific_force_and_gravity_give_the_acceleration() -> None:
     forward, up = flight["longitudinal_load_factor"] * G0, -flight["load_factor"] * G0
     # third and first row of the body-to-horizon rotation (ISO 1151-2 angles)
     down = -np.sin(theta) * forward + np.cos(phi) * np.cos(theta) * up + G0
-    north = np.cos(theta) * np.cos(psi) * forward + (
-        np.cos(phi) * np.sin(theta) * np.cos(psi) + np.sin(phi) * np.sin(psi)
-    ) * up
+    north = (
+        np.cos(theta) * np.cos(psi) * forward
+        + (np.cos(phi) * np.sin(theta) * np.cos(psi) + np.sin(phi) * np.sin(psi)) * up
+    )
     inside = airborne(flight)
     for edge in np.flatnonzero(np.diff(inside.astype(int))):
         inside[max(edge - 60, 0) : edge + 60] = False
