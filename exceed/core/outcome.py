@@ -8,11 +8,14 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from exceed.core.findings import Findings
-from exceed.core.phases import Flight
 from exceed.core.recording import Array, Unresolved
 from exceed.errors import Problem
+
+if TYPE_CHECKING:
+    from exceed.core.phases import Flight
 
 STATUSES: tuple[str, ...] = ("ok", "partial", "failed")
 LIMITS: tuple[str, ...] = ("own", "assumed", "none")
@@ -263,4 +266,3 @@ class DayOutcome:
     time_zone: str | None = None
     replaces: str | None = None
     notes: tuple[str, ...] = ()
-
