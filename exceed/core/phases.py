@@ -5,7 +5,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -80,7 +80,7 @@ class FlightTrack:
     known: bool
     method: str
     notes: tuple[str, ...] = ()
-    standing: Intervals = EMPTY
+    standing: Intervals = field(default_factory=lambda: EMPTY)
 
     def number_at(self, time: float) -> int | None:
         for flight in self.flights:
