@@ -1,0 +1,212 @@
+"""Phases of flight on the coarse cells, in the words of the CAST/ICAO taxonomy; unknown where it cannot be told.
+
+35 ft (end of take-off) and 1000 ft (end of initial climb, begin of approach) are the taxonomy's own figures
+[CICTT-PHASE]; the rates and durations that part climb, cruise, descent and manoeuvring are common practice, no source.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from exceed.core.constants import FOOT
+from exceed.core.intervals import Intervals, joined, lasting, normal
+from exceed.core.phases import PHASE_CODE, PhaseTrack
+from exceed.core.recording import Array
+from exceed.derive.coarse import Coarse
+from exceed.derive.evidence import Signals
+from exceed.derive.flights import Found
+
+# channels that tell manoeuvring and taxiing, besides the evidence of flights
+EVIDENCE = ("bank_angle", "pitch_angle", "load_factor", "heading", "vertical_speed")
+
+SCREEN = 35.0 * FOOT
+CIRCUIT = 1000.0 * FOOT
+FLARE = 30.0 * FOOT
+CLIMBING = 1.5  # m/s (300 ft/min) begins a climb or descent
+LEVELLED = 0.75  # m/s ends it
+LEAST_LEG = 15.0  # s: a shorter climb, cruise or descent joins its neighbour
+STEEP_BANK = np.radians(55.0)
+STEEP_PITCH = np.radians(30.0)
+PULLED, PUSHED = 1.8, 0.4  # mean load factor of a second
+MANOEUVRE_LEAST, MANOEUVRE_JOIN, MANOEUVRE_PAD = 1.5, 30.0, 5.0  # s
+MOVING = 1.0  # m/s over the ground
+ROLLING_FAST = 15.0  # m/s: the landing roll ends, the take-off run begins
+
+Mask = NDArray[np.bool_]
+
+
+def phases_of(coarse: Coarse, signals: Signals, found: Found) -> tuple[PhaseTrack, Intervals, tuple[str, ...]]:
+    """Phase at every cell, the time of standing still, and what could not be told."""
+    count = len(coarse)
+    codes = np.zeros(count, dtype=np.int8)
+    if count == 0:
+        return PhaseTrack(np.empty(0), codes), normal([], []), ()
+    notes: list[str] = []
+    standing = _on_ground(coarse, signals, found, codes)
+    climb = signals.climb
+    if climb is None and coarse.has("vertical_speed"):
+        climb = coarse.pick("vertical_speed")
+    if climb is None and found.flights:
+        notes.append("no height and no vertical speed: phases of the flight cannot be told")
+    manoeuvring, told = _manoeuvring(coarse)
+    if not told:
+        notes.append("no bank, pitch or load factor: manoeuvring cannot be told")
+    for flight in found.flights:
+        inside = (coarse.time >= flight.start) & (coarse.time < flight.end)
+        if climb is not None:
+            _legs(coarse, climb, inside, codes)
+        _ends(coarse, signals, flight.start, flight.end, flight.take_off_seen, flight.landing_seen, inside, codes)
+        low = np.isin(codes, [PHASE_CODE["take-off"], PHASE_CODE["landing"]])
+        codes[inside & manoeuvring & ~low] = PHASE_CODE["manoeuvring"]
+        for when in flight.touchdowns:
+            touching = (coarse.time >= when - 2.0) & (coarse.time < min(when + 8.0, flight.end))
+            codes[touching] = PHASE_CODE["landing"]
+    _rolls(coarse, signals, found, codes)
+    if not found.known:
+        codes[manoeuvring] = PHASE_CODE["manoeuvring"]
+    change = np.concatenate([[0], np.flatnonzero(codes[1:] != codes[:-1]) + 1])
+    return PhaseTrack(coarse.time[change], codes[change]), standing, tuple(notes)
+
+
+def _on_ground(coarse: Coarse, signals: Signals, found: Found, codes: NDArray[np.int8]) -> Intervals:
+    """Marks standing and taxi; returns the stretches of standing still."""
+    ground = found.ground.contains(coarse.time)
+    still: Mask | None = None
+    moving = np.zeros(len(coarse), dtype=bool)
+    if signals.rolling is not None:
+        known = np.isfinite(signals.rolling)
+        still = known & (signals.rolling < MOVING)
+        moving = known & (signals.rolling >= MOVING)
+    elif signals.speed is not None:
+        # an airspeed indicator says nothing below its first mark, but a reading above it is movement
+        known = np.isfinite(signals.speed)
+        moving = known & (signals.speed > 8.0)
+        if coarse.has("heading"):
+            heading = coarse.pick("heading")
+            turned = coarse.spread(np.unwrap(np.nan_to_num(heading)), 5.0)
+            moving |= turned > np.radians(2.0)
+            still = known & ~moving
+    codes[ground & moving] = PHASE_CODE["taxi"]
+    if still is None:
+        return normal([], [])
+    runs = lasting(_stretches(coarse, ground & still), 5.0)
+    stopped = runs.contains(coarse.time)
+    codes[ground & stopped] = PHASE_CODE["standing"]
+    codes[ground & still & ~stopped] = PHASE_CODE["taxi"]
+    return runs
+
+
+def _stretches(coarse: Coarse, mask: Mask) -> Intervals:
+    """Cells -> stretches of time; each cell lasts to the next one."""
+    step = coarse.step
+    return normal(coarse.time[mask], (coarse.time + step)[mask])
+
+
+def _manoeuvring(coarse: Coarse) -> tuple[Mask, bool]:
+    """Aerobatic or steep flying: bank, pitch, or a second's mean load factor beyond what transport takes."""
+    marks = np.zeros(len(coarse), dtype=bool)
+    told = False
+    with np.errstate(invalid="ignore"):
+        if coarse.has("bank_angle"):
+            bank = (coarse.pick("bank_angle") + np.pi) % (2.0 * np.pi) - np.pi
+            marks |= np.abs(bank) > STEEP_BANK
+            told = True
+        if coarse.has("pitch_angle"):
+            marks |= np.abs(coarse.pick("pitch_angle")) > STEEP_PITCH
+            told = True
+        if "load_factor" in coarse.recording.channels:
+            mean = coarse.statistics("load_factor").mean
+            told |= bool(np.isfinite(mean).any())
+            marks |= (mean > PULLED) | (mean < PUSHED)
+    found = lasting(joined(_stretches(coarse, marks), 3.0), MANOEUVRE_LEAST)
+    padded = normal(found.start - MANOEUVRE_PAD, found.end + MANOEUVRE_PAD)
+    return joined(padded, MANOEUVRE_JOIN).contains(coarse.time), told
+
+
+def _legs(coarse: Coarse, climb: Array, inside: Mask, codes: NDArray[np.int8]) -> None:
+    """Climb, cruise and descent with hysteresis; legs that last too short join the one before."""
+    place = np.flatnonzero(inside & np.isfinite(climb))
+    if len(place) == 0:
+        return
+    rate = climb[place]
+    up, level, down = (PHASE_CODE[name] for name in ("climb", "cruise", "descent"))
+    # hysteresis without a loop: a decided cell holds until another one decides
+    decided = np.select([rate > CLIMBING, rate < -CLIMBING, np.abs(rate) < LEVELLED], [up, down, level], default=-1)
+    decided = decided.astype(np.int8)
+    last = np.maximum.accumulate(np.where(decided >= 0, np.arange(len(place)), -1))
+    state = np.where(last >= 0, decided[np.maximum(last, 0)], level).astype(np.int8)
+    edges = np.concatenate([[0], np.flatnonzero(np.diff(state)) + 1, [len(state)]])
+    time = coarse.time[place]
+    legs: list[list[int]] = []  # first, last, code
+    for first, stop in zip(edges[:-1].tolist(), edges[1:].tolist(), strict=True):
+        lasted = float(time[min(stop, len(time) - 1)] - time[first])
+        if legs and (lasted < LEAST_LEG or legs[-1][2] == int(state[first])):
+            legs[-1][1] = stop
+        else:
+            legs.append([first, stop, int(state[first])])
+    for first, stop, code in legs:
+        codes[place[first:stop]] = code
+
+
+def _ends(
+    coarse: Coarse,
+    signals: Signals,
+    start: float,
+    end: float,
+    take_off_seen: bool,
+    landing_seen: bool,
+    inside: Mask,
+    codes: NDArray[np.int8],
+) -> None:
+    """Take-off, initial climb, approach and landing, from height above the field at either end."""
+    time, height = coarse.time, signals.height
+    take_off, initial = PHASE_CODE["take-off"], PHASE_CODE["initial climb"]
+    approach, landing = PHASE_CODE["approach"], PHASE_CODE["landing"]
+    if height is None:
+        codes[inside & take_off_seen & (time < start + 5.0)] = take_off
+        codes[inside & landing_seen & (time >= end - 5.0)] = landing
+        return
+    if take_off_seen:
+        above = height - _level(coarse, height, start)
+        codes[inside & _until(time, above > SCREEN, start, 30.0)] = take_off
+        climbing = inside & (time >= start) & (codes != take_off)
+        # it ends at 1000 ft, or where the climb does: the first cruise or descent in the circuit
+        levelled = (codes == PHASE_CODE["cruise"]) | (codes == PHASE_CODE["descent"])
+        ends = (above > CIRCUIT) | (levelled & (above > SCREEN) & (time > start + 20.0))
+        codes[climbing & _until(time, ends, start, 600.0)] = initial
+    if landing_seen:
+        above = height - _level(coarse, height, end)
+        backwards = -time[::-1]
+        low = _until(backwards, (above > CIRCUIT)[::-1], -end, 1800.0)[::-1] & inside
+        low &= ~np.isin(codes, [take_off, initial])
+        codes[low] = approach
+        codes[inside & _until(backwards, (above > FLARE)[::-1], -end, 60.0)[::-1]] = landing
+
+
+def _until(time: Array, stop: Mask, start: float, longest: float) -> Mask:
+    """Cells from `start` on up to the first where `stop` holds, `longest` s at most."""
+    after = np.flatnonzero(stop & (time >= start))
+    end = float(time[after[0]]) if len(after) else np.inf
+    return (time >= start) & (time < min(end, start + longest))
+
+
+def _level(coarse: Coarse, height: Array, when: float) -> float:
+    near = height[np.abs(coarse.time - when) <= 4.0]
+    near = near[np.isfinite(near)]
+    return float(np.median(near)) if len(near) else np.nan
+
+
+def _rolls(coarse: Coarse, signals: Signals, found: Found, codes: NDArray[np.int8]) -> None:
+    """The take-off run before lift-off and the landing roll after touchdown, while the wheels run fast."""
+    speed = signals.rolling if signals.rolling is not None else signals.speed
+    if speed is None:
+        return
+    time = coarse.time
+    for flight in found.flights:
+        if flight.take_off_seen:
+            slow = (speed < ROLLING_FAST / 3.0)[::-1]
+            run = _until(-time[::-1], slow, -flight.start, 60.0)[::-1] & (time < flight.start)
+            codes[run] = PHASE_CODE["take-off"]
+        if flight.landing_seen:
+            codes[_until(time, speed < ROLLING_FAST, flight.end, 60.0)] = PHASE_CODE["landing"]
