@@ -1,0 +1,295 @@
+"""Simulated truth for the certainty of peaks: signals at 200 Hz, recorders that see them slowly and with errors.
+
+Everything here is invented and seeded. Two sets of families that share no shape: FIT, on which the factors in
+`exceed/judge/peaks.py` were fitted, and CHECK, which the tests use and the fit never saw.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from exceed.judge import peaks
+from exceed.judge.peaks import Peak, size_peak
+
+FINE = 200.0  # Hz, rate of the truth
+
+
+@dataclass(frozen=True, eq=False)
+class Case:
+    """One recorded excursion and its truth.
+
+    `true_peak` is the truth's extreme within one interval of the recorded one, `true_event` its extreme over the whole
+    excursion above half height. `bias` was drawn from `standard_uncertainty`, which does not hold the white `noise`.
+    """
+
+    family: str
+    rate: float
+    side: int
+    time: np.ndarray
+    values: np.ndarray
+    index: int
+    standard_uncertainty: float
+    noise: float
+    resolution: float
+    bias: float
+    true_peak: float
+    true_event: float
+    above_half: int
+
+
+# --- shapes: (t in s about the middle, generator) -> increment whose extreme is about 1 ------------------------------
+
+
+def _smooth(x: np.ndarray, width: float) -> np.ndarray:
+    """Moving average twice over `width` seconds: rounds corners as an aeroplane's inertia does."""
+    n = max(1, round(width * FINE))
+    kernel = np.ones(n) / n
+    return np.convolve(np.convolve(x, kernel, "same"), kernel, "same")
+
+
+def raised_cosine(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    return np.where(np.abs(t) < d / 2, 0.5 + 0.5 * np.cos(2 * np.pi * t / d), 0.0)
+
+
+def half_sine(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    return np.where(np.abs(t) < d / 2, np.cos(np.pi * t / d), 0.0)
+
+
+def trapezoid(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    ramp = d * rng.uniform(0.2, 0.4)
+    return _smooth(np.clip((d / 2 - np.abs(t)) / ramp, 0.0, 1.0), ramp * rng.uniform(0.3, 0.8))
+
+
+def double_hump(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    gap, second, width = d * rng.uniform(0.45, 0.65), rng.uniform(0.7, 1.05), d * rng.uniform(0.16, 0.24)
+    one = np.exp(-0.5 * ((t + gap / 2) / width) ** 2)
+    return one + second * np.exp(-0.5 * ((t - gap / 2) / width) ** 2)
+
+
+def ramp_in(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    """Quick pull, slow release: product of two logistic steps."""
+    rise, fall = d * rng.uniform(0.04, 0.09), d * rng.uniform(0.12, 0.25)
+    if rng.random() < 0.5:
+        rise, fall = fall, rise
+    up = 1 / (1 + np.exp(-np.clip((t + d / 4) / rise, -50, 50)))
+    down = 1 / (1 + np.exp(np.clip((t - d / 4) / fall, -50, 50)))
+    return up * down / max(float((up * down).max()), 1e-9)
+
+
+def bell(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    return np.exp(-0.5 * (t / (d / 5)) ** 2)
+
+
+def pull_with_ripple(t: np.ndarray, d: float, rng: np.random.Generator) -> np.ndarray:
+    """A pilot's corrections on a pull: bell-shaped, with a ripple of a third to a sixth of its length."""
+    ripple = rng.uniform(0.02, 0.1) * np.cos(2 * np.pi * t / (d * rng.uniform(1 / 6, 1 / 3)) + rng.uniform(0, 6.28))
+    return bell(t, d, rng) * (1 + ripple)
+
+
+# --- noise-like air ---------------------------------------------------------------------------------------------------
+
+
+def _coloured(n: int, shape: Callable[[np.ndarray], np.ndarray], rng: np.random.Generator) -> np.ndarray:
+    """Gaussian noise of unit variance whose power spectrum has the given shape over frequency (Hz)."""
+    m = 4 * n
+    f = np.fft.rfftfreq(m, 1 / FINE)
+    power = shape(f)
+    power[0] = 0.0
+    spectrum = np.sqrt(power) * (rng.normal(size=f.size) + 1j * rng.normal(size=f.size))
+    x = np.fft.irfft(spectrum, m)
+    return np.asarray((x / x.std())[:n])
+
+
+def dryden(n: int, rng: np.random.Generator) -> np.ndarray:
+    """Vertical Dryden spectrum through the lag of lift (Sears, |.|^2 = 1/(1 + 2 pi k)) and a heave high-pass."""
+    scale, speed, chord = 10 ** rng.uniform(1.7, 2.7), rng.uniform(40, 90), rng.uniform(1.0, 2.0)
+
+    def shape(f: np.ndarray) -> np.ndarray:
+        w = 2 * np.pi * f
+        x = (scale * w / speed) ** 2
+        gust = (1 + 3 * x) / (1 + x) ** 2
+        return gust / (1 + np.pi * w * chord / speed) * (w**2 / (w**2 + 1.0)) / (1 + (w / (2 * np.pi * 15)) ** 4)
+
+    return _coloured(n, shape, rng)
+
+
+def von_karman(n: int, rng: np.random.Generator) -> np.ndarray:
+    """Vertical von Karman spectrum through a second-order response of the aeroplane (short period 0.5-1.5 Hz)."""
+    scale, speed, short = 10 ** rng.uniform(1.7, 2.9), rng.uniform(40, 120), rng.uniform(0.5, 1.5)
+
+    def shape(f: np.ndarray) -> np.ndarray:
+        w = 2 * np.pi * f
+        x = (1.339 * scale * w / speed) ** 2
+        gust = (1 + 8 / 3 * x) / (1 + x) ** (11 / 6)
+        r = f / short
+        return gust * r**2 / ((1 - r**2) ** 2 + (1.2 * r) ** 2) / (1 + (f / 8) ** 2)
+
+    return _coloured(n, shape, rng)
+
+
+def band_noise(n: int, rng: np.random.Generator) -> np.ndarray:
+    """Buffet- or wake-like: a band of frequencies between 0.3 and 3 Hz."""
+    f0, width = rng.uniform(0.3, 2.0), rng.uniform(0.2, 1.0)
+    return _coloured(n, lambda f: np.exp(-0.5 * ((f - f0) / width) ** 2), rng)
+
+
+def one_minus_cosine(t: np.ndarray, rng: np.random.Generator) -> np.ndarray:
+    """Discrete 1-cosine gusts (14 CFR 25.341: gradient distance 30-350 ft) through a first-order lag of lift."""
+    speed, out = rng.uniform(45, 120), np.zeros_like(t)
+    for _ in range(rng.integers(1, 4)):
+        gradient, start = rng.uniform(9.1, 106.7), rng.uniform(-0.5, 0.5)
+        d = 2 * gradient / speed
+        s = t - start
+        out += rng.uniform(0.3, 1.0) * rng.choice([-1, 1]) * raised_cosine(s, d, rng)
+    lag = np.exp(-np.arange(0, 0.6, 1 / FINE) / rng.uniform(0.03, 0.12))
+    return np.convolve(out, lag / lag.sum())[: t.size]
+
+
+MANOEUVRES: dict[str, Callable[..., np.ndarray]] = {
+    "raised cosine": raised_cosine, "half sine": half_sine, "trapezoid": trapezoid,
+    "double hump": double_hump, "ramp in": ramp_in, "bell": bell, "ripple": pull_with_ripple,
+}  # fmt: skip
+FIT = ("raised cosine", "trapezoid", "ripple", "dryden", "gust on pull")
+CHECK = ("half sine", "double hump", "ramp in", "bell", "von karman", "one-cosine", "band noise")
+GUSTS = ("dryden", "gust on pull", "von karman", "one-cosine", "band noise")
+
+
+def truth(family: str, t: np.ndarray, rng: np.random.Generator) -> tuple[np.ndarray, int]:
+    """True load factor on the fine axis `t` (s, about 0) and the side of its excursion near t = 0."""
+    side = 1 if rng.random() < 0.7 else -1
+    size = rng.uniform(0.8, 5.0) if side > 0 else rng.uniform(0.8, 3.5)
+    drift = 1.0 + 0.03 * np.sin(2 * np.pi * t / rng.uniform(8, 30) + rng.uniform(0, 6.28))
+    if family in MANOEUVRES:
+        duration = float(np.exp(rng.uniform(np.log(0.3), np.log(6.0))))
+        return drift + side * size * MANOEUVRES[family](t, duration, rng), side
+    if family in ("dryden", "von karman", "band noise"):
+        air = {"dryden": dryden, "von karman": von_karman, "band noise": band_noise}[family](t.size, rng)
+        return drift + rng.uniform(0.05, 0.4) * air, side
+    if family == "gust on pull":
+        pull = side * size * bell(t, float(rng.uniform(2, 6)), rng)
+        return drift + pull + rng.uniform(0.02, 0.15) * dryden(t.size, rng), side
+    if family == "one-cosine":
+        base = rng.uniform(0, 1.5) * np.sin(2 * np.pi * t / rng.uniform(4, 15) + rng.uniform(0, 6.28))
+        air = rng.uniform(0.4, 2.0) * one_minus_cosine(t, rng) + 0.03 * von_karman(t.size, rng)
+        return drift + base + air, side
+    raise ValueError(family)
+
+
+def record(
+    family: str, rate: float, seed: int, *, noise: float | None = None, resolution: float | None = None,
+    accuracy: float | None = None, least: float = 0.25,
+) -> Case:  # fmt: skip
+    """One excursion of a family as a recorder of the given rate (Hz) sees it; None draws the sensor's errors.
+
+    Excursions that the recorder shows with less than `least` (g above or below level flight) are drawn anew: a pull
+    that fell wholly between two samples is no recorded extreme, and what could be said of it is `shortest_sized`.
+    """
+    for attempt in range(1000):
+        rng = np.random.default_rng([seed, attempt, int(rate * 100), sum(family.encode())])
+        case = _record(family, rate, rng, noise, resolution, accuracy)
+        if case.side * (case.values[case.index] - 1.0) >= least:
+            return case
+    raise ValueError(f"{family} at {rate} Hz is never seen")
+
+
+def _record(
+    family: str, rate: float, rng: np.random.Generator, noise: float | None, resolution: float | None,
+    accuracy: float | None,
+) -> Case:  # fmt: skip
+    interval = 1.0 / rate
+    half = 12 * interval + 4.0
+    t = np.arange(-half, half, 1 / FINE)
+    x, side = truth(family, t, rng)
+    draws = rng.choice([0.0, 0.005, 0.01, 0.02]), rng.choice([0.004, 0.01, 0.03]), rng.choice([0.005, 0.02, 0.05, 0.1])
+    noise = float(draws[0]) if noise is None else noise
+    resolution = float(draws[1]) if resolution is None else resolution
+    accuracy = float(draws[2]) if accuracy is None else accuracy
+    uncertainty = accuracy / 1.96
+    bias = float(rng.normal() * uncertainty)
+    nominal = np.arange(-half + interval * (1 + rng.random()), half - interval, interval)
+    time = nominal + rng.normal(size=nominal.size) * 0.01 * interval
+    seen = np.interp(time, t, x) + bias + noise * rng.normal(size=time.size)
+    seen = np.round(seen / resolution) * resolution if resolution else seen
+    # the excursion: the largest sample near the middle, and the samples about it above half its height
+    near = np.flatnonzero(np.abs(nominal) < 3.5 if family not in GUSTS else np.abs(nominal) < max(2.0, 2 * interval))
+    v = side * seen
+    index = int(near[np.argmax(v[near])])
+    height = v[index] - side * 1.0
+    above = v > side * 1.0 + 0.5 * height
+    first = last = index
+    while first > 0 and above[first - 1]:
+        first -= 1
+    while last < v.size - 1 and above[last + 1]:
+        last += 1
+    index = first + int(np.argmax(v[first : last + 1]))  # an excursion may run out of the middle
+    fine = side * x
+    local = fine[np.abs(t - nominal[index]) <= interval].max()
+    event = fine[(t >= nominal[first] - interval) & (t <= nominal[last] + interval)].max()
+    a, b = max(0, index - 9), min(v.size, index + 10)
+    return Case(
+        family, rate, side, nominal[a:b], seen[a:b], index - a, uncertainty, noise, resolution, bias,
+        side * float(local), side * float(event), last - first + 1,
+    )  # fmt: skip
+
+
+def size(case: Case, *, noise_known: bool = True) -> Peak:
+    """The peak as a caller sizes it: the noise measured, or within the accuracy that the aircraft file states."""
+    uncertainty = case.standard_uncertainty if noise_known else float(np.hypot(case.standard_uncertainty, case.noise))
+    return size_peak(
+        case.time, case.values, case.side, case.index, standard_uncertainty=uncertainty, interval=1.0 / case.rate,
+        resolution=case.resolution, noise=case.noise if noise_known else None,
+    )  # fmt: skip
+
+
+# --- the fit ----------------------------------------------------------------------------------------------------------
+
+FIT_SEEDS, CHECK_SEEDS = 10_000, 500_000
+
+
+def quantile_regression(features: np.ndarray, target: np.ndarray, tau: float) -> np.ndarray:
+    """Coefficients, none negative, of the tau-quantile of `target` (Koenker and Bassett 1978, as a linear program)."""
+    from scipy import sparse
+    from scipy.optimize import linprog
+
+    n, k = features.shape
+    cost = np.r_[np.full(k, 1e-6), np.full(n, tau), np.full(n, 1 - tau)]
+    equal = sparse.hstack([sparse.csr_matrix(features), sparse.eye(n), -sparse.eye(n)]).tocsc()
+    return np.asarray(linprog(cost, A_eq=equal, b_eq=target, bounds=[(0, None)] * (k + 2 * n), method="highs").x[:k])
+
+
+def fit_factors(cases: int = 400, rates: tuple[float, ...] = (8.0, 4.0, 2.0, 1.0)) -> dict[str, np.ndarray]:
+    """The factors of `exceed/judge/peaks.py` from the FIT families. The ends are fitted a little outside 95 %
+    (98.5 % upward, 98 % downward), since other shapes than those fitted must be covered as well."""
+    up, down, above, below = [], [], [], []
+    for family in FIT:
+        for rate in rates:
+            for k in range(cases):
+                c = record(family, rate, FIT_SEEDS + k)
+                u, v = (c.time - c.time[c.index]) * rate, c.side * c.values
+                place = c.index
+                a, b = max(0, place - peaks.HALO), min(v.size, place + peaks.HALO + 1)
+                u, v, place = u[a:b], v[a:b], place - a
+                step = c.resolution / 12**0.5
+                known = float(np.hypot(c.noise, step)) if k % 2 else None
+                s = peaks._spread(u, v, place, step, known, float(np.hypot(c.standard_uncertainty, c.noise)))
+                error, ratio = peaks._ratio(u, v, place, s.noise)
+                if 1.0 / rate > peaks.SLOW and ratio > peaks.ALIASED:
+                    continue
+                x, y = peaks._features(float(v[place]), s, error, ratio, 1.0 / rate)
+                size_of = max(x[0] + error + s.noise, 1e-9)
+                # the sensor's common error is added afterwards, so the truth is moved by it here
+                true = c.side * (c.true_peak + c.bias)
+                up.append(np.array(x) / size_of)
+                down.append(np.array(y) / size_of)
+                above.append((true - s.middle) / size_of)
+                below.append((s.middle - true) / size_of)
+    up_a, down_a, above_a, below_a = np.array(up), np.array(down), np.array(above), np.array(below)
+    return {
+        "_UP_1": quantile_regression(up_a, above_a, 0.84),
+        "_UP_95": quantile_regression(up_a, above_a, 0.985),
+        "_DOWN_1": quantile_regression(down_a, below_a, 0.84),
+        "_DOWN_95": quantile_regression(down_a, below_a, 0.98),
+    }
