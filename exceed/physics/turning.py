@@ -1,7 +1,7 @@
 """Turns and pull-ups: load factor, bank, radius, rate; and the wind triangle.
 
 Bank, turn rate and lateral motion are positive to the right, so a mirrored turn mirrors their signs and leaves load
-factor and radius alone. "Level turn" here always means level and coordinated; beyond 85 degrees of bank it is not flown.
+factor and radius alone. "Level turn" here always means level and coordinated; beyond 85 degrees of bank none is flown.
 True airspeed is never made from ground speed.
 """
 
