@@ -24,6 +24,7 @@ from typing import Annotated, Any, ClassVar, Literal
 from pydantic import Field, model_validator
 
 from exceed.core.quantities import QUANTITIES, nearest_quantity
+from exceed.core.units import UNITS
 from exceed.documents import facts
 from exceed.documents.build import build, open_document
 from exceed.documents.facts import Fact
@@ -48,11 +49,13 @@ from exceed.documents.fields import (
     Tuple,
     Words,
     collect,
-    fault,
+    make,
+    nearest,
     raise_any,
 )
 from exceed.documents.source import Document
 from exceed.documents.values import Value
+from exceed.errors import Problem, UsageError
 
 CATEGORIES = (
     "normal",
@@ -219,9 +222,8 @@ class SpeedLimit(Model):
     def shorthand(cls, value: Any) -> Any:
         return {"value": value} if isinstance(value, str | int | float) else value
 
-    @model_validator(mode="before")
     @classmethod
-    def _points(cls, value: Any) -> Any:
+    def prepare(cls, value: Any) -> Any:
         value = cls.shorthand(value)
         if not isinstance(value, dict) or "points" not in value:
             return value
@@ -288,7 +290,7 @@ class MachLimit(SpeedLimit):
     """A Mach limit in the same forms."""
 
     WHAT: ClassVar[str] = "a Mach number, or a table of Mach numbers"
-    value: Annotated[Value, _MACH] | None = Field(default=None, description="one Mach number for all conditions")  # type: ignore[assignment]
+    value: Annotated[Value, _MACH] | None = Field(default=None, description="one Mach number for all conditions")
     MARK: ClassVar[Number] = _MACH
 
 
@@ -314,9 +316,8 @@ class Speeds(Model):
     aerotow: SpeedLimit | None = Field(default=None, description="V_T")
     winch: SpeedLimit | None = Field(default=None, description="V_W")
 
-    @model_validator(mode="before")
     @classmethod
-    def _flaps_extended(cls, value: Any) -> Any:
+    def prepare(cls, value: Any) -> Any:
         """One speed and a table over flaps become rows."""
         if not isinstance(value, dict):
             return value
@@ -373,7 +374,8 @@ class Speeds(Model):
                 found.append(
                     (
                         (lower,),
-                        f"{lower.replace('_', ' ')} speed '{low.least}' is above {upper.replace('_', ' ')} speed '{high.greatest}'",
+                        f"{lower.replace('_', ' ')} speed '{low.least}' is above "
+                        f"{upper.replace('_', ' ')} speed '{high.greatest}'",
                         f"at most {high.greatest}",
                         "check both figures",
                     )
@@ -455,9 +457,8 @@ class Recorder(Model):
     )
     accuracy: dict[str, Value] = Field(default_factory=dict, description="half-width of a 95 % interval, by quantity")
 
-    @model_validator(mode="before")
     @classmethod
-    def _accuracy(cls, value: Any) -> Any:
+    def prepare(cls, value: Any) -> Any:
         if not isinstance(value, dict) or not isinstance(value.get("accuracy"), dict):
             return value
         found: Faults = []
@@ -523,7 +524,7 @@ class Aircraft(Model):
     HIDDEN: ClassVar[tuple[str, ...]] = ("path", "sha256", "assumed")
     WHAT: ClassVar[str] = "an aircraft file"
     format: Annotated[str, Choice(("exceed-aircraft/1",), "the format")] = Field(
-        "exceed-aircraft/1", description="first key of the file"
+        default="exceed-aircraft/1", description="first key of the file"
     )
     registration: Words | None = Field(default=None, description="compared without case and punctuation")
     serial: Words | None = Field(default=None, description="serial number of the airframe")
@@ -570,27 +571,16 @@ class Aircraft(Model):
     sha256: str = ""
     assumed: bool = False
 
-    @model_validator(mode="before")
     @classmethod
-    def _plain_position_error(cls, value: Any) -> Any:
+    def prepare(cls, value: Any) -> Any:
         """One plain list of points is one row for all flap settings."""
-        if (
-            isinstance(value, dict)
-            and isinstance(rows := value.get("position_error"), list)
-            and rows
-            and isinstance(rows[0], list)
-        ):
+        rows = value.get("position_error") if isinstance(value, dict) else None
+        if isinstance(rows, list) and rows and isinstance(rows[0], list):
             found: Faults = []
-            pair = Many(Tuple((_AIRSPEED, _AIRSPEED), "a pair, as in '[50 KIAS, 54 KCAS]'"), "a list of pairs")
-            points = collect(found, ("position_error",), pair.read, rows)
-            if not found:
-                try:
-                    value = {**value, "position_error": [PositionErrorRow(points=points)]}
-                except ValueError as error:
-                    for row in getattr(error, "errors", list)():
-                        for path, *texts in row["ctx"]["faults"]:
-                            found.append((("position_error", *path[1:]), *texts))
-            raise_any(found)
+            row = make(found, ("position_error",), PositionErrorRow, {"points": rows})
+            # the row's own 'points' is no key of the text
+            raise_any([((path[0], *path[2:]), *texts) for path, *texts in found])  # type: ignore[misc]
+            value = {**value, "position_error": [row]}
         return value
 
     @model_validator(mode="after")
@@ -615,37 +605,47 @@ def load_aircraft(origin: Path | str | Document, name: str | None = None) -> Air
 
 
 def category_aircraft(category: str, maximum_take_off: float | None = None) -> Aircraft:
-    """An aeroplane of which only the category is known: its limit load factors, marked assumed.
+    """An aeroplane of which only the category is known: its published limit load factors, marked assumed.
 
     Parameters: category : one of CATEGORIES.  maximum_take_off : kg, where the category's formula needs it.
-    Raises: DocumentError for an unknown category; ValueError of the envelope where the mass is needed and missing.
+    Raises: UsageError for an unknown category, or where the mass is needed and missing.
     """
-    from exceed.physics import envelope
+    from exceed.core.sources import SOURCES
+    from exceed.physics.envelope import CATEGORIES as FIGURES
+    from exceed.physics.envelope import category_load_factors
 
     if category not in CATEGORIES:
-        try:
-            Choice(CATEGORIES, "a category").read(category)
-        except Exception as error:
-            from exceed.errors import DocumentError, Problem
-
-            found = getattr(error, "context", {}).get("faults", [((), str(error), "", "")])[0]
-            raise DocumentError(Problem("--aircraft", *found[1:])) from None
-    positive, negative = envelope.category_load_factors(category, maximum_take_off)
-    row = LoadFactorRow(
-        maximum=Value(positive, "load factor", "g", f"{positive:.4g} g"),
-        minimum=Value(negative, "load factor", "g", f"{negative:.4g} g"),
-    )
+        near = nearest(category, CATEGORIES)
+        do = f"write '{near}' if that is meant" if near else "name a file or one of these"
+        problem = f"'{category}' is neither a file nor a category"
+        raise UsageError(Problem("--aircraft", problem, f"a file, or one of {', '.join(sorted(CATEGORIES))}", do))
+    if FIGURES[category].needs_mass and maximum_take_off is None:
+        problem = f"the limits of the category {category} depend on the maximum take-off mass"
+        raise UsageError(Problem("--aircraft", problem, "a mass", "add --mass, as in '--mass \"900 kg\"'"))
+    figures = category_load_factors(category, maximum_take_off)
+    rows = [LoadFactorRow(flaps=_degrees(0.0), maximum=_g(figures.maximum), minimum=_g(figures.minimum))]
+    flaps = _g(figures.maximum_flaps), _g(figures.minimum_flaps)
+    if flaps != (None, None):
+        # one figure for any flaps: the smallest listed setting at or above the angle is always this row
+        rows.append(LoadFactorRow(flaps=_degrees(90.0), maximum=flaps[0], minimum=flaps[1]))
+    airbrakes = _g(figures.maximum_airbrakes), _g(figures.minimum_airbrakes)
+    if airbrakes != (None, None):
+        rows.append(LoadFactorRow(airbrakes="out", maximum=airbrakes[0], minimum=airbrakes[1]))
     mass = Masses()
     if maximum_take_off is not None:
+        # the mass of the option feeds the formula; it is not the aeroplane's own limit
         mass = Masses(maximum_take_off=Value(maximum_take_off, "mass", "kg", f"{maximum_take_off:g} kg"))
-    return Aircraft(
-        category=category,
-        mass=mass,
-        load_factor=(row,),
-        assumed=True,
-        path=category,
-        source=f"limit load factors of the category {category}, assumed",
-    )
+    title = SOURCES[figures.source].title if figures.source in SOURCES else figures.source
+    source = f"limit load factors of the category {category}, assumed: {title} ({figures.note})"
+    return Aircraft(category=category, mass=mass, load_factor=tuple(rows), assumed=True, path=category, source=source)
+
+
+def _g(number: float) -> Value | None:
+    return None if number != number else Value(float(number), "load factor", "g", f"{number:.3g} g")
+
+
+def _degrees(number: float) -> Value:
+    return Value(number * UNITS["deg"].factor, "angle", "deg", f"{number:g} deg")
 
 
 def plain_registration(text: str) -> str:
@@ -659,4 +659,4 @@ def same_registration(one: str | None, other: str | None) -> bool:
     return bool(first) and first == second
 
 
-__all__ = ["CATEGORIES", "Aircraft", "Fact", "category_aircraft", "fault", "load_aircraft", "same_registration"]
+__all__ = ["CATEGORIES", "Aircraft", "Fact", "category_aircraft", "load_aircraft", "same_registration"]

@@ -8,7 +8,7 @@ from typing import Any, TypeVar
 from pydantic import ValidationError
 
 from exceed.documents import source
-from exceed.documents.fields import Model, kind_of, nearest
+from exceed.documents.fields import Model, faults_of, nearest
 from exceed.documents.source import Document, Mapping, Node, Scalar, Sequence
 from exceed.errors import DocumentError, Problem
 
@@ -68,7 +68,7 @@ def build(model: type[M], document: Document, kind: str, context: dict[str, Any]
         except ValidationError as error:
             cut: list[tuple[Node, str | int, bool]] = []
             for row in error.errors(include_url=False):
-                for path, problem, expected, do in _faults(row):
+                for path, problem, expected, do in faults_of(row):
                     parents, node, key_node = _walk(root, (*row["loc"], *path))
                     # of a whole that lost a wrong part nothing more can be said
                     if not any(node is whole for whole in thinned):
@@ -138,35 +138,3 @@ def _at_key(node: Node, kind: str, problem: str) -> bool:
     if isinstance(node, Scalar) and node.absent:
         return True
     return kind == "exceed" and problem.startswith("key '") and "is missing" not in problem
-
-
-def _faults(row: Any) -> list[tuple[tuple[Any, ...], str, str, str]]:
-    kind, given = row["type"], row.get("input")
-    if kind == "exceed":
-        return list(row["ctx"]["faults"])
-    if kind == "missing":
-        key = row["loc"][-1]
-        return [((), f"key '{key}' is missing", f"'{key}'", f"add '{key}: ...' here")]
-    if kind in ("tuple_type", "list_type", "iterable_type"):
-        return [
-            (
-                (),
-                f"{kind_of(given)} stands where a list is due",
-                "a list",
-                "write the items in brackets or each after '- '",
-            )
-        ]
-    if kind in ("dict_type", "model_type", "mapping_type", "model_attributes_type"):
-        return [((), f"{kind_of(given)} stands where a mapping is due", "a mapping", "write 'key: value'")]
-    if kind in ("too_short", "too_long"):
-        return [
-            (
-                (),
-                "this list is too short" if kind == "too_short" else "this list is too long",
-                str(row["msg"]).split(", not")[0].lower(),
-                "add or remove items",
-            )
-        ]
-    return [
-        ((), f"{kind_of(given)} cannot stand here", str(row["msg"]).lower(), "see 'exceed template' for an example")
-    ]

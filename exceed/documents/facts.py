@@ -1,4 +1,4 @@
-"""The facts of an aeroplane that rules point at: which names there are, what kind they have, what is missing and why."""
+"""The facts of an aeroplane that rules point at: their names, their kinds, and why one is missing."""
 
 from __future__ import annotations
 
@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from exceed.documents.fields import Faults, nearest
+from exceed.documents.values import Value
 
 if TYPE_CHECKING:
     from exceed.documents.aircraft import Aircraft
@@ -90,13 +91,13 @@ def look_up(aircraft: Aircraft, name: str) -> Fact:
         return Fact(full, kind or "", missing=reason, **about)
 
     if group == "limits":
-        value = aircraft.limits.get(key)
-        if value is None:
+        own = aircraft.limits.get(key)
+        if own is None:
             return missing(f"the aircraft file has no limits.{key}")
-        return Fact(full, value.kind, value, value.airspeed, **about)
+        return Fact(full, own.kind, own, own.airspeed, **about)
     if group == "load_factor":
-        rows = tuple(row for row in aircraft.load_factor if getattr(row, key) is not None)
-        return Fact(full, kind, rows, **about) if rows else missing(f"the aircraft file has no {key} load factor")
+        factors = tuple(row for row in aircraft.load_factor if getattr(row, key) is not None)
+        return Fact(full, kind, factors, **about) if factors else missing(f"the aircraft file has no {key} load factor")
     if group == "loading":
         envelope = aircraft.loading.envelope
         return Fact(full, kind, envelope, **about) if envelope else missing("the aircraft file has no loading envelope")
@@ -126,13 +127,17 @@ def contradictions(aircraft: Aircraft) -> Faults:
     _stall_rows(aircraft, found)
     _load_factor_rows(aircraft, found)
     if aircraft.flaps == "none":
-        for name, rows in (("stall_speed", aircraft.stall_speed), ("load_factor", aircraft.load_factor)):
-            for index, row in enumerate(rows):
-                if row.flaps is not None and abs(row.flaps) > 1e-9:
+        settings_of: tuple[tuple[str, list[Value | None]], ...] = (
+            ("stall_speed", [row.flaps for row in aircraft.stall_speed]),
+            ("load_factor", [row.flaps for row in aircraft.load_factor]),
+        )
+        for name, listed in settings_of:
+            for index, flaps in enumerate(listed):
+                if flaps is not None and abs(flaps) > 1e-9:
                     found.append(
                         (
                             (name, index, "flaps"),
-                            f"flaps '{row.flaps}' are given and the aeroplane has none",
+                            f"flaps '{flaps}' are given and the aeroplane has none",
                             "'flaps: recorded' or 'not_recorded', or no rows with flaps",
                             "correct one of the two",
                         )
@@ -157,21 +162,11 @@ def contradictions(aircraft: Aircraft) -> Faults:
                         "correct one of the two",
                     )
                 )
-    top = aircraft.mass.maximum_take_off
-    envelope = aircraft.loading.envelope
-    if (
-        envelope and top is not None and envelope[-1][0] < aircraft.mass.empty
-        if aircraft.mass.empty is not None
-        else False
-    ):
-        found.append(
-            (
-                ("loading", "envelope"),
-                f"the envelope ends at '{envelope[-1][0]}', below empty mass '{aircraft.mass.empty}'",
-                "an envelope up to maximum take-off mass",
-                "check the figures",
-            )
-        )
+    envelope, empty = aircraft.loading.envelope, aircraft.mass.empty
+    if envelope and empty is not None and envelope[-1][0] < empty:
+        problem = f"the envelope ends at '{envelope[-1][0]}', below empty mass '{empty}'"
+        path = ("loading", "envelope", len(envelope) - 1)
+        found.append((path, problem, "an envelope up to maximum take-off mass", "check the figures"))
     settings = [row.flaps for row in aircraft.position_error]
     for index in range(1, len(settings)):
         here, before = settings[index], settings[index - 1]

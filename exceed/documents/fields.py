@@ -11,14 +11,22 @@ import difflib
 import re
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
-from typing import Annotated, Any, ClassVar, NoReturn
+from typing import Annotated, Any, ClassVar, NoReturn, TypeVar
 
-from pydantic import BaseModel, ConfigDict, GetCoreSchemaHandler, GetJsonSchemaHandler, ValidationInfo, model_validator
+from pydantic import (
+    BaseModel,
+    ConfigDict,
+    GetCoreSchemaHandler,
+    GetJsonSchemaHandler,
+    ValidationError,
+    ValidationInfo,
+    model_validator,
+)
 from pydantic_core import CoreSchema, PydanticCustomError, core_schema
 
 from exceed.core.units import AIRSPEED_UNITS, AIRSPEED_WORDS, units_of
 from exceed.documents import values
-from exceed.documents.values import Value, ValueProblem
+from exceed.documents.values import Value, ValueFault
 
 Path = tuple[str | int, ...]
 Faults = list[tuple[Path, str, str, str]]
@@ -107,7 +115,7 @@ class Number(Marker):
             found = values.parse(
                 value, self.kinds or None, bare=self.bare, difference=self.difference, airspeed=self.airspeed
             )
-        except ValueProblem as error:
+        except ValueFault as error:
             raise fault(error.problem, error.expected, error.do) from None
         what = self.kinds[0] if self.kinds else "value"
         if (self.sign == "positive" and found <= 0.0) or (self.sign == "not negative" and found < 0.0):
@@ -382,6 +390,11 @@ class Model(BaseModel):
                     )
                 )
         raise_any(found)
+        return cls.prepare(value)
+
+    @classmethod
+    def prepare(cls, value: Any) -> Any:
+        """A model may turn several written forms of a key into one here, after unknown keys were refused."""
         return value
 
     @classmethod
@@ -389,6 +402,8 @@ class Model(BaseModel):
         """A model may accept a shorter form than a mapping and make the mapping of it here."""
         return value
 
+
+M = TypeVar("M", bound=Model)
 
 # what the keys of several files are made of
 Words = Annotated[str, Text()]
@@ -410,3 +425,47 @@ Airspeed = Annotated[Value, Number(("speed",), airspeed="required", sign="positi
 Duration = Annotated[Value, Number(("time",), sign="not negative")]
 LongDuration = Annotated[Value, Number(("time",), sign="positive")]
 Any_ = Annotated[Value, Number(bare=True)]
+
+
+def faults_of(row: Any) -> Faults:
+    """One row of a pydantic error in our words."""
+    kind, given = row["type"], row.get("input")
+    if kind == "exceed":
+        return list(row["ctx"]["faults"])
+    if kind == "missing":
+        key = row["loc"][-1]
+        return [((), f"key '{key}' is missing", f"'{key}'", f"add '{key}: ...' here")]
+    if kind in ("tuple_type", "list_type", "iterable_type"):
+        return [
+            (
+                (),
+                f"{kind_of(given)} stands where a list is due",
+                "a list",
+                "write the items in brackets or each after '- '",
+            )
+        ]
+    if kind in ("dict_type", "model_type", "mapping_type", "model_attributes_type"):
+        return [((), f"{kind_of(given)} stands where a mapping is due", "a mapping", "write 'key: value'")]
+    if kind in ("too_short", "too_long"):
+        return [
+            (
+                (),
+                "this list is too short" if kind == "too_short" else "this list is too long",
+                str(row["msg"]).split(", not")[0].lower(),
+                "add or remove items",
+            )
+        ]
+    return [
+        ((), f"{kind_of(given)} cannot stand here", str(row["msg"]).lower(), "see 'exceed template' for an example")
+    ]
+
+
+def make(found: Faults, path: Path, model: type[M], value: Any) -> M | None:
+    """Validate a part by its own model; its faults go to `found` with `path` before theirs."""
+    try:
+        return model.model_validate(value, context={})
+    except ValidationError as error:
+        for row in error.errors(include_url=False):
+            for inner, problem, expected, do in faults_of(row):
+                found.append(((*path, *row["loc"], *inner), problem, expected, do))
+        return None

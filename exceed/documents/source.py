@@ -182,7 +182,7 @@ def load(path: Path | str, name: str | None = None) -> Document:
 
 
 def parse(text: str, name: str = "text", sha256: str = "") -> Document:
-    """Parse YAML text. Raises DocumentError where nothing sensible can be made of it; lesser faults go along as data."""
+    """Parse YAML text. Raises DocumentError where nothing can be made of it; lesser faults go along as data."""
     digest = sha256 or hashlib.sha256(text.encode("utf-8", errors="surrogatepass")).hexdigest()
     builder = _Builder(name, text)
     try:
@@ -234,11 +234,12 @@ class _Builder:
         self.problems.append(Problem(f"{self.name}:{mark.line + 1}:{mark.column + 1}", problem, expected, do))
 
     def take(self, event: Any) -> None:
+        mark = event.start_mark
         if isinstance(event, yaml.DocumentStartEvent):
             self._documents += 1
             if self._documents == 2:
                 self._problem(
-                    event.start_mark,
+                    mark,
                     "a second document starts here",
                     "one document in a file",
                     "put it in a file of its own, or remove the '---'",
@@ -249,16 +250,17 @@ class _Builder:
             self._alias(event)
         elif isinstance(event, yaml.ScalarEvent):
             self._tag(event)
-            node = Scalar(event.start_mark.line + 1, event.start_mark.column + 1, event.value, event.style in _QUOTES)
+            node = Scalar(mark.line + 1, mark.column + 1, event.value, event.style in _QUOTES)
             self._anchor(event, node)
-            self._add(node, node.quoted, event.start_mark.index, event.end_mark.index)
+            end: Any = event.end_mark
+            self._add(node, node.quoted, mark.index, end.index)
         elif isinstance(event, yaml.SequenceStartEvent | yaml.MappingStartEvent):
             self._tag(event)
-            kind = Sequence if isinstance(event, yaml.SequenceStartEvent) else Mapping
-            self._anchor(event, made := kind(event.start_mark.line + 1, event.start_mark.column + 1))
+            line, column = mark.line + 1, mark.column + 1
+            made: Node = Sequence(line, column) if isinstance(event, yaml.SequenceStartEvent) else Mapping(line, column)
+            self._anchor(event, made)
             self._open.append((made, []))
             if len(self._open) > MAXIMUM_DEPTH:
-                mark = event.start_mark
                 raise DocumentError(
                     Problem(
                         f"{self.name}:{mark.line + 1}:{mark.column + 1}",
@@ -268,12 +270,12 @@ class _Builder:
                     )
                 )
         elif isinstance(event, yaml.SequenceEndEvent | yaml.MappingEndEvent):
-            made, parts = self._open.pop()
-            if isinstance(made, Sequence):
-                self._sequence(made, parts)
-            elif isinstance(made, Mapping):
-                self._mapping(made, parts)
-            self._add(made, True, -1, -1)
+            whole, parts = self._open.pop()
+            if isinstance(whole, Sequence):
+                self._sequence(whole, parts)
+            elif isinstance(whole, Mapping):
+                self._mapping(whole, parts)
+            self._add(whole, True, -1, -1)
 
     def _tag(self, event: Any) -> None:
         tag = event.tag

@@ -1,7 +1,7 @@
 """Numbers with units as a user writes them -> floats in SI that remember how they were written.
 
 `parse("54 KCAS")` gives a `Value`: a float (27.78, m/s) with `.text` ('54 KCAS'), `.unit` ('kt'), `.kind` ('speed')
-and `.airspeed` ('calibrated_airspeed', or None). What cannot be read raises `ValueProblem` with problem, expected, do.
+and `.airspeed` ('calibrated_airspeed', or None). What cannot be read raises `ValueFault` with problem, expected, do.
 """
 
 from __future__ import annotations
@@ -79,7 +79,7 @@ _USUAL = {
 }
 
 
-class ValueProblem(ValueError):
+class ValueFault(ValueError):  # noqa: N818
     """One value that cannot be read; the text is composed where its place is known."""
 
     def __init__(self, problem: str, expected: str = "", do: str = "") -> None:
@@ -91,7 +91,7 @@ class ValueProblem(ValueError):
 
 
 class Value(float):
-    """A float in SI that remembers its kind of quantity, the unit and text it was written in, and which airspeed it is."""
+    """A float in SI that remembers its kind of quantity, unit and text as written, and which airspeed it is."""
 
     __slots__ = ("airspeed", "kind", "text", "unit")
     kind: str
@@ -154,12 +154,12 @@ def _tidy(text: str) -> str:
 def _number(text: str, shown: str, expected: str) -> tuple[float, str]:
     """The number that `text` starts with, and the rest of the text."""
     if _NOT_FINITE.match(text):
-        raise ValueProblem(f"{shown} is not a finite number", expected, "give the figure, or leave the key out")
+        raise ValueFault(f"{shown} is not a finite number", expected, "give the figure, or leave the key out")
     thousands = _THOUSANDS.match(text)
     comma = _DECIMAL_COMMA.match(text)
     if thousands and thousands.group(1) == ",":
         one, other = text.replace(",", ""), text.replace(",", ".", 1).replace(",", "")
-        raise ValueProblem(
+        raise ValueFault(
             f"{shown} has a comma in the number",
             "digits with a point for decimals and no thousands marks",
             f"write '{one}' or '{other}', whichever is meant",
@@ -167,28 +167,28 @@ def _number(text: str, shown: str, expected: str) -> tuple[float, str]:
     if thousands and (thousands.group(1) != "." or thousands.group().count(".") > 1):
         mark = thousands.group(1)
         whole = thousands.group().replace(mark, "") + text[thousands.end() :]
-        raise ValueProblem(
+        raise ValueFault(
             f"{shown} has thousands marks",
             "digits with a point for decimals and no thousands marks",
             f"write '{whole}'",
         )
     if comma:
-        raise ValueProblem(f"{shown} has a decimal comma", "a decimal point", f"write '{text.replace(',', '.', 1)}'")
+        raise ValueFault(f"{shown} has a decimal comma", "a decimal point", f"write '{text.replace(',', '.', 1)}'")
     found = _NUMBER.match(text)
     if not found:
-        raise ValueProblem(f"{shown} does not start with a number", expected, "write a number and its unit")
+        raise ValueFault(f"{shown} does not start with a number", expected, "write a number and its unit")
     number = float(found.group())
     if not math.isfinite(number):
-        raise ValueProblem(f"{shown} is too large a number", expected, "check the exponent")
+        raise ValueFault(f"{shown} is too large a number", expected, "check the exponent")
     return number, text[found.end() :].strip()
 
 
-def _unknown_unit(name: str, expected: str) -> ValueProblem:
+def _unknown_unit(name: str, expected: str) -> ValueFault:
     meant = _MEANT.get(name.lower().replace(" ", ""))
     if meant:
-        return ValueProblem(f"unit '{name}' is not known", expected, f"write '{meant[0]}' if you meant {meant[1]}")
+        return ValueFault(f"unit '{name}' is not known", expected, f"write '{meant[0]}' if you meant {meant[1]}")
     near = nearest_unit(name)
-    return ValueProblem(
+    return ValueFault(
         f"unit '{name}' is not known",
         expected,
         f"write '{near}' if that is meant" if near else "use a unit of the list",
@@ -204,7 +204,7 @@ def _split_unit(text: str, expected: str) -> tuple[str, str | None]:
     first, _, word = text.partition(" ")
     if word in AIRSPEED_WORDS and first in UNITS:
         if first not in AIRSPEED_SPEED_UNITS:
-            raise ValueProblem(
+            raise ValueFault(
                 f"'{text}' is no unit of an airspeed",
                 expected_of((), airspeed=True),
                 f"give the {word} in one of {', '.join(AIRSPEED_SPEED_UNITS)}",
@@ -212,7 +212,7 @@ def _split_unit(text: str, expected: str) -> tuple[str, str | None]:
         return first, AIRSPEED_WORDS[word]
     if word and first in UNITS and first in AIRSPEED_SPEED_UNITS:
         near = difflib.get_close_matches(word.upper(), AIRSPEED_WORDS, n=1)
-        raise ValueProblem(
+        raise ValueFault(
             f"'{word}' is not a kind of airspeed",
             f"one of {', '.join(sorted(AIRSPEED_WORDS))}",
             f"write '{first} {near[0]}' if that is meant" if near else "name the kind, or leave it out",
@@ -242,26 +242,26 @@ def parse(
 
     Raises
     ------
-    ValueProblem : with what is wrong, what was expected, and what to do.
+    ValueFault : with what is wrong, what was expected, and what to do.
     """
     wanted = (kinds,) if isinstance(kinds, str) else tuple(kinds) if kinds is not None else ()
     expected = expected_of(wanted, bare=bare, airspeed=airspeed == "required")
     if isinstance(text, Value):
         if wanted and text.kind not in wanted:
-            raise ValueProblem(f"'{text}' is a {text.kind}", expected, "give a value of that kind")
+            raise ValueFault(f"'{text}' is a {text.kind}", expected, "give a value of that kind")
         return text
     if isinstance(text, bool) or not isinstance(text, str | int | float):
         what = {list: "a list", tuple: "a list", dict: "a mapping", bool: "true or false"}.get(type(text), "nothing")
-        raise ValueProblem(f"{what} stands where a value is due", expected, "write a number and its unit")
+        raise ValueFault(f"{what} stands where a value is due", expected, "write a number and its unit")
     if not isinstance(text, str):
         # only Python code hands over numbers; a document hands on text
         if not math.isfinite(text):
-            raise ValueProblem(f"'{text}' is not a finite number", expected, "give the figure, or leave the key out")
+            raise ValueFault(f"'{text}' is not a finite number", expected, "give the figure, or leave the key out")
         return Value(float(text), wanted[0] if wanted else "ratio", "", "")
     tidy = _tidy(text)
     shown = f"'{text if len(text) <= 60 else text[:57] + '...'}'"
     if not tidy:
-        raise ValueProblem("no value is given", expected, "write a number and its unit")
+        raise ValueFault("no value is given", expected, "write a number and its unit")
     number, rest = _number(tidy, shown, expected)
     if not rest:
         if bare:
@@ -269,28 +269,27 @@ def parse(
         example = next((_USUAL.get(kind) or units_of(kind)[0] for kind in wanted), "kt")
         if airspeed == "required":
             example = "KIAS"
-        raise ValueProblem(
-            f"{shown} has no unit", expected, f"write the unit after the number, as in '{tidy} {example}'"
-        )
+        raise ValueFault(f"{shown} has no unit", expected, f"write the unit after the number, as in '{tidy} {example}'")
     unit_name, which = _split_unit(rest, expected)
     unit = UNITS[unit_name]
     if (wanted and unit.kind not in wanted) or unit.kind == "state" or unit_name == "1":
         article = "an" if unit.kind[0] in "aeiou" else "a"
         what = "per cent" if unit_name == "%" else f"{article} {unit.kind}"
-        raise ValueProblem(f"{shown} is {what}", expected, "give a value of that kind")
+        raise ValueFault(f"{shown} is {what}", expected, "give a value of that kind")
     if airspeed == "required" and unit_name not in AIRSPEED_SPEED_UNITS:
-        raise ValueProblem(f"{shown} is no airspeed", expected, "give the speed in one of these")
+        raise ValueFault(f"{shown} is no airspeed", expected, "give the speed in one of these")
     if airspeed == "required" and which is None:
-        raise ValueProblem(
+        raise ValueFault(
             f"{shown} does not say which airspeed it is",
             expected,
             f"write '{tidy} IAS' if the manual means indicated airspeed",
         )
     if airspeed == "refused" and which is not None:
-        raise ValueProblem(f"{shown} is an airspeed", expected_of(wanted), "leave the kind of airspeed out")
-    si = number * unit.factor if difference else unit.to_si(number)
+        raise ValueFault(f"{shown} is an airspeed", expected_of(wanted), "leave the kind of airspeed out")
+    # 95 / 100 is the nearest float to 0.95, 95 * 0.01 is not
+    si = number / 100.0 if unit_name == "%" else number * unit.factor if difference else unit.to_si(number)
     if not math.isfinite(si):
-        raise ValueProblem(f"{shown} is too large a number", expected, "check the exponent")
+        raise ValueFault(f"{shown} is too large a number", expected, "check the exponent")
     if unit.kind == "temperature" and not difference and si < 0.0:
-        raise ValueProblem(f"{shown} is below absolute zero", expected, "check the figure and its unit")
+        raise ValueFault(f"{shown} is below absolute zero", expected, "check the figure and its unit")
     return Value(si, unit.kind, unit_name, tidy, which)
