@@ -89,7 +89,7 @@ CORRAN = Airframe(
     registration="ZZ-NMJ", reference_mass=4300.0, wing_area=22.0, chord=1.65, lift_slope=5.2,
     stall_kcas=((0.0, 96.0), (15.0, 86.0), (35.0, 78.0)), inverted_stall_kcas=120.0,
     position_error=((80.0, 81.0), (150.0, 150.5), (280.0, 279.0)),
-    reference_kcas=220.0, thrust=0.38, thrust_fade=0.30, drag_0=0.05, drag_n=0.012,
+    reference_kcas=220.0, thrust=0.50, thrust_fade=0.30, drag_0=0.05, drag_n=0.012,
     rotate_kcas=99.0, final_kcas=106.0, roll_rate=0.5,
     fuel_flow_idle=0.025, fuel_flow_full=0.16, engine_speed_idle=52.0, engine_speed_full=100.0,
     jet=True, retractable=True, zero_lift_angle=-0.026, accelerometer=(-0.4, 0.0, 0.3),

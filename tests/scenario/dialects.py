@@ -32,6 +32,7 @@ class Truth:
     start: float | None = None  # seconds since 1970 UTC; None: no absolute clock can be written
     registration: str | None = None
     recorder_serial: str | None = None
+    phase_s: float = 0.0  # of the first row, in the time of the flight that was sampled
     gaps: tuple[tuple[float, float], ...] = ()  # stretches of rows that were never written, s from the first row
 
     @property
@@ -67,7 +68,7 @@ def truth_from_flight(
         made = Sensor(rate_hz, phase_s, given.bias, given.noise, given.step, given.low, given.high, given.position,
                       given.dropouts, given.spikes)  # fmt: skip
         _, channels[name] = sample(flight, name, made, seed * 1000 + index, end=end)
-    return Truth(rate_hz, channels, rates or {}, start, **facts)  # type: ignore[arg-type]
+    return Truth(rate_hz, channels, rates or {}, start, phase_s=phase_s, **facts)  # type: ignore[arg-type]
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,6 +100,7 @@ class Habit:
     zone: str = "UTC"  # of Parquet stamps: "" (naive), UTC, +02:00
     numbers: str = "double"  # of Parquet: double, float, decimal, text
     row_group: int = 0
+    names: tuple[tuple[str, str], ...] = ()  # a quantity's own column name, instead of the vocabulary's
     unit_metadata: bool = False  # of Parquet: units in the fields' metadata instead of the names
 
     @property
@@ -224,7 +226,8 @@ def _table(
         unit = unit_of(quantity, habit.units)
         every = truth.every(quantity) if habit.rates != "same" else 1
         text = _cells(quantity, values, unit, habit)
-        name, label = name_of(quantity, habit.vocabulary), spelled(unit, habit.spelling)
+        name = dict(habit.names).get(quantity) or name_of(quantity, habit.vocabulary)
+        label = spelled(unit, habit.spelling)
         if habit.delimiter == " ":
             name = name.replace(" ", "_")
         if habit.header == "suffix" and unit.label:

@@ -35,8 +35,10 @@ def _thrust(sim: Sim, wanted: float) -> tuple[float, float]:
     equivalent = max(sim.equivalent_airspeed, 15.0)
     idle = sim.airframe.longitudinal(equivalent, sim.load_factor, 0.0)
     if sim.airbrakes_wanted:
-        idle -= 0.06
+        idle -= 0.10
     full = sim.airframe.longitudinal(equivalent, sim.load_factor, 1.0)
+    extended = 0.0012 * sim.flaps_deg + (0.03 * sim.gear if sim.airframe.retractable else 0.0)
+    idle, full = idle - extended, full - extended
     given = max(idle, min(full, wanted))
     return given, max(0.0, min(1.0, (given - idle) / (full - idle)))
 
@@ -46,17 +48,32 @@ def _true_target(sim: Sim, kcas: float, mach: float | None) -> float:
     return target if mach is None else min(target, mach * sound_speed(sim.static_temperature))
 
 
-def _steady(sim: Sim, rise: float, bank: float, kcas: float, mach: float | None = None, quick: float = 0.6) -> Command:
+def _steady(
+    sim: Sim,
+    rise: float,
+    bank: float,
+    kcas: float,
+    mach: float | None = None,
+    quick: float = 0.6,
+    brake: bool = False,
+) -> Command:
     """Hold a vertical speed in m/s, a bank in rad and a calibrated airspeed in kt (or a Mach number below it)."""
-    wanted_path = math.asin(max(-0.6, min(0.6, rise / max(sim.speed, 10.0))))
+    speed_error = _true_target(sim, kcas, mach) - sim.speed
+    wanted_sine = rise / max(sim.speed, 10.0)
+    if wanted_sine > 0.0:  # speed before height: climb only as steeply as the thrust holds the speed
+        most = _thrust(sim, 9.0)[0] - 0.06 * max(speed_error, 0.0) / G0
+        wanted_sine = min(wanted_sine, max(most, 0.01))
+    elif brake and speed_error < 0.0:
+        wanted_sine = max(wanted_sine, _thrust(sim, -9.0)[0] - 0.06 * speed_error / G0)
+    wanted_path = math.asin(max(-0.6, min(0.6, wanted_sine)))
     path = sim.path_angle
     path_rate = max(-0.12, min(0.12, quick * (wanted_path - path)))
     cosine = math.cos(sim.path_bank)
     if abs(cosine) < 0.2:
         cosine = math.copysign(0.2, cosine)
     normal = (math.cos(path) + sim.speed * path_rate / G0) / cosine
-    normal = max(-2.5, min(3.2, normal))
-    speed_error = _true_target(sim, kcas, mach) - sim.speed
+    # rolling through the vertical nobody pushes for height
+    normal = max(-1.3, min(3.2, normal))
     # propulsion cannot give more than it has, and the pilot does not slam it
     along, power = _thrust(sim, math.sin(path) + max(-0.12, min(0.12, 0.15 * speed_error / G0)))
     return _configured(sim, load_factor=normal, roll_rate=_roll_to(sim, bank), longitudinal=along, power=power)
@@ -198,6 +215,8 @@ def steep_turn(bank_deg: float, seconds: float, n: float | None, alt_ft: float, 
             if n is not None and abs(sim.path_bank) > 0.8 * abs(bank):
                 share = min(1.0, (sim.time - start) / 6.0)
                 easing = sim.time < sim.stalled_until
+                if not easing and sim.stalled_since > start:
+                    return  # the wing has let go once; the pilot has had enough
                 command.load_factor = 1.2 if easing else command.load_factor + share * (n - command.load_factor)
             yield command
 
@@ -244,10 +263,11 @@ def loop(n: float, top_n: float = 1.8) -> Manoeuvre:
                 wanted = 1.0 + (wanted - 1.0) * max(0.0, (2.0 * math.pi - turned) / 1.083)
             limit = sim.airframe.normal_force_limit(sim.equivalent_airspeed, sim.mass, sim.flaps_deg, False)
             wanted = min(wanted, 0.8 * limit)  # a pilot who flies by the shaking of the wing
-            along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, 1.0)
+            power = 1.0 if turned < math.pi else 0.15
+            along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, power)
             now = sim.path_angle
             turned, last = turned + abs(now - last), now
-            yield _configured(sim, load_factor=wanted, longitudinal=along, power=1.0, lag=0.35)
+            yield _configured(sim, load_factor=wanted, longitudinal=along, power=power, lag=0.35)
 
     return run
 
@@ -282,6 +302,21 @@ def inverted(seconds: float, kcas: float) -> Manoeuvre:
     return run
 
 
+def dive(angle_deg: float, to_kcas: float, power: float = 0.4) -> Manoeuvre:
+    """Push over to a steep descent and stay in it until a speed is reached; the pull comes as the next manoeuvre."""
+
+    def run(sim: Sim) -> Iterator[Command]:
+        sim.label, wanted = "dive", -math.radians(angle_deg)
+        while sim.equivalent_airspeed < to_kcas * KT or sim.path_angle > 0.8 * wanted:
+            rate = max(-0.12, min(0.12, 1.0 * (wanted - sim.path_angle)))
+            normal = math.cos(sim.path_angle) + sim.speed * rate / G0
+            along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, power)
+            roll_rate = _roll_to(sim, 0.0)
+            yield _configured(sim, load_factor=normal, roll_rate=roll_rate, longitudinal=along, power=power)
+
+    return run
+
+
 def recover(alt_ft: float, kcas: float, seconds: float = 20.0) -> Manoeuvre:
     """Back to level flight after a manoeuvre, gently."""
     return level(seconds, kcas, alt_ft)
@@ -296,7 +331,7 @@ def descend(
         sim.label, sim.airbrakes_wanted = "descent", airbrakes
         while sim.pressure_altitude > to_ft * FT + 15.0:
             rise = -min(rate_ft_min * FT_MIN, 1.0 + 0.2 * (sim.pressure_altitude - to_ft * FT))
-            yield _steady(sim, rise, 0.0, kcas, mach)
+            yield _steady(sim, rise, 0.0, kcas, mach, brake=True)
         sim.airbrakes_wanted = False
 
     return run
