@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from exceed.core.constants import POUND
-from exceed.physics._arrays import Array, floats, quiet, where
+from exceed.physics._arrays import Array, finite, floats, quiet, where
 
 ULTIMATE_OVER_LIMIT = 1.5  # 14 CFR 25.303, CAM 522.303 looked up; 23.303 from memory
 ROLLING_FRACTION = 2.0 / 3.0  # 14 CFR 23.349(b), 25.349(a)
@@ -98,11 +98,6 @@ CATEGORIES: dict[str, CategoryLimits] = {
     )
 }  # fmt: skip
 
-# 14 CFR 27.337, looked up: upper design choice, and the least allowed if shown to be enough. Not a category that a
-# log can be judged by here; kept with its check values.
-ROTORCRAFT_27 = (3.5, -1.0)
-ROTORCRAFT_27_LEAST = (2.0, -0.5)
-
 
 @quiet
 def load_factor_maximum_by_mass(maximum_take_off_mass: ArrayLike) -> Array:
@@ -124,6 +119,16 @@ def load_factor_maximum_transport(maximum_take_off_mass: ArrayLike) -> Array:
     """
     weight = floats(maximum_take_off_mass) / POUND
     return where(weight > 0.0, np.clip(2.1 + 24000.0 / (weight + 10000.0), 2.5, 3.8))
+
+
+@quiet
+def ultimate_load_factor(load_factor: ArrayLike) -> Array:
+    """Ultimate load factor of a limit load factor: 1.5 times it.
+
+    Parameters: load_factor : (n,) array, 1.    Returns: (n,) array, 1.
+    Source: [14CFR25] 25.303, [CAM-522] 522.303, [14CFR23-OLD] 23.303.
+    """
+    return finite(ULTIMATE_OVER_LIMIT * floats(load_factor))
 
 
 def category_load_factors(category: str, maximum_take_off_mass: float | None = None) -> CategoryLimits:

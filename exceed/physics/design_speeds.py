@@ -13,14 +13,6 @@ from exceed.physics._arrays import Array, finite, floats, quiet, where
 
 _PSF = POUND / FOOT**2  # kg/m2 of one lb/ft2
 
-# Stated ratios and figures of the codes; how each was had is with the check values
-DIVE_OVER_CRUISE_23 = 1.25  # 23.335(b)(1), V_D / V_C at least
-CRUISE_OVER_DIVE_25 = 0.8  # 25.335(b), V_C / V_D at most, or the upset margin
-UPSET_PULL_UP_LOAD_FACTOR = 1.5  # 25.335(b)(1), 23.335(b)(4)(i)
-NEVER_EXCEED_OVER_DIVE_23 = 0.9  # 23.1505(a), from memory
-NEVER_EXCEED_OVER_DEMONSTRATED_22 = 0.9  # CAM 522.1505(b)
-FLAPS_EXTENDED_OVER_DESIGN_22 = 0.95  # CAM 522.1511
-
 _CRUISE_FACTOR = {"normal": 33.0, "utility": 33.0, "commuter": 33.0, "aerobatic": 36.0}
 _DIVE_FACTOR = {"normal": 1.40, "commuter": 1.40, "utility": 1.50, "aerobatic": 1.55}
 

@@ -29,8 +29,8 @@ _DESIGN_GUSTS_23 = {  # ft/s over ft
     "rough-air": ([20000.0, 50000.0], [66.0, 38.0]),
     "cruise": ([20000.0, 50000.0], [50.0, 25.0]),
     "dive": ([20000.0, 50000.0], [25.0, 12.5]),
+    "flaps": ([20000.0, 50000.0], [25.0, 25.0]),  # 23.345(a)(2) and CS 25.345(a)(2), whatever the height
 }
-FLAPS_DESIGN_GUST = 25.0 * FOOT  # m/s, 23.345(a)(2) and CS 25.345(a)(2)
 
 
 @quiet
@@ -172,11 +172,11 @@ def sharp_edged_gust_increment(
 def design_gust_velocity(pressure_altitude: ArrayLike, at: str) -> Array:
     """Design gust of the older part 23: constant to 20 000 ft, linear to 50 000 ft.
 
-    Parameters: pressure_altitude : (n,) array, m; at : 'cruise' (50 to 25 ft/s), 'dive' (25 to 12.5) or 'rough-air'
-    (66 to 38 ft/s, commuter category).
+    Parameters: pressure_altitude : (n,), m; at : 'cruise' (50 to 25 ft/s), 'dive' (25 to 12.5), 'rough-air' (66 to
+    38 ft/s, commuter category) or 'flaps' (25 ft/s, flaps out).
     Returns: (n,) array, m/s EAS; held above 50 000 ft. NaN where the altitude is.
     Raises: ValueError for another condition.
-    Source: [14CFR23-OLD] 23.333(c)(1); 38 ft/s at 50 000 ft from memory.
+    Source: [14CFR23-OLD] 23.333(c)(1), 23.345(a)(2); 38 ft/s at 50 000 ft from memory.
     """
     if at not in _DESIGN_GUSTS_23:
         raise ValueError(f"no design gust {at!r}; known: {', '.join(sorted(_DESIGN_GUSTS_23))}")

@@ -34,6 +34,7 @@ __all__ = [
     "load_factor_from_path_rates",
     "load_factor_from_vertical_acceleration",
     "load_factor_lift_axis",
+    "load_factor_of_specific_force",
     "longitudinal_load_factor_at_cg",
     "longitudinal_load_factor_at_rest",
     "longitudinal_load_factor_path_axis",
@@ -95,6 +96,16 @@ def specific_force_at_sensor(
     """
     lever = _lever(floats(angular_rate), floats(angular_acceleration), floats(sensor_position))
     return finite(floats(specific_force) + lever)
+
+
+@quiet
+def load_factor_of_specific_force(specific_force_down: ArrayLike) -> Array:
+    """Normal load factor from the specific force along the body's z axis: n = -f_z / g.
+
+    Parameters: specific_force_down : (n,) array, m/s2, positive down.    Returns: (n,) array, 1, positive up.
+    Source: [DEFINITION], senses of [AXES].
+    """
+    return finite(-floats(specific_force_down) / STANDARD_GRAVITY)
 
 
 @quiet
