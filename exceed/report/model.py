@@ -248,6 +248,7 @@ class Recording(_Row):
     sha256: str | None
     content_sha256: str | None
     registration: str | None
+    limits: Literal["own", "assumed", "none"]
     rows: int
     recorded_s: float
     status: Literal["ok", "partial", "failed"]

@@ -116,18 +116,20 @@ def parting_decimals(form: Shown, value: float | None, limit: float | None) -> i
 def peak_texts(event: dict[str, Any], system: str = "trade") -> tuple[str, str, str, str]:
     """An event's peak, its 95 % interval, the limit, the unit, with the same digits for all.
 
-    The peak is the estimate of the true extreme where there is one, else the value. An open end of the interval is
-    written as `..`: `6.12..` means at least 6.12.
+    The peak is the estimate of the true extreme where there is one, else the value. An interval is
+    written `6.12..6.37`, one with an open end `>= 6.12`.
     """
     peak, limit = event["peak"], event["limit"]["value"]
     form = shown(event["quantity"], peak["unit"], system)
     best = peak["estimate"] if peak["estimate"] is not None else peak["value"]
     decimals = parting_decimals(form, best, limit)
     low, high = peak["low"], peak["high"]
-    if low is None and high is None:
-        interval = ""
+    if low is not None and high is not None:
+        interval = f"{form.text(low, decimals)}..{form.text(high, decimals)}"
+    elif low is not None:
+        interval = f">= {form.text(low, decimals)}"
     else:
-        interval = "..".join("" if end is None else form.text(end, decimals) for end in (low, high))
+        interval = "" if high is None else f"<= {form.text(high, decimals)}"
     return form.text(best, decimals), interval, form.text(limit, decimals), form.unit
 
 

@@ -108,6 +108,7 @@ def _recording(log: LogOutcome) -> Dict:
         "sha256": log.sha256,
         "content_sha256": log.content_sha256,
         "registration": log.registration,
+        "limits": log.aircraft.limits if log.aircraft is not None else "none",
         "rows": log.rows,
         "recorded_s": recorded,
         "status": log.status,

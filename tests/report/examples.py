@@ -44,7 +44,7 @@ from exceed.errors import Problem
 
 KT = 1852.0 / 3600.0
 FT = 0.3048
-START = 1935565331.0  # 2031-05-02T09:02:11Z
+START = 1935478931.0  # 2031-05-02T09:02:11Z
 OVER_G = Task("Over-g inspection as the approved manual has it; consider before next flight", "05-50", "next flight")
 HOSTILE = (
     "<script>alert('x')</script> [red]bold[/red] \x1b[31mred\x1b[0m =HYPERLINK(\"http://x.invalid\") \u202egpj.exe"
