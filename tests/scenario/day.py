@@ -7,7 +7,8 @@ from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 
 import numpy as np
-from scenario import manoeuvres as do
+
+from scenario import plans
 from scenario.air import KT
 from scenario.airframes import CORRAN, FENWICK, LARKSPUR, Airframe
 from scenario.dialects import Habit, Truth, truth_from_flight
@@ -43,117 +44,6 @@ def at(hour: int, minute: int, second: int = 0) -> datetime:
     return datetime(2031, 5, 2, hour, minute, second, tzinfo=UTC)
 
 
-def out(alt_ft: float, kcas: float, rate: float, flaps: float = 0.0) -> list[Manoeuvre]:
-    """Start, taxi, take-off and climb."""
-    return [do.standing(45), do.taxi(75), do.take_off(flaps), do.climb(alt_ft, kcas, rate)]
-
-
-def back(
-    kcas: float, rate: float, final: float, flaps: list[tuple[float, float]], sink: float, impact: float = 0.18
-) -> list[Manoeuvre]:
-    """Descend, turn to the runway's heading, approach, land and taxi in."""
-    return [
-        do.descend(1500, kcas, rate), do.turn_to(240, final + 12, 1500),
-        do.level(12, final + 8, 1500), do.approach(final, flaps), do.landing(sink, impact), do.taxi(60, 330),
-        do.standing(25),
-    ]  # fmt: skip
-
-
-LARK_FLAPS = [(900.0, 15.0), (500.0, 30.0)]
-FEN_FLAPS = [(900.0, 20.0), (450.0, 35.0)]
-
-
-def _clear_over_g() -> list[Manoeuvre]:
-    return [
-        *out(4500, 85, 1200), do.level(30, 120, 4500), do.steep_turn(60, 20, None, 4500, 125), do.level(20, 145, 4500),
-        do.loop(4.2), do.recover(4300, 120, 25), do.roll(100), do.recover(4300, 115, 20), do.inverted(8, 112),
-        do.recover(4300, 100, 25), do.dive(35, 140), do.pull(6.45, 0.9, 0.35, 0.9), do.recover(4000, 110, 30),
-        do.turn_to(60, 105, 4000), *back(100, 1000, 68, LARK_FLAPS, 130),
-    ]  # fmt: skip
-
-
-def _hidden_over_g() -> list[Manoeuvre]:
-    return [
-        *out(4000, 85, 900), do.level(40, 120, 4000), do.turn_to(60, 115, 4000), do.level(20, 140, 4000), do.loop(3.6),
-        do.recover(4000, 100, 30), do.dive(25, 124), do.pull(4.62, 0.45, 0.0, 0.45), do.recover(3700, 105, 30),
-        do.steep_turn(50, 20, None, 3700, 110), do.recover(3700, 105, 15), *back(98, 900, 68, LARK_FLAPS, 150),
-    ]  # fmt: skip
-
-
-def _clean() -> list[Manoeuvre]:
-    return [
-        *out(3000, 85, 900), do.level(120, 115, 3000), do.turn_to(330, 115, 3000), do.steep_turn(45, 40, None, 3000, 115),
-        do.recover(3000, 115, 60), do.pull(2.6, 1.2, 0.3, 1.2), do.recover(3100, 105, 30), do.turn_to(60, 105, 3000),
-        do.level(60, 105, 3000), *back(95, 700, 68, LARK_FLAPS, 110),
-    ]  # fmt: skip
-
-
-def _gap() -> list[Manoeuvre]:
-    return [
-        *out(4500, 85, 1200), do.level(60, 120, 4500), do.roll(90), do.recover(4500, 120, 30), do.turn_to(60, 105, 4500),
-        do.level(15, 100, 4500), do.dive(38, 140), do.pull(6.5, 0.9, 0.8, 1.0), do.recover(4300, 105, 40),
-        do.roll(-90), do.recover(4300, 105, 30), *back(100, 1000, 68, LARK_FLAPS, 140),
-    ]  # fmt: skip
-
-
-def _spikes() -> list[Manoeuvre]:
-    return [
-        *out(4000, 85, 1200), do.level(90, 120, 4000), do.turn_to(150, 115, 4000), do.level(60, 120, 4000),
-        do.dive(33, 140), do.pull(6.45, 0.55, 0.1, 0.55), do.recover(3800, 110, 45), do.roll(110),
-        do.recover(3800, 110, 30), do.turn_to(60, 105, 3800), *back(100, 1000, 68, LARK_FLAPS, 120),
-    ]  # fmt: skip
-
-
-def _gusty() -> list[Manoeuvre]:
-    gusts = [(60.0, 1.1, 8.5), (150.0, 0.9, -7.0), (215.0, 1.3, 10.0), (290.0, 1.0, 7.0)]
-    return [
-        *out(3000, 78, 700, 10.0), do.level(60, 112, 3000), do.rough_air(360, 115, 3000, 1.3, gusts),
-        do.turn_to(60, 100, 3000), do.level(60, 100, 3000), *back(92, 600, 66, FEN_FLAPS, 140),
-    ]  # fmt: skip
-
-
-def _stall() -> list[Manoeuvre]:
-    return [
-        *out(4500, 78, 750, 10.0), do.level(60, 105, 4500), do.steep_turn(60, 24, 2.35, 4500, 74),
-        do.recover(4300, 95, 40), do.turn_to(60, 100, 4300), do.level(45, 100, 4300), *back(95, 800, 66, FEN_FLAPS, 150),
-    ]  # fmt: skip
-
-
-def _flap_overspeed() -> list[Manoeuvre]:
-    return [
-        *out(2500, 78, 750, 10.0), do.level(90, 110, 2500), do.turn_to(60, 105, 2500), do.level(60, 105, 2500),
-        do.descend(1500, 110, 700), do.turn_to(240, 108, 1500), do.level(8, 108, 1500), do.configure(20.0),
-        do.level(11, 108, 1500), do.approach(66, [(420, 35)], 120), do.go_around(1500, 72, 500),
-        do.turn_to(60, 80, 1500), do.level(50, 80, 1500), *back(80, 500, 66, FEN_FLAPS, 120),
-    ]  # fmt: skip
-
-
-def _fast_descent() -> list[Manoeuvre]:
-    return [
-        *out(5500, 78, 800), do.level(60, 115, 5500), do.turn_to(60, 112, 5500), do.level(30, 120, 5500),
-        do.descend(3300, 167, 2500), do.level(60, 110, 3300), *back(100, 800, 66, FEN_FLAPS, 160),
-    ]  # fmt: skip
-
-
-def _mach() -> list[Manoeuvre]:
-    return [
-        do.standing(30), do.taxi(60), do.take_off(15.0), do.climb(1800, 150, 1800), do.climb(32000, 235, 4600, 0.64),
-        do.level(25, 300, 32000, 0.665), do.level(32, 300, 32000, 0.722), do.level(30, 300, 32000, 0.64),
-        do.descend(10000, 245, 5600, 0.66, airbrakes=True), do.descend(2000, 220, 4000, airbrakes=True), do.turn_to(240, 200, 2000),
-        do.level(45, 145, 2000), do.configure(15.0), do.level(25, 125, 2000), do.approach(106, [(1200, 35)], 50),
-        do.landing(150), do.taxi(70, 330), do.standing(20),
-    ]  # fmt: skip
-
-
-def _hard_landing() -> list[Manoeuvre]:
-    return [
-        do.standing(40), do.taxi(75), do.take_off(15.0), do.climb(1800, 150, 1800), do.climb(9000, 210, 3000), do.level(120, 220, 9000),
-        do.turn_to(60, 220, 9000), do.level(60, 215, 9000), do.descend(2000, 210, 2600), do.turn_to(240, 190, 2000),
-        do.level(35, 150, 2000), do.configure(15.0), do.level(15, 132, 2000), do.approach(106, [(1500, 35)], 25),
-        do.landing(590, 0.26), do.taxi(70, 330), do.standing(20),
-    ]  # fmt: skip
-
-
 SLOW = {"outside_air_temperature": 1.0, "fuel_flow": 1.0, "fuel_mass": 1.0, "engine_speed": 1.0, "oil_temperature": 1.0}
 LIGHT = ("load_factor", "indicated_airspeed", "pressure_altitude", "bank_angle", "pitch_angle", "heading",
          "outside_air_temperature", "engine_speed", "oil_temperature")  # fmt: skip
@@ -167,87 +57,178 @@ SLOWER = tuple((name, 1.0) for name in (*TOURER, *JET) if name not in ("load_fac
 
 DAY: tuple[Sortie, ...] = (
     Sortie(
-        "zz-nma/nma-0810.txt", LARKSPUR, at(8, 10), _clean, (("pilot", 82.0), ("main_fuel", 70.0)),
+        "zz-nma/nma-0810.txt",
+        LARKSPUR,
+        at(8, 10),
+        plans.clean,
+        (("pilot", 82.0), ("main_fuel", 70.0)),
         tuple(name for name in LIGHT if name not in ("engine_speed", "oil_temperature")),
-        Habit(id="slate", delimiter=" ", header="name", units="metric", missing="-", clock="date_time_iso",
-              names=(("load_factor", "NZ"), ("indicated_airspeed", "SPD"), ("pressure_altitude", "HT"))),
+        Habit(
+            id="slate",
+            delimiter=" ",
+            header="name",
+            units="metric",
+            missing="-",
+            clock="date_time_iso",
+            names=(("load_factor", "NZ"), ("indicated_airspeed", "SPD"), ("pressure_altitude", "HT")),
+        ),
         "text padded to columns, no units at all, ISO date and time; speed in km/h and height in m, which only "
         "`channels/larkspur.yaml` can tell",
-        "A quiet local flight: turns, one gentle pull. Nothing beyond any limit.", rate_hz=4.0,
+        "A quiet local flight: turns, one gentle pull. Nothing beyond any limit.",
+        rate_hz=4.0,
     ),
     Sortie(
-        "zz-nma/nma-0902.csv", LARKSPUR, at(9, 2, 11), _clear_over_g, (("pilot", 82.0), ("baggage", 4.0), ("main_fuel", 70.0)), (*LIGHT, *RATES), FINE,
+        "zz-nma/nma-0902.csv",
+        LARKSPUR,
+        at(9, 2, 11),
+        plans.clear_over_g,
+        (("pilot", 82.0), ("baggage", 4.0), ("main_fuel", 70.0)),
+        (*LIGHT, *RATES),
+        FINE,
         "commas, units in brackets, ISO stamps with Z, everything at 8 Hz",
         "Solo aerobatics (loop, roll, inverted). The pull-out of the last dive goes well beyond 6 g.",
     ),
     Sortie(
-        "zz-nma/nma-1020.csv", LARKSPUR, at(10, 20, 30), _hidden_over_g, (("pilot", 95.0), ("passenger", 98.0), ("baggage", 10.0), ("main_fuel", 90.0)),
+        "zz-nma/nma-1020.csv",
+        LARKSPUR,
+        at(10, 20, 30),
+        plans.hidden_over_g,
+        (("pilot", 95.0), ("passenger", 98.0), ("baggage", 10.0), ("main_fuel", 90.0)),
         ("load_factor", "indicated_airspeed", "pressure_altitude", "bank_angle", "pitch_angle"),
         Habit(id="chert", delimiter="|", header="parens", rates="subframe", clock="iso_space", preamble="hash"),
         "pipes, units in parentheses, one row a second with eight load factors NZ1 to NZ8 in it, ISO stamps "
         "without a zone (UTC), facts in `#` lines",
         "Two aboard: above 880 kg the limit is 4.4 g. A short pull goes beyond it between two samples; every sample "
-        "stays below.", hide_peak=True, rates=(("indicated_airspeed", 1.0), ("pressure_altitude", 1.0),
-        ("bank_angle", 2.0), ("pitch_angle", 2.0)), facts=("registration", "recorder_serial"),
+        "stays below.",
+        hide_peak=True,
+        rates=(("indicated_airspeed", 1.0), ("pressure_altitude", 1.0), ("bank_angle", 2.0), ("pitch_angle", 2.0)),
+        facts=("registration", "recorder_serial"),
     ),
     Sortie(
-        "zz-nma/nma-1145.csv", LARKSPUR, at(11, 45), _spikes, (("pilot", 86.0), ("main_fuel", 66.0)), (*LIGHT, *RATES), FINE,
-        "as nma-0902", "Electrical spikes of one sample in quiet flight, two of them far beyond the limits; and one sharp pull "
-        "beyond 6 g that is real.", spikes=((260.3, 8.6), (305.1, -5.2), (341.7, 4.9)),
+        "zz-nma/nma-1145.csv",
+        LARKSPUR,
+        at(11, 45),
+        plans.spikes,
+        (("pilot", 86.0), ("main_fuel", 66.0)),
+        (*LIGHT, *RATES),
+        FINE,
+        "as nma-0902",
+        "Electrical spikes of one sample in quiet flight, two of them far beyond the limits; "
+        "and one sharp pull beyond 6 g that is real.",
+        spikes=((260.3, 8.6), (305.1, -5.2), (341.7, 4.9)),
     ),
     Sortie(
-        "zz-nma/nma-1305.tsv", LARKSPUR, at(13, 5, 40), _gap, (("pilot", 84.0), ("main_fuel", 64.0)), LIGHT,
-        Habit(id="marl", delimiter="\t", header="two-line", preamble="facts", clock="iso_space", vocabulary="upper",
-              spelling="plain", newline="\r\n"),
+        "zz-nma/nma-1305.tsv",
+        LARKSPUR,
+        at(13, 5, 40),
+        plans.gap,
+        (("pilot", 84.0), ("main_fuel", 64.0)),
+        LIGHT,
+        Habit(
+            id="marl",
+            delimiter="\t",
+            header="two-line",
+            preamble="facts",
+            clock="iso_space",
+            vocabulary="upper",
+            spelling="plain",
+            newline="\r\n",
+        ),
         "tabs, `key: value` lines first, a row of names and a row of units, CR LF",
-        "The recorder stops for some seconds in the middle of a pull beyond 6 g: the start is seen, the end "
-        "is not.", gap_after_crossing=0.3, gap_level=6.0, gap_seconds=6.0, facts=("registration",),
+        "The recorder stops for some seconds in the middle of a pull beyond 6 g: the start is seen, the end is not.",
+        gap_after_crossing=0.3,
+        gap_level=6.0,
+        gap_seconds=6.0,
+        facts=("registration",),
     ),
     Sortie(
-        "zz-nmc/nmc_20310502_0840.csv.gz", FENWICK, at(8, 40), _gusty, (("pilot", 84.0), ("copilot", 76.0), ("rear", 70.0), ("main_fuel", 120.0)), TOURER,
+        "zz-nmc/nmc_20310502_0840.csv.gz",
+        FENWICK,
+        at(8, 40),
+        plans.gusty,
+        (("pilot", 84.0), ("copilot", 76.0), ("rear", 70.0), ("main_fuel", 120.0)),
+        TOURER,
         Habit(id="gneiss", clock="epoch_ms", vocabulary="snake", header="suffix", compression="gz"),
         "gzip; commas, snake_case names with the unit at the end, milliseconds since 1970",
         "Six minutes of rough air at 115 kt with four single gusts. Bumpy, within every limit.",
         rates=tuple(SLOW.items()),
     ),
     Sortie(
-        "zz-nmc/nmc_20310502_1005.csv", FENWICK, at(10, 5), _stall, (("pilot", 84.0), ("copilot", 78.0), ("main_fuel", 118.0)), TOURER,
+        "zz-nmc/nmc_20310502_1005.csv",
+        FENWICK,
+        at(10, 5),
+        plans.stall,
+        (("pilot", 84.0), ("copilot", 78.0), ("main_fuel", 118.0)),
+        TOURER,
         Habit(id="basalt", rates="blanks", clock="iso_offset", spelling="words", quoting="text"),
-        "commas, quoted names, ISO stamps with an offset of two hours; load factor at 8 Hz, all else at 1 Hz with empty "
-        "cells between",
-        "A steep turn that is tightened while the speed decays: stall warning, then the wing lets go (accelerated stall).",
+        "commas, quoted names, ISO stamps with an offset of two hours; load factor at 8 Hz, "
+        "all else at 1 Hz with empty cells between",
+        "A steep turn that is tightened while the speed decays: stall warning, then the wing lets go "
+        "(accelerated stall).",
         rates=(*SLOWER, ("fuel_flow", 1.0), ("engine_speed", 1.0), ("oil_temperature", 1.0)),
     ),
     Sortie(
-        "zz-nmc/nmc_20310502_1215.csv", FENWICK, at(12, 15), _flap_overspeed, (("pilot", 80.0), ("copilot", 82.0), ("rear", 64.0), ("baggage", 8.0), ("main_fuel", 110.0)), TOURER,
-        Habit(id="shale", delimiter=";", decimal_comma=True, units="metric", clock="date_time_dmy", encoding="latin-1",
-              vocabulary="plain", spelling="signs"),
+        "zz-nmc/nmc_20310502_1215.csv",
+        FENWICK,
+        at(12, 15),
+        plans.flap_overspeed,
+        (("pilot", 80.0), ("copilot", 82.0), ("rear", 64.0), ("baggage", 8.0), ("main_fuel", 110.0)),
+        TOURER,
+        Habit(
+            id="shale",
+            delimiter=";",
+            decimal_comma=True,
+            units="metric",
+            clock="date_time_dmy",
+            encoding="latin-1",
+            vocabulary="plain",
+            spelling="signs",
+        ),
         "semicolons, decimal commas, Latin-1, day-first date and time apart; km/h, m, m/s²",
-        "Flaps 20 are lowered at 108 kt (limit 95 KIAS); then a go-around and a second approach.", rate_hz=4.0,
+        "Flaps 20 are lowered at 108 kt (limit 95 KIAS); then a go-around and a second approach.",
+        rate_hz=4.0,
     ),
     Sortie(
-        "zz-nmc/nmc_descent.csv", FENWICK, None, _fast_descent, (("pilot", 88.0), ("copilot", 72.0), ("rear", 60.0), ("main_fuel", 104.0)), TOURER,
+        "zz-nmc/nmc_descent.csv",
+        FENWICK,
+        None,
+        plans.fast_descent,
+        (("pilot", 88.0), ("copilot", 72.0), ("rear", 60.0), ("main_fuel", 104.0)),
+        TOURER,
         Habit(id="tuff", clock="elapsed_s", encoding="utf-8-sig"),
         "commas, units in brackets, UTF-8 with a byte-order mark, elapsed seconds only: no date",
         "A descent with power on goes beyond V_NE for a good while. No date: times count from the first row.",
         rate_hz=4.0,
     ),
     Sortie(
-        "zz-nmj/C30-008_0930.parquet", CORRAN, at(9, 30), _mach, (("pilot", 84.0), ("copilot", 82.0), ("cabin", 300.0), ("baggage", 60.0), ("main_fuel", 1125.0)), JET,
+        "zz-nmj/C30-008_0930.parquet",
+        CORRAN,
+        at(9, 30),
+        plans.mach,
+        (("pilot", 84.0), ("copilot", 82.0), ("cabin", 300.0), ("baggage", 60.0), ("main_fuel", 1125.0)),
+        JET,
         Habit(id="quartz", parquet="ms", unit_metadata=True, rates="blanks", states="words", vocabulary="trade"),
         "Parquet, UTC stamps, units and registration in the metadata, states as words, slow channels null between "
         "their values",
-        "A leg at FL320 drifts beyond Mach 0.70 for about half a minute.", air=(5.0, 5.0),
+        "A leg at FL320 drifts beyond Mach 0.70 for about half a minute.",
+        air=(5.0, 5.0),
         rates=(("fuel_mass", 1.0), ("static_air_temperature", 1.0), ("flap_angle", 1.0), ("gear_down", 1.0)),
         facts=("registration",),
     ),
     Sortie(
-        "zz-nmj/C30-008_b.parquet", CORRAN, None, _hard_landing, (("pilot", 84.0), ("copilot", 82.0), ("cabin", 300.0), ("baggage", 40.0), ("main_fuel", 950.0)), JET,
+        "zz-nmj/C30-008_b.parquet",
+        CORRAN,
+        None,
+        plans.hard_landing,
+        (("pilot", 84.0), ("copilot", 82.0), ("cabin", 300.0), ("baggage", 40.0), ("main_fuel", 950.0)),
+        JET,
         Habit(id="beryl", parquet="elapsed", units="si", vocabulary="upper", rates="same"),
         "Parquet, elapsed seconds, SI units, upper-case names; registration in the metadata",
-        "Little flare: a hard landing. No date.", air=(-3.0, 6.0), facts=("registration", "recorder_serial"),
+        "Little flare: a hard landing. No date.",
+        air=(-3.0, 6.0),
+        facts=("registration", "recorder_serial"),
     ),
-)  # fmt: skip
+)
 
 EMPTY = {"ZZ-NMA": 640.0, "ZZ-NMC": 720.0, "ZZ-NMJ": 2750.0}
 FUEL_DENSITY = {"ZZ-NMA": 0.72, "ZZ-NMC": 0.72, "ZZ-NMJ": 0.80}

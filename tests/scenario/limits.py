@@ -9,6 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+
 from scenario.air import DEG, FT, KT, Array
 from scenario.flight import Flight
 from scenario.sensors import beyond
@@ -79,7 +80,7 @@ class Excess:
 
 
 def excesses(flight: Flight, joining: float = 1.0) -> list[Excess]:
-    """Every true stretch beyond an airframe limit between lift-off and touchdown, stretches nearer than `joining` as one."""
+    """Every true stretch beyond an airframe limit in flight; stretches nearer than `joining` s count as one."""
     airborne = (flight["weight_on_wheels"] < 0.5) & (flight.time > 0)
     highest, lowest = load_factor_limits(flight)
     indicated = flight["indicated_airspeed"] / KT

@@ -15,6 +15,7 @@ if __name__ == "__main__":  # run as a script: `scenario` is the folder's name
     sys.path.insert(0, str(HERE.parent))
 
 import numpy as np  # noqa: E402
+
 from scenario.air import FT_MIN, KT  # noqa: E402
 from scenario.airframes import interpolate  # noqa: E402
 from scenario.day import DAY, Sortie, flown, recorded  # noqa: E402
@@ -91,7 +92,8 @@ def truth_of(sortie: Sortie, flight: Flight, truth: Truth) -> dict[str, Any]:
                     for a, b in zip(flight.marked("take_off"), flight.marked("touchdown"), strict=True)],
         "mass_kg": {"take_off": _round(flight["mass"][round(flight.marked("take_off")[0] / STEP)], 1),
                     "landing": _round(flight["mass"][round(flight.marked("touchdown")[-1] / STEP)], 1)},
-        "load_factor_g": {"maximum": _round(np.max(flight["load_factor"])), "minimum": _round(np.min(flight["load_factor"]))},
+        "load_factor_g": {"maximum": _round(np.max(flight["load_factor"])),
+                          "minimum": _round(np.min(flight["load_factor"]))},
         "expected": expected,
         "absent": [family for family in FAMILIES if family not in families],
         "touchdowns": true_touchdowns(flight, truth),
@@ -153,8 +155,10 @@ def in_words(row: dict[str, Any]) -> str:
     tail = {"undecided": ", between samples", "found": ""}[row["expect"]] + (
         ", cut by the gap" if row["cut_by"] else ""
     )
-    return (f"{row['family']} {row['true_peak']:.{places}f}{' ' * bool(row['unit'])}{row['unit']} (limit {row['limit']:g}) at "
-            f"{row['true_peak_s']:.1f} s, beyond for {row['true_end_s'] - row['true_start_s']:.2f} s{tail}")  # fmt: skip
+    peak = f"{row['true_peak']:.{places}f} {row['unit']}".rstrip()
+    lasting = row["true_end_s"] - row["true_start_s"]
+    return (f"{row['family']} {peak} (limit {row['limit']:g}) at {row['true_peak_s']:.1f} s, "
+            f"beyond for {lasting:.2f} s{tail}")  # fmt: skip
 
 
 def readme(truth: dict[str, Any]) -> str:
@@ -171,7 +175,7 @@ def readme(truth: dict[str, Any]) -> str:
         "",
         "`fleet.yaml` names the aeroplanes, `aircraft/` their limits, `loading/` who and what was on board;",
         "`channels/larkspur.yaml` settles what one recorder leaves open.",
-        "The figures below are the truth, not what a tool should print to the last digit: recorders sample, and add noise.",
+        "The figures below are the truth; a tool sees it only through recorders that sample and add noise.",
         "",
     ]  # fmt: skip
     for sortie in DAY:
@@ -180,15 +184,18 @@ def readme(truth: dict[str, Any]) -> str:
         lines += [
             f"## {sortie.path}",
             "",
-            f"{facts['registration']}, {start}, {facts['recorded_s'] / 60:.1f} min at {facts['rate_hz']:g} Hz. {sortie.story}",
+            f"{facts['registration']}, {start}, {facts['recorded_s'] / 60:.1f} min at {facts['rate_hz']:g} Hz.",
+            sortie.story,
             "",
             f"- recorder: {sortie.habit_words}",
         ]
         lines += [f"- truth: {in_words(row)}" for row in facts["expected"]] or ["- truth: nothing beyond a limit"]
         touch = facts["touchdowns"][-1]
         if touch["sink_rate_ft_min"] > 400:
-            lines.append(f"- truth: touchdown at {touch['time_s']:.1f} s with {touch['sink_rate_ft_min']:.0f} ft/min, "
-                         f"{touch['peak_load_factor_g']:.2f} g (recorded: {touch['recorded_load_factor_g']:.2f} g)")  # fmt: skip
+            felt = f"{touch['peak_load_factor_g']:.2f} g (recorded: {touch['recorded_load_factor_g']:.2f} g)"
+            lines.append(
+                f"- truth: touchdown at {touch['time_s']:.1f} s, {touch['sink_rate_ft_min']:.0f} ft/min, {felt}"
+            )
         lines += [f"- not flight: one sample of {s['load_factor_g']:g} g at {s['time_s']:g} s" for s in facts["spikes"]]
         lines += [f"- no rows from {a:.1f} s to {b:.1f} s" for a, b in facts["gaps"]]
         lines.append("")
