@@ -48,12 +48,16 @@ class LevelSpec:
 
 @dataclass(frozen=True, slots=True)
 class Allowance:
-    """Time above the limit and up to `share` of it that is allowed; window: s, None for a flight, 0 for an event."""
+    """Time above the limit and up to `share` of it (or up to a value, where not `of_limit`) that is allowed.
+
+    within : event, flight or window (of `window` s, sliding).
+    """
 
     share: float
     seconds: float
-    within: str  # event, flight, window
+    within: str
     window: float | None = None
+    of_limit: bool = True
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,8 +139,10 @@ class Compiled:
         scaled = limit * level.value
         small = COLLAPSE.get(self.quantity.kind, 0.0)
         if small:
-            return np.where(np.abs(limit) < small, limit, scaled) if np.ndim(limit) else (
-                limit if abs(float(limit)) < small else scaled
+            return (
+                np.where(np.abs(limit) < small, limit, scaled)
+                if np.ndim(limit)
+                else (limit if abs(float(limit)) < small else scaled)
             )
         return scaled
 

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from exceed.core.intervals import Array
 from exceed.core.trace import Grid, Trace
-from exceed.judge import peaks
+from exceed.judge import certainty
 from exceed.judge.block import SIZE, Block
 from exceed.judge.compiled import Compiled
 from exceed.judge.excursions import Edges, Index, Runs, find_edges, pair
@@ -34,8 +34,10 @@ REASONS: tuple[str, ...] = (
 )
 ASSESSED, REJECTED, NO_VALUE, NO_LIMIT, NO_CONDITION, FAULTY, RATE = range(7)
 
-# of a peak that the next samples cannot size, four intervals are the shortest excursion (see peaks.shortest_sized)
+# tolerance on the interval when a rule says what it must see
 MUST_SEE_TOLERANCE = 1.1
+# the room between samples is at most so many times the largest step between neighbours (see certainty.upward_room)
+ROOM_PER_STEP = 4.0
 
 
 @dataclass(slots=True)
@@ -232,7 +234,7 @@ def _count_seconds(
     shares = block.shares[core]
     slow = None
     if rule.must_see is not None:
-        slow = block.too_slow(rule.must_see * MUST_SEE_TOLERANCE / peaks.SHORTEST_INTERVALS)[core]
+        slow = block.too_slow(rule.must_see * MUST_SEE_TOLERANCE / certainty.INTERVALS_TO_SIZE)[core]
         if holds is not None:
             slow = np.where((known & ~holds)[core], 0.0, slow)
     codes: NDArray[np.int8] | None = None
@@ -322,11 +324,11 @@ def _find_candidates(scan: RuleScan, rule: Compiled, block: Block, live: Mask, v
     near = np.where(inside, deciding, -np.inf)
     # the room between samples cannot exceed a few times the largest step in the block: a bound that costs one pass
     step = block.keep(("step", rule.judged), lambda: _largest_step(value))
-    if float(np.max(near[core])) + peaks.ROOM_PER_STEP * step <= 0.0:
+    if float(np.max(near[core])) + ROOM_PER_STEP * step + _white(block, rule) <= 0.0:
         return
     room = block.keep(
         ("room", rule.judged, rule.side),
-        lambda: peaks.upward_room(block.time, value, rule.side, interval=block.grid.interval),
+        lambda: _room(block, rule, value),
     )
     hopeful = inside & (deciding + room > 0.0)
     if not hopeful[core].any():
@@ -338,6 +340,26 @@ def _find_candidates(scan: RuleScan, rule: Compiled, block: Block, live: Mask, v
     places = places[(places >= core.start) & (places < core.stop)]
     if len(places) and n:
         scan.candidates.append(places + block.offset)
+
+
+def _white(block: Block, rule: Compiled) -> float:
+    """What noise and resolution of the judged channel can add to the room, in its unit."""
+    channel = block.trace.channels.get(rule.judged)
+    if channel is None:
+        return 0.0
+    return 6.0 * float(np.hypot(channel.noise or 0.0, channel.resolution / np.sqrt(12.0)))
+
+
+def _room(block: Block, rule: Compiled, value: Array) -> Array:
+    channel = block.trace.channels.get(rule.judged)
+    return certainty.upward_room(
+        block.time,
+        value,
+        rule.side,
+        interval=block.grid.interval,
+        noise=(channel.noise or 0.0) if channel is not None else 0.0,
+        resolution=channel.resolution if channel is not None else 0.0,
+    )
 
 
 def _largest_step(value: Array) -> float:
