@@ -193,6 +193,16 @@ class LogPlots:
     declared: Mapping[str, str] = field(default_factory=dict)
 
 
+@dataclass(frozen=True, slots=True)
+class FeedRow:
+    """Whether a log can feed a rule, for `describe`. `lacks` says what is missing, empty where nothing is."""
+
+    rule_set: str
+    rule: str
+    title: str
+    lacks: tuple[str, ...] = ()
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class LogOutcome:
     """What one log gave. Only `path`, `status` and, for a failed one, `problem` are always known.
@@ -223,6 +233,7 @@ class LogOutcome:
     rule_sets: tuple[str, ...] = ()
     declared: Mapping[str, str] = field(default_factory=dict)
     notes: tuple[str, ...] = ()
+    feeds: tuple[FeedRow, ...] = ()
     plots: LogPlots | None = None
 
 

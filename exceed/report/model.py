@@ -10,7 +10,7 @@ from typing import Any, Literal
 
 from pydantic import BaseModel, ConfigDict, Field
 
-FORMAT = "exceed/summary/1"
+from exceed.report.summary import FORMAT
 
 Severity = Literal["advisory", "caution", "warning"]
 Certainty = Literal["doubtful", "possible", "likely", "established"]

@@ -114,7 +114,7 @@ def not_assessed(summary: Dict, screen: Screen) -> list[str]:
     lines: list[str] = []
     for recording in ordered(summary):
         if recording["status"] == "failed":
-            lines += _problem(recording, "not read", screen)
+            lines += problem_lines(recording, "not read", screen)
     for row in summary["skipped"]:
         lines += screen.wrap(f"{screen.safe(row['path'])}: skipped: {screen.safe(row['reason'])}", "  ", "    ")
     lines += _no_limits(summary, screen)
@@ -163,7 +163,8 @@ def _owner(recording: Dict, screen: Screen) -> str:
     return screen.safe(recording["registration"] or "no registration")
 
 
-def _problem(recording: Dict, what: str, screen: Screen) -> list[str]:
+def problem_lines(recording: Dict, what: str, screen: Screen) -> list[str]:
+    """Why a log was not read, or not wholly, and what to do."""
     problem = recording["problem"] or {"place": "", "problem": "no reason given", "expected": "", "do": ""}
     place = problem["place"] or recording["path"]
     lines = screen.wrap(f"{screen.safe(place)}: {what}: {screen.safe(problem['problem'])}", "  ", "    ")

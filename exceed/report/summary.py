@@ -16,10 +16,10 @@ from exceed.core.findings import CAUTIONS, CERTAINTIES, SEVERITIES, Coverage, Ev
 from exceed.core.outcome import AircraftInfo, ChannelRow, DayOutcome, FlightRow, LogOutcome, MethodRow
 from exceed.core.quantities import QUANTITIES
 from exceed.core.units import UNITS
-from exceed.report.model import FORMAT
 from exceed.report.show import iso_utc
 
 Dict = dict[str, Any]
+FORMAT = "exceed/summary/1"
 # p at which a certainty begins; rounding a probability never carries it over one of these
 _STEPS = (0.05, 0.5, 0.95)
 

@@ -28,6 +28,7 @@ from exceed.core.outcome import (
     DayOutcome,
     EnvelopeLine,
     EventPlot,
+    FeedRow,
     FlightRow,
     JudgedWith,
     LogOutcome,
@@ -389,6 +390,13 @@ def aerobatic() -> LogOutcome:
         findings=findings,
         rule_sets=("airframe",),
         notes=("position error held beyond the ends of its table",),
+        feeds=(
+            FeedRow("airframe", "load-factor-high", "Positive load factor"),
+            FeedRow("airframe", "never-exceed", "Never-exceed speed"),
+            FeedRow("airframe", "flaps-extended", "Flaps-extended speed", ("a flap channel",)),
+            FeedRow("landing", "hard-landing", "Hard landing", ("height above ground", "vertical speed")),
+            FeedRow("landing", "bounce", "Bounced landing", ("height above ground", "vertical speed")),
+        ),
         plots=LogPlots(
             "zz-nma/a.csv",
             tuple(plot_of(found) for found in (over_g, saturated, near, negative, speed, hidden)),

@@ -12,6 +12,7 @@ FOLDER = HERE / "golden"
 if __name__ == "__main__":
     sys.path.insert(0, str(HERE.parent))
 
+from exceed.report.describe import describe  # noqa: E402
 from exceed.report.summary import summarise  # noqa: E402
 from exceed.report.table import render_table  # noqa: E402
 from exceed.report.write import to_json  # noqa: E402
@@ -35,6 +36,21 @@ def table(name: str) -> str:
     return render_table(summarise(getattr(examples, day)()), width=width, **more)
 
 
+# file name -> log, width
+NOTES: dict[str, tuple[str, int | None]] = {
+    "describe-80.txt": ("aerobatic", 80),
+    "describe-piped.txt": ("aerobatic", None),
+    "describe-bare-60.txt": ("bare", 60),
+    "describe-failed-80.txt": ("failed", 80),
+}
+
+
+def note(name: str) -> str:
+    """The description that a golden file should hold."""
+    log, width = NOTES[name]
+    return describe(getattr(examples, log)(), width=width)
+
+
 def summary_text() -> str:
     """The example day's JSON, our version left out."""
     summary = summarise(examples.day())
@@ -46,6 +62,8 @@ def main() -> None:
     FOLDER.mkdir(exist_ok=True)
     for name in TABLES:
         (FOLDER / name).write_text(table(name), encoding="utf-8")
+    for name in NOTES:
+        (FOLDER / name).write_text(note(name), encoding="utf-8")
     (FOLDER / "day.json").write_text(summary_text(), encoding="utf-8")
 
 
