@@ -13,7 +13,7 @@ import pyarrow.parquet as pq
 import pytest
 import yaml
 
-from scenario import limits
+from scenario import big_log, limits
 from scenario.day import DAY, EMPTY, FUEL_DENSITY, SERIALS, Sortie, flown, recorded
 from scenario.dialects import write
 from scenario.make_sample_logs import readme, truth_of
@@ -171,3 +171,20 @@ def test_the_fleet_file_knows_every_recorder() -> None:
     assert {row["registration"]: row["recorder_serial"] for row in fleet["aircraft"]} == SERIALS
     for row in fleet["aircraft"]:
         assert (LOGS / row["aircraft"]).is_file()
+
+
+def test_the_benchmark_log_holds_its_events(tmp_path: Path) -> None:
+    facts = big_log.make(tmp_path, rows=10_000)
+    table = pq.read_table(tmp_path / "big.parquet")
+    assert (table.num_rows, table.num_columns) == (10_000, 31)
+    assert {row["family"] for row in facts["events_in_a_flight"]} == {
+        "positive load factor", "maximum speed", "flap speed"
+    }  # fmt: skip
+    load = table["NZ [g]"].to_numpy()
+    assert np.max(load) > 3.8
+    (pull,) = (row for row in facts["events_in_a_flight"] if row["family"] == "positive load factor")
+    beyond = np.flatnonzero(load > 3.8) / 8.0
+    first_flight = beyond[beyond < facts["rows_in_a_flight"] / 8.0]
+    assert first_flight.min() == pytest.approx(pull["start_s"], abs=0.2)
+    assert first_flight.max() == pytest.approx(pull["end_s"], abs=0.2)
+    assert (tmp_path / "big.csv").read_text().count("\n") == 10_001
