@@ -9,81 +9,18 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterator
 
-from scenario.air import FT, FT_MIN, G0, KT, true_from_calibrated
-from scenario.flight import Command, Manoeuvre, Sim, sound_speed
+from scenario.air import FT, FT_MIN, G0, KT
+from scenario.flight import Command, Manoeuvre, Sim
+from scenario.pilot import configured, roll_to, steady, wrap
 
 Shape = Callable[[float], float]
-
-
-def _wrap(angle: float) -> float:
-    return (angle + math.pi) % (2.0 * math.pi) - math.pi
-
-
-def _configured(sim: Sim, **command: float) -> Command:
-    made = Command(**command)  # type: ignore[arg-type]
-    made.flaps_deg, made.gear_down, made.airbrakes_out = sim.flaps_wanted, sim.gear_wanted, sim.airbrakes_wanted
-    return made
-
-
-def _roll_to(sim: Sim, bank: float, rate: float | None = None) -> float:
-    most = rate or sim.airframe.roll_rate
-    return max(-most, min(most, 2.0 * _wrap(bank - sim.path_bank)))
-
-
-def _thrust(sim: Sim, wanted: float) -> tuple[float, float]:
-    """Longitudinal load factor that the aeroplane can give for the one wanted, and the power for it."""
-    equivalent = max(sim.equivalent_airspeed, 15.0)
-    idle = sim.airframe.longitudinal(equivalent, sim.load_factor, 0.0)
-    if sim.airbrakes_wanted:
-        idle -= 0.10
-    full = sim.airframe.longitudinal(equivalent, sim.load_factor, 1.0)
-    extended = 0.0012 * sim.flaps_deg + (0.03 * sim.gear if sim.airframe.retractable else 0.0)
-    idle, full = idle - extended, full - extended
-    given = max(idle, min(full, wanted))
-    return given, max(0.0, min(1.0, (given - idle) / (full - idle)))
-
-
-def _true_target(sim: Sim, kcas: float, mach: float | None) -> float:
-    target = true_from_calibrated(kcas * KT, sim.static_pressure, sim.static_temperature)
-    return target if mach is None else min(target, mach * sound_speed(sim.static_temperature))
-
-
-def _steady(
-    sim: Sim,
-    rise: float,
-    bank: float,
-    kcas: float,
-    mach: float | None = None,
-    quick: float = 0.6,
-    brake: bool = False,
-) -> Command:
-    """Hold a vertical speed in m/s, a bank in rad and a calibrated airspeed in kt (or a Mach number below it)."""
-    speed_error = _true_target(sim, kcas, mach) - sim.speed
-    wanted_sine = rise / max(sim.speed, 10.0)
-    if wanted_sine > 0.0:  # speed before height: climb only as steeply as the thrust holds the speed
-        most = _thrust(sim, 9.0)[0] - 0.06 * max(speed_error, 0.0) / G0
-        wanted_sine = min(wanted_sine, max(most, 0.01))
-    elif brake and speed_error < 0.0:
-        wanted_sine = max(wanted_sine, _thrust(sim, -9.0)[0] - 0.06 * speed_error / G0)
-    wanted_path = math.asin(max(-0.6, min(0.6, wanted_sine)))
-    path = sim.path_angle
-    path_rate = max(-0.12, min(0.12, quick * (wanted_path - path)))
-    cosine = math.cos(sim.path_bank)
-    if abs(cosine) < 0.2:
-        cosine = math.copysign(0.2, cosine)
-    normal = (math.cos(path) + sim.speed * path_rate / G0) / cosine
-    # rolling through the vertical nobody pushes for height
-    normal = max(-1.3, min(3.2, normal))
-    # propulsion cannot give more than it has, and the pilot does not slam it
-    along, power = _thrust(sim, math.sin(path) + max(-0.12, min(0.12, 0.15 * speed_error / G0)))
-    return _configured(sim, load_factor=normal, roll_rate=_roll_to(sim, bank), longitudinal=along, power=power)
 
 
 def standing(seconds: float) -> Manoeuvre:
     def run(sim: Sim) -> Iterator[Command]:
         sim.label, end = "standing", sim.time + seconds
         while sim.time < end:
-            yield _configured(sim, ground=True, power=0.0)
+            yield configured(sim, ground=True, power=0.0)
 
     return run
 
@@ -94,9 +31,9 @@ def taxi(seconds: float, to_deg: float | None = None, speed_kt: float = 12.0) ->
     def run(sim: Sim) -> Iterator[Command]:
         sim.label, end = "taxi", sim.time + seconds
         final = sim.runway if to_deg is None else math.radians(to_deg)
-        turn = _wrap(final - sim.heading)
+        turn = wrap(final - sim.heading)
         start = sim.time
-        while sim.time < end or sim.speed > 0.05 or abs(_wrap(final - sim.heading)) > 0.001:
+        while sim.time < end or sim.speed > 0.05 or abs(wrap(final - sim.heading)) > 0.001:
             left = end - sim.time
             inside = (sim.time - start) / seconds
             wanted = 0.0 if left < 8.0 else speed_kt * KT
@@ -108,7 +45,7 @@ def taxi(seconds: float, to_deg: float | None = None, speed_kt: float = 12.0) ->
                 yaw = turn / (0.5 * seconds) * (1.0 - math.cos(2.0 * math.pi * (inside - 0.2) / 0.5))
             elif left < 0.0:
                 sim.heading, acceleration = final, -0.8
-            yield _configured(sim, longitudinal=acceleration / G0, yaw_rate=yaw, power=0.12)
+            yield configured(sim, longitudinal=acceleration / G0, yaw_rate=yaw, power=0.12)
 
     return run
 
@@ -129,7 +66,7 @@ def take_off(flaps_deg: float = 0.0) -> Manoeuvre:
                 pitch = min(pitch + 0.0008, airframe.incidence(1.0, equivalent, sim.mass, sim.flaps_deg))
                 if pitch >= airframe.incidence(1.0, equivalent, sim.mass, sim.flaps_deg) - 1e-9:
                     break
-            yield _configured(sim, longitudinal=along, ground_pitch=pitch, power=1.0)
+            yield configured(sim, longitudinal=along, ground_pitch=pitch, power=1.0)
         sim.longitudinal = along
         sim.lift_off()
 
@@ -150,7 +87,7 @@ def climb(
                 sim.flaps_wanted = 0.0
             left = to_ft * FT - sim.pressure_altitude
             rise = min(rate_ft_min * FT_MIN, 0.25 * left, 1.5 + 0.12 * max(sim.height, 0.0))
-            yield _steady(sim, rise, 0.0, kcas, mach)
+            yield steady(sim, rise, 0.0, kcas, mach)
 
     return run
 
@@ -162,7 +99,7 @@ def level(seconds: float, kcas: float, alt_ft: float, mach: float | None = None,
         sim.label, end = ("cruise" if bank_deg == 0.0 else "turn"), sim.time + seconds
         while sim.time < end:
             rise = max(-5.0, min(5.0, 0.25 * (alt_ft * FT - sim.pressure_altitude)))
-            yield _steady(sim, rise, math.radians(bank_deg), kcas, mach)
+            yield steady(sim, rise, math.radians(bank_deg), kcas, mach)
 
     return run
 
@@ -183,7 +120,7 @@ def rough_air(
                 sim.mark("gust")
                 left.pop(0)
             rise = max(-3.0, min(3.0, 0.15 * (alt_ft * FT - sim.pressure_altitude)))
-            yield _steady(sim, rise, 0.0, kcas, quick=0.35)
+            yield steady(sim, rise, 0.0, kcas, quick=0.35)
         sim.turbulence, sim.gust = 0.0, None
 
     return run
@@ -195,10 +132,10 @@ def turn_to(heading_deg: float, kcas: float, alt_ft: float, bank_deg: float = 25
     def run(sim: Sim) -> Iterator[Command]:
         sim.label, wanted = "turn", math.radians(heading_deg)
         most = math.radians(bank_deg)
-        while abs(_wrap(wanted - sim.path_heading)) > 0.01 or abs(sim.path_bank) > 0.02:
-            bank = max(-most, min(most, 1.4 * _wrap(wanted - sim.path_heading)))
+        while abs(wrap(wanted - sim.path_heading)) > 0.01 or abs(sim.path_bank) > 0.02:
+            bank = max(-most, min(most, 1.4 * wrap(wanted - sim.path_heading)))
             rise = max(-4.0, min(4.0, 0.25 * (alt_ft * FT - sim.pressure_altitude)))
-            yield _steady(sim, rise, bank, kcas)
+            yield steady(sim, rise, bank, kcas)
 
     return run
 
@@ -211,7 +148,7 @@ def steep_turn(bank_deg: float, seconds: float, n: float | None, alt_ft: float, 
         bank = math.radians(bank_deg)
         while sim.time < start + seconds:
             rise = max(-4.0, min(4.0, 0.3 * (alt_ft * FT - sim.pressure_altitude)))
-            command = _steady(sim, rise, bank, kcas)
+            command = steady(sim, rise, bank, kcas)
             if n is not None and abs(sim.path_bank) > 0.8 * abs(bank):
                 share = min(1.0, (sim.time - start) / 6.0)
                 easing = sim.time < sim.stalled_until
@@ -247,7 +184,7 @@ def pull(n: float, rise_s: float = 1.0, hold_s: float = 0.4, fall_s: float = 1.0
         while sim.time < start + rise_s + hold_s + fall_s:
             wanted = before + (n - before) * shape(sim.time - start)
             along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, power)
-            yield _configured(sim, load_factor=wanted, longitudinal=along, power=power, lag=0.01)
+            yield configured(sim, load_factor=wanted, longitudinal=along, power=power, lag=0.01)
 
     return run
 
@@ -267,7 +204,7 @@ def loop(n: float, top_n: float = 1.8) -> Manoeuvre:
             along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, power)
             now = sim.path_angle
             turned, last = turned + abs(now - last), now
-            yield _configured(sim, load_factor=wanted, longitudinal=along, power=power, lag=0.35)
+            yield configured(sim, load_factor=wanted, longitudinal=along, power=power, lag=0.35)
 
     return run
 
@@ -281,9 +218,9 @@ def roll(rate_deg_s: float, n: float = 1.0, turns: float = 1.0) -> Manoeuvre:
         goal = 2.0 * math.pi * turns - 0.25 * abs(rate)
         while turned < goal:
             now = sim.path_bank
-            turned, last = turned + abs(_wrap(now - last)), now
+            turned, last = turned + abs(wrap(now - last)), now
             along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, 0.9)
-            yield _configured(sim, load_factor=n, roll_rate=rate, longitudinal=along, power=0.9)
+            yield configured(sim, load_factor=n, roll_rate=rate, longitudinal=along, power=0.9)
 
     return run
 
@@ -294,8 +231,8 @@ def inverted(seconds: float, kcas: float) -> Manoeuvre:
     def run(sim: Sim) -> Iterator[Command]:
         sim.label, start = "inverted", sim.time
         while sim.time < start + seconds:
-            command = _steady(sim, 0.0, math.pi, kcas)
-            if abs(_wrap(sim.path_bank - math.pi)) > 0.8:
+            command = steady(sim, 0.0, math.pi, kcas)
+            if abs(wrap(sim.path_bank - math.pi)) > 0.8:
                 command.load_factor = 0.3
             yield command
 
@@ -311,8 +248,8 @@ def dive(angle_deg: float, to_kcas: float, power: float = 0.4) -> Manoeuvre:
             rate = max(-0.12, min(0.12, 1.0 * (wanted - sim.path_angle)))
             normal = math.cos(sim.path_angle) + sim.speed * rate / G0
             along = sim.airframe.longitudinal(sim.equivalent_airspeed, sim.load_factor, power)
-            roll_rate = _roll_to(sim, 0.0)
-            yield _configured(sim, load_factor=normal, roll_rate=roll_rate, longitudinal=along, power=power)
+            roll_rate = roll_to(sim, 0.0)
+            yield configured(sim, load_factor=normal, roll_rate=roll_rate, longitudinal=along, power=power)
 
     return run
 
@@ -331,7 +268,7 @@ def descend(
         sim.label, sim.airbrakes_wanted = "descent", airbrakes
         while sim.pressure_altitude > to_ft * FT + 15.0:
             rise = -min(rate_ft_min * FT_MIN, 1.0 + 0.2 * (sim.pressure_altitude - to_ft * FT))
-            yield _steady(sim, rise, 0.0, kcas, mach, brake=True)
+            yield steady(sim, rise, 0.0, kcas, mach, brake=True)
         sim.airbrakes_wanted = False
 
     return run
@@ -361,7 +298,7 @@ def approach(
         while sim.height > down_to_ft * FT:
             while schedule and sim.height < schedule[0][0] * FT:
                 sim.flaps_wanted = schedule.pop(0)[1]
-            yield _steady(sim, -sim.speed * math.sin(math.radians(angle_deg)), 0.0, kcas)
+            yield steady(sim, -sim.speed * math.sin(math.radians(angle_deg)), 0.0, kcas)
 
     return run
 
@@ -379,14 +316,14 @@ def landing(sink_ft_min: float, impact_s: float = 0.18) -> Manoeuvre:
             share = max(0.0, min(1.0, sim.height / start_height))
             # steep at first, then the asked rate over the last quarter
             rise = final + (start_rise - final) * max(0.0, (share - 0.25) / 0.75)
-            yield _steady(sim, rise, 0.0, kcas - 4.0, quick=2.0)
+            yield steady(sim, rise, 0.0, kcas - 4.0, quick=2.0)
         sim.touch_down()
         incidence = sim.airframe.incidence(1.0, sim.equivalent_airspeed, sim.mass, sim.flaps_deg)
         start, pitch = sim.time, max(0.02, incidence)
         while sim.speed > 10.0 * KT:
             inside = sim.time - start
             nose = 0.02 + (pitch - 0.02) * max(0.0, 1.0 - inside / 2.5)
-            yield _configured(sim, longitudinal=-0.05 - 0.15 * min(1.0, inside / 4.0), ground_pitch=nose, power=0.05)
+            yield configured(sim, longitudinal=-0.05 - 0.15 * min(1.0, inside / 4.0), ground_pitch=nose, power=0.05)
         sim.mark("landed")
         sim.flaps_wanted = 0.0
 
