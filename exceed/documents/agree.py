@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
@@ -12,7 +13,6 @@ from exceed.documents.conditions import AIRBORNE, Condition, never, state_words
 from exceed.documents.fields import Faults, Path, an, nearest
 from exceed.documents.limits import ConstantLimit, FactLimit, RelativeLimit, TableLimit
 from exceed.documents.values import Value, expected_of
-import itertools
 
 if TYPE_CHECKING:
     from exceed.documents.rules import Level, Rule
