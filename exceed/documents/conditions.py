@@ -46,6 +46,8 @@ STATES: dict[str, dict[str, int]] = {
     "weight_on_wheels": {"ground": 1, "air": 0},
     "stall_warning": {},
     "on_tow": {},
+    "on_winch": {},
+    "gear_moving": {"moving": 1, "still": 0},
     "": {"up": 0, "down": 1, "in": 0, "out": 1, "closed": 0, "open": 1},
 }
 _COMMON = {"on": 1, "off": 0, "yes": 1, "no": 0, "true": 1, "false": 0, "1": 1, "0": 0}

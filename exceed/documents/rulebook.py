@@ -98,7 +98,7 @@ class RuleBook:
 def layer(sets: Iterable[RuleSet]) -> RuleBook:
     """Put sets on top of one another, later ones over earlier ones.
 
-    A later rule of the same id replaces the earlier one if it says `override: true`, and is an error otherwise. The
+    The very same rule in two sets counts once. A later rule of the same id replaces the earlier one if it says `override: true`, and is an error otherwise. The
     same file given twice counts once, and is noted. Raises DocumentError with all problems.
     """
     problems: list[Problem] = []
@@ -132,6 +132,8 @@ def layer(sets: Iterable[RuleSet]) -> RuleBook:
                     notes.append(
                         f"rule '{rule.id}' of {one.name} says 'override' and there is no earlier rule of this id"
                     )
+            elif _same(rule, before):
+                continue
             elif rule.override:
                 replaced.append(Replaced(rule.id, before.rule_set or "an earlier set", rule.rule_set or one.name))
             else:
@@ -148,3 +150,9 @@ def layer(sets: Iterable[RuleSet]) -> RuleBook:
     if problems:
         raise DocumentError(*problems)
     return RuleBook(tuple(taken), tuple(rules.values()), tuple(replaced), tuple(notes), quantities)
+
+
+def _same(one: Rule, other: Rule) -> bool:
+    """Whether two rules differ in nothing but where they stand."""
+    blank = {"place": "", "rule_set": "", "override": False}
+    return one.model_copy(update=blank) == other.model_copy(update=blank)
