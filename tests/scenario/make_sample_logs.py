@@ -75,7 +75,7 @@ def truth_of(sortie: Sortie, flight: Flight, truth: Truth) -> dict[str, Any]:
             "true_end_s": _round(excess.end_s - shift), "cut_by": None,
         }  # fmt: skip
         if excess.family == "positive load factor" and sortie.hide_peak:
-            row["expect"] = "undecided"
+            row["expect"] = "hidden"
             row["largest_sample"] = _round(np.nanmax(truth.channels["load_factor"]))
         if any(begin < excess.end_s - shift < finish for begin, finish in truth.gaps):
             row["cut_by"] = "gap"
@@ -152,7 +152,7 @@ def in_words(row: dict[str, Any]) -> str:
         return (f"stall at {row['time_s']:.1f} s: {row['calibrated_airspeed_kt']:.1f} KCAS at "
                 f"{row['load_factor_g']:.2f} g, stall speed {row['stall_speed_kt']:.1f} KCAS")  # fmt: skip
     places = 1 if row["unit"] == "kt" else 3
-    tail = {"undecided": ", between samples", "found": ""}[row["expect"]] + (
+    tail = {"hidden": ", between samples", "found": ""}[row["expect"]] + (
         ", cut by the gap" if row["cut_by"] else ""
     )
     peak = f"{row['true_peak']:.{places}f} {row['unit']}".rstrip()

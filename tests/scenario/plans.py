@@ -39,7 +39,7 @@ def hidden_over_g() -> list[Manoeuvre]:
     """Dual; a short pull beyond the lower limit of the heavier aeroplane."""
     return [
         *out(4000, 85, 900), do.level(40, 120, 4000), do.turn_to(60, 115, 4000), do.level(20, 140, 4000),
-        do.loop(3.6), do.recover(4000, 100, 30), do.dive(25, 124), do.pull(4.62, 0.45, 0.0, 0.45),
+        do.loop(3.6), do.recover(4000, 100, 30), do.dive(25, 124), do.pull(4.54, 0.58, 0.0, 0.58),
         do.recover(3700, 105, 30), do.steep_turn(50, 20, None, 3700, 110), do.recover(3700, 105, 15),
         *back(98, 900, 68, LARK_FLAPS, 150),
     ]  # fmt: skip
