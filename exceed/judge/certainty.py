@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Literal
 
 import numpy as np
@@ -16,15 +17,18 @@ from exceed.judge.peaks import HALO, Array, Peak, bend, size_peak
 
 __all__ = [
     "HALO", "Peak", "Word", "cap_at_possible", "certainty_word", "crossing_time", "duration_uncertainty",
-    "estimated_span", "hidden_beyond", "highest", "is_undecided", "probability_beyond", "probability_lasting", "shortest_sized",
-    "size_peak", "upward_room", "white_noise",
+    "estimated_span", "hidden_beyond", "highest", "is_undecided", "probability_beyond", "probability_lasting",
+    "shortest_sized", "size_peak", "upward_room", "white_noise",
 ]  # fmt: skip
 
 Word = Literal["established", "likely", "possible", "doubtful"]
 ESTABLISHED, LIKELY, POSSIBLE = 0.95, 0.5, 0.05
 CAPPED = 0.4999  # a method that can make nothing more than possible: below likely, also after rounding to four digits
 INTERVALS_TO_SIZE = 4.0
-_SCORES = (-1.959964, -1.0, 0.0, 1.0, 1.959964)
+_Z95 = 1.959964
+# Where the known points of a peak's distribution stand, as standard scores. The ends of the interval were fitted at 2 %
+# and 98.5 %, so that shapes unlike those fitted are covered 95 times in 100 as well.
+_SCORES = (-2.0537, -1.0, 0.0, 1.0, 1.644854, 2.1701)
 
 
 # --- words ------------------------------------------------------------------------------------------------------------
@@ -49,8 +53,7 @@ def cap_at_possible(probability: float) -> float:
 def shortest_sized(interval: float) -> float:
     """The shortest excursion, s from base to base, whose peak a channel of this sampling interval (s) can size.
 
-    Four intervals. On simulated raised cosines and half sines of 2, 3, 4 and 6 intervals the estimate's rms error is
-    SHORTEST_TABLE of the peak's height: from four on it is a few per cent (`shortest_table` in tests/judge/yardstick.py).
+    Four intervals. On simulated raised cosines and half sines SHORTEST_TABLE
     """
     return INTERVALS_TO_SIZE * interval
 
@@ -64,20 +67,28 @@ def _normal(score: float) -> float:
 
 def _ends(peak: Peak, sensor: bool) -> tuple[float, ...]:
     """The values at _SCORES, mirrored so that the extreme is a maximum; without the sensor's common error if asked."""
-    u = 0.0 if sensor else peak.standard_uncertainty
+    u = peak.standard_uncertainty
     if peak.low is None or peak.high is None:
-        spread = math.sqrt(max(peak.up**2 - u**2, 0.0))
+        spread = peak.up if sensor else math.sqrt(max(peak.up**2 - u**2, 0.0))
         return tuple(peak.side * peak.recorded + score * spread for score in _SCORES)
     below, above = peak.estimate - peak.low, peak.high - peak.estimate
     down, up = peak.down, peak.up
     if peak.side < 0:
         below, above, down, up = above, below, up, down
 
-    def rest(width: float, scores: float) -> float:
-        return math.sqrt(max(width**2 - (scores * u) ** 2, 0.0))
+    def width(total: float, stated: float, score: float) -> float:
+        sampling = math.sqrt(max(total**2 - (stated * u) ** 2, 0.0))
+        return math.hypot(sampling, score * u) if sensor else sampling
 
-    middle, z = peak.side * peak.estimate, _SCORES[-1]
-    return (middle - rest(below, z), middle - rest(down, 1.0), middle, middle + rest(up, 1.0), middle + rest(above, z))
+    middle = peak.side * peak.estimate
+    return (
+        middle - width(below, _Z95, _SCORES[0]),
+        middle - width(down, 1.0, 1.0),
+        middle,
+        middle + width(up, 1.0, 1.0),
+        middle + width(peak.outward, _SCORES[4], _SCORES[4]),
+        middle + width(above, _Z95, _SCORES[-1]),
+    )
 
 
 def _score(ends: Sequence[float], level: float) -> float:
@@ -112,8 +123,8 @@ def is_undecided(peak: Peak, level: float) -> bool:
     """Whether an extreme recorded inside `level` may truly have been beyond, and sampling or saturation is why.
 
     The sensor's accuracy alone does not make a stretch undecided: of a slow, well-sampled channel near its limit that
-    is said in one line. A peak too slow to size is not undecided but unassessed. Of a saturated one nothing better can be
-    said, whatever the lower bound of its probability.
+    is said in one line. A peak too slow to size is not undecided but unassessed. Of a saturated one nothing better
+    can be said, whatever the lower bound of its probability.
     """
     if peak.side * (peak.recorded - level) > 0:
         return False
@@ -126,7 +137,7 @@ def highest(peaks: Sequence[Peak]) -> Peak:
     """The true extreme of an excursion that has several competing peaks, all of one side.
 
     An excursion in rough air has many humps, and the highest sample need not stand on the highest one. The sampling
-    errors of humps are taken as independent and the sensor's error as common. An open or clearly highest one decides alone.
+    errors of humps are taken as independent and the sensor's error as common. An open one decides alone.
     Time and recorded value are those of the highest recorded peak; so is the rest where it has no rival.
     """
     if not peaks or len({p.side for p in peaks}) != 1:
@@ -146,16 +157,19 @@ def highest(peaks: Sequence[Peak]) -> Peak:
     for ends in every:
         chance *= np.array([_normal(_score(ends, float(x))) for x in grid])
     chance = np.maximum.accumulate(chance)
-    low, low_1, middle, high_1, high = np.interp([_normal(z) for z in _SCORES], chance, grid)
+    low, low_1, middle, high_1, outward, high = (
+        float(x) for x in np.interp([_normal(z) for z in _SCORES], chance, grid)
+    )
     u = first.standard_uncertainty
-    low, high = middle - math.hypot(middle - low, _SCORES[-1] * u), middle + math.hypot(high - middle, _SCORES[-1] * u)
+    low, high = middle - math.hypot(middle - low, _Z95 * u), middle + math.hypot(high - middle, _Z95 * u)
     down, up = math.hypot(middle - low_1, u), math.hypot(high_1 - middle, u)
+    outward = math.hypot(outward - middle, _SCORES[4] * u)
     if side < 0:
         low, high, down, up = -high, -low, up, down
-    return Peak(
-        side, first.recorded, side * float(middle), float(low), float(high), first.time, down, up, True, False,
-        max(p.ratio for p in peaks), u,
-    )  # fmt: skip
+    ratio = max(p.ratio for p in peaks)
+    return replace(
+        first, estimate=side * middle, low=low, high=high, down=down, up=up, outward=outward, sized=True, ratio=ratio
+    )
 
 
 # --- what may hide between samples ------------------------------------------------------------------------------------
@@ -196,7 +210,7 @@ def upward_room(
     """
     v = np.asarray(values, dtype=float)
     white = math.hypot(noise, resolution / math.sqrt(12.0))
-    return bend(np.asarray(time, dtype=float) / interval, v) + 6.0 * white + _SCORES[-1] * standard_uncertainty
+    return bend(np.asarray(time, dtype=float) / interval, v) + 6.0 * white + _Z95 * standard_uncertainty
 
 
 def white_noise(values: Array, block: int = 32) -> float:

@@ -2,8 +2,8 @@
 
 A recorder that samples a load factor eight times a second does not see its true peak. Here the samples about a recorded
 extreme are taken as a Gaussian process whose smoothness, length and size are not known: a grid of them is weighted by
-how well each explains the samples, and curves drawn from the mixture between the samples give the distribution of the true
-extreme. Such a model trusts itself too much where the signal is short against the sampling interval, so its spread is
+how well each explains the samples, and curves drawn from the mixture between the samples give the distribution of
+the true extreme. Such a model trusts itself too much where the signal is short against the interval, so its spread is
 widened with the *ratio* of two prediction errors: each sample near the peak is predicted from every second sample (E2)
 and from every fourth (E4). A resolved signal is predicted far better from the nearer ones, an aliased one from neither.
 
@@ -29,7 +29,7 @@ ALIASED = 0.6  # ratio above which a channel slower than SLOW cannot size a peak
 SLOW = 0.25 * 1.1  # s; the yardstick shows that 8 and 4 Hz size what they see, with 10 % tolerance on the interval
 _FINE = 8  # places a sampling interval at which curves are drawn
 _DRAWS = 128  # curves a candidate; antithetic, so the medians are steady
-_Z95 = 1.959964
+_Z95, _Z_OUT = 1.959964, 1.644854
 
 # Candidate processes: (smoothness, length in intervals, log prior weight). Smooth ones are preferred until the samples
 # speak against them: manoeuvres are smooth, air is not.
@@ -48,10 +48,11 @@ _AMPLITUDES = (0.4, 1.3)  # of the window's range
 _MEAN_SPREAD = 9.0  # variance of the unknown mean, in squared ranges: wide enough to say nothing
 
 # Widening, in the features of `_features`: see the module's docstring.
-_UP_1 = (0.70, 0.16, 0.00, 0.01, 0.04, 0.01)  # to the 84 % point
-_UP_95 = (1.60, 1.00, 0.20, 0.02, 0.25, 0.10)  # to the upper end of the 95 % interval
-_DOWN_1 = (0.46, 0.30, 0.08)
-_DOWN_95 = (0.38, 0.71, 1.03)
+_UP_1 = (0.50, 0.19, 0.22, 0.14, 0.00)  # to the 84 % point
+_OUT_95 = (0.81, 0.66, 0.60, 0.54, 0.00)  # to the 95 % point
+_UP_95 = (1.38, 1.91, 2.04, 1.51, 0.00)  # to the upper end of the 95 % interval
+_DOWN_1 = (0.38, 0.14, 0.27)
+_DOWN_95 = (0.55, 0.53, 0.88)
 _NOISE_BELOW = 2.2  # the lower end lies at least so many times the noise below the recorded extreme
 
 
@@ -60,7 +61,8 @@ class Peak:
     """The true extreme behind a recorded one. All values in the unit of the samples, times in s.
 
     `recorded` is the sample; `estimate` the median of the true extreme, `time` when it was, `low` and `high` its 95 %
-    interval, with `down` and `up` the distances to its 16 % and 84 % points (the two sides differ). On the open side
+    interval, with `down` and `up` the distances to its 16 % and 84 % points (the two sides differ) and `outward` that to
+    the point beyond which the truth lies with 5 %. On the open side
     the end is None where the sensor saturated (`saturated`) or the channel is too slow (`sized` False): the truth is
     then at least what was seen. `ratio` is E2/E4: near 0 a resolved peak, towards 1 an aliased one.
     """
@@ -73,6 +75,7 @@ class Peak:
     time: float
     down: float
     up: float
+    outward: float
     sized: bool
     saturated: bool
     ratio: float
@@ -160,7 +163,8 @@ def size_peak(
     estimate = min(s.middle, seen + room)
     up_95 = min(up_95, seen + room - estimate)
     down_95 = max(down_95, estimate - (seen - _NOISE_BELOW * s.noise))
-    up_1, down_1 = min(up_1, 0.8 * up_95), min(down_1, 0.8 * down_95)
+    outward = min(float(np.dot(_OUT_95, up_features)), 0.9 * up_95)
+    up_1, down_1 = min(up_1, 0.8 * outward), min(down_1, 0.8 * down_95)
     low = estimate - math.hypot(down_95, _Z95 * standard_uncertainty)
     high = estimate + math.hypot(up_95, _Z95 * standard_uncertainty)
     down, up = math.hypot(down_1, standard_uncertainty), math.hypot(up_1, standard_uncertainty)
@@ -175,6 +179,7 @@ def size_peak(
         float(t[index] + interval * s.time),
         down,
         up,
+        math.hypot(outward, _Z_OUT * standard_uncertainty),
         True,
         False,
         ratio,
@@ -185,14 +190,28 @@ def size_peak(
 def _open(side: int, seen: float, time: float, spread: float, ratio: float, clipped: bool, uncertainty: float) -> Peak:
     end = side * (seen - _Z95 * spread)
     low, high = (end, None) if side > 0 else (None, end)
-    return Peak(side, side * seen, side * seen, low, high, time, spread, spread, False, clipped, ratio, uncertainty)
+    return Peak(
+        side,
+        side * seen,
+        side * seen,
+        low,
+        high,
+        time,
+        spread,
+        spread,
+        _Z_OUT * spread,
+        False,
+        clipped,
+        ratio,
+        uncertainty,
+    )
 
 
 def _features(seen: float, s: _Spread, error: float, ratio: float, interval: float) -> tuple[list[float], list[float]]:
     """What the widths upward and downward are made of. `interval`: bodies move no faster for slow recorders."""
-    beyond = max(s.middle - seen, 0.0)
-    slow, spread = interval / 0.125, s.high - s.middle
-    up = [spread, error * ratio, error * ratio * slow, error * (ratio * slow) ** 2, beyond, s.noise]
+    beyond, spread = max(s.middle - seen, 0.0), s.high - s.middle
+    slower = max(interval / 0.125 - 1.0, 0.0)
+    up = [spread, error * ratio**2, error * ratio**2 * slower, beyond, s.noise]
     return up, [s.middle - s.low, beyond, s.noise]
 
 
