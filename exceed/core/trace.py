@@ -65,6 +65,18 @@ class Grid:
         return int(position if self.rows is None else self.rows[position])
 
 
+@dataclass(frozen=True, slots=True)
+class FlightMass:
+    """Masses of one flight, kg; `zero_fuel` and the centres of gravity (m, by the same words) where they are known."""
+
+    flight: int
+    take_off: float
+    landing: float
+    method: str
+    zero_fuel: float | None = None
+    centre_of_gravity: Mapping[str, float] = field(default_factory=lambda: MappingProxyType({}))
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Trace:
     """A recording, the steps to everything that can be had, and what the first pass found.
@@ -72,6 +84,7 @@ class Trace:
     channels : the recording's channels after the first pass (datum corrected), and the whole-log series it made (mass,
     centre of gravity, ...). missing : quantity -> why it cannot be had. spans : quantity -> (low, high) in SI where the
     value is only known as a range (an unknown mass); the step then holds the one that is conservative for most uses.
+    masses : of each flight, where they are known.
     """
 
     recording: Recording
@@ -81,6 +94,7 @@ class Trace:
     missing: Mapping[str, str] = field(default_factory=lambda: MappingProxyType({}))
     spans: Mapping[str, tuple[float, float]] = field(default_factory=lambda: MappingProxyType({}))
     notes: tuple[str, ...] = ()
+    masses: tuple[FlightMass, ...] = ()
     _grids: dict[str, Grid] = field(default_factory=dict)
 
     def has(self, name: str) -> bool:

@@ -1,0 +1,123 @@
+"""From a recording and the facts of its aeroplane to a Trace: what is needed backwards, then forwards once."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from types import MappingProxyType
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from exceed.core.quantities import TRACE_ORDER
+from exceed.core.recording import Channel, Recording
+from exceed.core.trace import Step, Trace
+from exceed.derive import evidence, mass, phases
+from exceed.derive.facts import Facts, facts_of
+from exceed.derive.first_pass import first_pass
+from exceed.derive.resolve import FOUND_FACTS, LOAD_FACTORS, Resolver, closure, leaves, with_uncertainty
+from exceed.physics.kinematics import lever_arm_uncertainty
+
+if TYPE_CHECKING:
+    from exceed.documents.aircraft import Aircraft
+
+# typical sizes of rotation where it is not recorded (roll, pitch, yaw rate; roll, pitch acceleration): judgement
+_ROTATION = (0.2, 0.1, 0.1, 0.5, 0.3)
+
+
+def needed_channels(
+    quantities: Iterable[str] | None,
+    available: Iterable[str],
+    aircraft: Aircraft | None = None,
+    *,
+    mass_known: bool = False,
+) -> set[str]:
+    """The recorded channels that these quantities rest on, and those that tell flights and phases.
+
+    quantities : names, None for all. available : the quantities that the log's columns hold. mass_known : the mass is
+    given as a figure, so that fuel channels are only needed for the fuel used. Never lacks a channel that `build_trace`
+    would use; may hold a few more, since sampling rates are not known yet.
+    """
+    available = set(available)
+    facts = facts_of(aircraft)
+    wanted = list(TRACE_ORDER) + sorted(available - set(TRACE_ORDER)) if quantities is None else list(quantities)
+    needed: set[str] = set()
+    found = dict.fromkeys(FOUND_FACTS, True)
+    for interval in (0.05, 5.0):  # as if all were fast, as if all were slow
+        preset = {} if "mass" in available else {"mass": Step("mass", "", None, constant=0.0)}
+        preset["centre_of_gravity"] = Step("centre_of_gravity", "", None, constant=0.0)
+        resolver = Resolver(dict.fromkeys(available, interval), facts, found, preset)
+        for name in TRACE_ORDER:
+            resolver.resolve(name)
+        for name in wanted:
+            resolver.resolve(name)
+        rests = closure(resolver.steps, wanted)
+        needed |= leaves(resolver.steps, wanted)
+        if rests & {"mass", "centre_of_gravity", "fuel_mass"} or quantities is None:
+            needed |= set(mass.EVIDENCE)
+    return (needed | set(evidence.EVIDENCE) | set(phases.EVIDENCE)) & available
+
+
+def build_trace(
+    recording: Recording,
+    aircraft: Aircraft | None = None,
+    *,
+    quantities: Iterable[str] | None = None,
+    mass: float | None = None,
+    loading: Any = None,
+) -> Trace:
+    """A trace: one fixed method for each quantity that can be had, and the reason for each that cannot.
+
+    quantities : names wanted, None for every quantity known or recorded. mass : kg, taken as take-off mass. loading : a
+    loading document, or several, of which each flight takes its own.
+    """
+    from exceed.derive.mass import masses_of
+
+    facts = facts_of(aircraft)
+    first = first_pass(recording, aircraft, facts.stall_speed)
+    weight = masses_of(first, aircraft, facts, mass, _several(loading))
+    channels: dict[str, Channel] = {**first.channels, **weight.channels}
+    intervals = {name: channel.interval for name, channel in first.channels.items() if len(channel.values)}
+    resolver = Resolver(intervals, facts, first.facts, weight.steps)
+    everything = [*TRACE_ORDER, *sorted(set(recording.channels) - set(TRACE_ORDER))]
+    for name in everything:
+        resolver.resolve(name)
+    wanted = everything if quantities is None else list(dict.fromkeys(quantities))
+    for name in wanted:
+        resolver.resolve(name)
+    resolver.missing.update({name: why for name, why in weight.missing.items() if name in resolver.missing})
+    used = closure(resolver.steps, wanted)
+    steps = {name: _as_built(step, facts, channels) for name, step in resolver.steps.items() if name in used}
+    missing = {name: why for name, why in resolver.missing.items() if name in wanted}
+    notes = tuple(dict.fromkeys((*first.notes, *facts.notes, *weight.notes)))
+    return Trace(
+        recording,
+        MappingProxyType(channels),
+        MappingProxyType(steps),
+        first.track,
+        MappingProxyType(missing),
+        MappingProxyType(dict(weight.spans)),
+        notes,
+        weight.flights,
+    )
+
+
+def _several(loading: Any) -> Sequence[Any]:
+    if loading is None:
+        return ()
+    return list(loading) if isinstance(loading, list | tuple) else [loading]
+
+
+def _as_built(step: Step, facts: Facts, channels: Mapping[str, Channel]) -> Step:
+    """What only the aeroplane's facts and the channels tell: the lever arm of an accelerometer that was not moved."""
+    position = facts.values.get("accelerometer_position")
+    if step.quantity not in LOAD_FACTORS or step.function is not None or step.constant is not None:
+        return step
+    if step.quantity != "load_factor" or position is None or not np.any(position):
+        return step
+    own = float(lever_arm_uncertainty(position, *_ROTATION))
+    far = float(np.linalg.norm(position))
+    text = f"rotation not recorded fast enough: accelerometer {far:.2f} m off the centre of gravity not moved to it"
+    return with_uncertainty(step, own, text)
+
+
+__all__ = ["build_trace", "needed_channels"]
