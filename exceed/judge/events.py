@@ -86,12 +86,17 @@ def build_events(
     for stretch, (event, sized, lasted) in zip(
         stretches, _all(rule, trace, grid, stretches, runs, context, fixed), strict=True
     ):
-        if event is not None:
-            kind, kept = _sorted(rule, stretch, event, sized, lasted)
-            if kind is not None:
-                (events if kind == "event" else undecided).append(kept)
-    events = _one_a_place(events, None)
-    return events, _one_a_place([one for one in undecided if not _within(one, events)], max(rule.joining, ONE_QUESTION))
+        if event is None or sized is None:
+            continue
+        kind, kept = _sorted(rule, stretch, event, sized, lasted)
+        if kind == "event":
+            events.append(kept)
+            question = _open_question(rule, kept, sized, lasted)
+            if question is not None:
+                undecided.append(question)
+        elif kind == "undecided":
+            undecided.append(kept)
+    return _one_a_place(events, 0.0), _one_a_place(undecided, max(rule.joining, ONE_QUESTION))
 
 
 def _stretch(runs: Runs, index: int) -> Stretch:
@@ -276,9 +281,19 @@ def _larger_elsewhere(rule: Compiled, strip: Strip, at: int) -> str | None:
     return f"a larger value, {there:.{decimals + 1}f} {rule.quantity.shown}, stands elsewhere under another limit"
 
 
-def _sorted(
-    rule: Compiled, stretch: Stretch, event: Event, sized: Sized | None, lasted: float
-) -> tuple[str | None, Event]:
+def _open_question(rule: Compiled, event: Event, sized: Sized, lasted: float) -> Event | None:
+    """An event that is only near the limit may truly have passed it, between samples: that stays to be decided."""
+    decision = rule.decision
+    crossed = [index for index, level in enumerate(event.levels) if level.start is not None]
+    if not crossed or crossed[-1] >= decision or sized.peak is None:
+        return None
+    level = event.levels[decision]
+    if level.probability < certainty.POSSIBLE or not certainty.is_undecided(sized.peak, level.limit):
+        return None
+    return _finished(rule, event, crossed, decision, lasted)
+
+
+def _sorted(rule: Compiled, stretch: Stretch, event: Event, sized: Sized, lasted: float) -> tuple[str | None, Event]:
     """'event', 'undecided' or None, and the event with its severity, certainty, dates and task."""
     crossed = [index for index, level in enumerate(event.levels) if level.start is not None]
     if crossed and lasted >= 0.5:
@@ -286,7 +301,7 @@ def _sorted(
     if crossed:
         finished = _finished(rule, event, crossed, crossed[-1], lasted)
         return ("undecided" if finished.probability >= certainty.POSSIBLE else None), finished
-    if stretch.sampled or sized is None or sized.peak is None:
+    if stretch.sampled or sized.peak is None:
         return None, event
     level = event.levels[rule.decision]
     if not certainty.is_undecided(sized.peak, level.limit) or (lasted < 1.0 and level.probability * lasted < 0.05):
@@ -323,15 +338,11 @@ def _exceeded(rule: Compiled, event: Event) -> bool:
     return any(rule.side * (value - event.limit.value) > slack for value in values)
 
 
-def _within(one: Event, events: list[Event]) -> bool:
-    return any(event.rows[0] <= one.row <= event.rows[1] for event in events)
-
-
-def _one_a_place(events: list[Event], gap: float | None) -> list[Event]:
+def _one_a_place(events: list[Event], gap: float) -> list[Event]:
     """In order of time; of those closer together than `gap` s, or of overlapping ones, only the likeliest stays."""
     kept: list[Event] = []
     for event in sorted(events, key=lambda item: (item.start, item.end)):
-        near = kept and event.flight == kept[-1].flight and event.start - kept[-1].end < (gap or 0.0)
+        near = kept and event.flight == kept[-1].flight and event.start - kept[-1].end < gap
         if not near:
             kept.append(event)
         elif event.probability > kept[-1].probability:

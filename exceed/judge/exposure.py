@@ -54,7 +54,7 @@ def _totalled(group: list[Event], seconds: float, window: float | None) -> Event
 
 def _as_one(group: list[Event], note: str) -> Event:
     """Several excursions as one event: the worst of them, over the whole stretch."""
-    worst = max(group, key=lambda event: (SEVERITIES.index(event.severity), event.probability))
+    worst = max(group, key=lambda event: (SEVERITIES.index(event.severity), _beyond(event)))
     return replace(
         worst,
         start=group[0].start,
@@ -62,6 +62,11 @@ def _as_one(group: list[Event], note: str) -> Event:
         rows=(group[0].rows[0], group[-1].rows[1]),
         notes=(*worst.notes, note),
     )
+
+
+def _beyond(event: Event) -> float:
+    """How far the sample lies beyond the limit in force then."""
+    return (event.peak.value - event.limit.value) * (-1.0 if event.side == "below" else 1.0)
 
 
 def _allowed(rule: Compiled, events: list[Event]) -> list[Event]:

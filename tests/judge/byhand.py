@@ -19,9 +19,8 @@ from exceed.judge.compiled import Compiled
 def channel(name: str, values, *, rows=None, time=None, interval=None, u: float = 0.0, **more) -> Channel:
     values = np.asarray(values, dtype=float)
     spacing = interval if interval is not None else median_interval(time)
-    return Channel(
-        name, name.upper(), values, rows=rows, interval=spacing, standard_uncertainty=u, noise=more.pop("noise", 0.0), **more
-    )
+    more = {"noise": 0.0, "unit": "by hand", **more}
+    return Channel(name, name.upper(), values, rows=rows, interval=spacing, standard_uncertainty=u, **more)
 
 
 def make_trace(
