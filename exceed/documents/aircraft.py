@@ -44,6 +44,7 @@ from exceed.documents.fields import (
     Mass,
     Model,
     Number,
+    Ready,
     Size,
     Slope,
     Tuple,
@@ -75,6 +76,10 @@ _ANGLE = Number(("angle",))
 _AIRSPEED = Number(("speed",), airspeed="required", sign="positive")
 _MACH = Number(("ratio",), bare=True, sign="positive", at_most=5.0)
 _OVER: dict[str, Number] = {"pressure_altitude": _LENGTH, "mass": _MASS, "flaps": _ANGLE}
+
+
+def _pairs(first: Number, second: Number) -> dict[str, Any]:
+    return Many(Tuple((first, second), "a pair"), "a list of pairs").schema()
 
 
 def check_ascending(points: Any, what: str, found: Faults, path: tuple[str | int, ...] = ()) -> None:
@@ -211,7 +216,9 @@ class SpeedLimit(Model):
         Annotated[Literal["pressure_altitude", "mass", "flaps"], Choice(tuple(_OVER), "a quantity to give speeds over")]
         | None
     ) = Field(default=None, description="quantity the table is over")
-    points: tuple[tuple[Value, Value], ...] = Field(default=(), description="pairs of `over` and speed, ascending")
+    points: Annotated[tuple[tuple[Value, Value], ...], Ready(lambda: _pairs(Number(), _AIRSPEED))] = Field(
+        default=(), description="pairs of `over` and speed, ascending"
+    )
     mass: Mass | None = Field(default=None, description="mass at which `value` holds")
     scale: Annotated[Literal["sqrt_mass"], Choice(("sqrt_mass",), "a way to scale a speed")] | None = Field(
         default=None, description="only where the manual says so"
@@ -221,6 +228,10 @@ class SpeedLimit(Model):
     @classmethod
     def shorthand(cls, value: Any) -> Any:
         return {"value": value} if isinstance(value, str | int | float) else value
+
+    @classmethod
+    def short_schema(cls) -> dict[str, Any]:
+        return cls.MARK.schema()
 
     @classmethod
     def prepare(cls, value: Any) -> Any:
@@ -288,6 +299,10 @@ class SpeedLimit(Model):
 
 class MachLimit(SpeedLimit):
     """A Mach limit in the same forms."""
+
+    points: Annotated[tuple[tuple[Value, Value], ...], Ready(lambda: _pairs(Number(), _MACH))] = Field(
+        default=(), description="pairs of `over` and Mach number, ascending"
+    )
 
     WHAT: ClassVar[str] = "a Mach number, or a table of Mach numbers"
     value: Annotated[Value, _MACH] | None = Field(default=None, description="one Mach number for all conditions")
@@ -383,6 +398,18 @@ class Speeds(Model):
         raise_any(found)
         return self
 
+    @classmethod
+    def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
+        if name != "flaps_extended":
+            return schema
+        table = {
+            "type": "object",
+            "properties": {"over": {"const": "flaps"}, "points": _pairs(_ANGLE, _AIRSPEED)},
+            "required": ["over", "points"],
+            "additionalProperties": False,
+        }
+        return {"anyOf": [schema, _AIRSPEED.schema(), table], "description": schema.get("description", "")}
+
 
 class MachLimits(Model):
     WHAT: ClassVar[str] = "the mapping of Mach limits"
@@ -455,7 +482,9 @@ class Recorder(Model):
     accelerometer: Accelerometer | None = Field(
         default=None, description="where the accelerometer sits and what it can read"
     )
-    accuracy: dict[str, Value] = Field(default_factory=dict, description="half-width of a 95 % interval, by quantity")
+    accuracy: Annotated[
+        dict[str, Value], Ready(lambda: {"type": "object", "additionalProperties": Number(bare=True).schema()})
+    ] = Field(default_factory=dict, description="half-width of a 95 % interval, by quantity")
 
     @classmethod
     def prepare(cls, value: Any) -> Any:
@@ -582,6 +611,12 @@ class Aircraft(Model):
             raise_any([((path[0], *path[2:]), *texts) for path, *texts in found])  # type: ignore[misc]
             value = {**value, "position_error": [row]}
         return value
+
+    @classmethod
+    def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
+        if name != "position_error":
+            return schema
+        return {"anyOf": [schema, _pairs(_AIRSPEED, _AIRSPEED)], "description": schema.get("description", "")}
 
     @model_validator(mode="after")
     def _possible(self) -> Aircraft:

@@ -58,6 +58,14 @@ def state_words(quantity: str) -> dict[str, int]:
     return {**_COMMON, **STATES.get(quantity, STATES[""])}
 
 
+RATE_OF = {
+    "type": "object",
+    "properties": {"rate_of": {"type": "string"}},
+    "required": ["rate_of"],
+    "additionalProperties": False,
+}
+
+
 class PhaseMark(Marker):
     def read(self, value: Any) -> tuple[str, ...]:
         given = [value] if isinstance(value, str) else value
@@ -125,6 +133,12 @@ class Condition(Model):
     )
     state: Annotated[str, StateMark()] | None = Field(default=None, alias="is", description="true in this state")
     any: tuple[Condition, ...] = Field(default=(), description="true where any of these is")
+
+    @classmethod
+    def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
+        if name != "quantity":
+            return schema
+        return {"anyOf": [{"type": "string"}, RATE_OF], "description": "a quantity, or {rate_of: QUANTITY}"}
 
     @classmethod
     def prepare(cls, value: Any) -> Any:

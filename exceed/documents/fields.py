@@ -338,6 +338,19 @@ class Many(Marker):
         return {"type": "array", "items": self.part.schema(), "minItems": self.least, "description": self.what}
 
 
+@dataclass(frozen=True)
+class Ready(Marker):
+    """A value that the model's `prepare` has read already; here only its schema is left to say."""
+
+    written: Callable[[], dict[str, Any]]
+
+    def read(self, value: Any) -> Any:
+        return value
+
+    def schema(self) -> dict[str, Any]:
+        return self.written()
+
+
 def collect(found: Faults, path: Path, read: Callable[[Any], Any], item: Any) -> Any:
     """Call `read`; its faults go to `found` with `path` before theirs, and None comes back."""
     try:
@@ -391,6 +404,36 @@ class Model(BaseModel):
                 )
         raise_any(found)
         return cls.prepare(value)
+
+    @classmethod
+    def __get_pydantic_json_schema__(cls, schema: CoreSchema, handler: GetJsonSchemaHandler) -> dict[str, Any]:
+        """The model's schema without hidden attributes, and with its shorter form, if it has one, beside the mapping."""
+        made = handler(schema)
+        target = handler.resolve_ref_schema(made)
+        names = {row.alias or name: name for name, row in cls.model_fields.items()}
+        properties = target.get("properties", {})
+        for name in [name for name in properties if names.get(name, name) in cls.HIDDEN]:
+            del properties[name]
+        for name in properties:
+            properties[name] = cls.written(name, properties[name])
+        target.pop("title", None)
+        target["description"] = cls.WHAT
+        short = cls.short_schema()
+        if short is not None:
+            whole = dict(target)
+            target.clear()
+            target.update({"anyOf": [short, whole], "description": cls.WHAT})
+        return made
+
+    @classmethod
+    def short_schema(cls) -> dict[str, Any] | None:
+        """The schema of the shorter form that `shorthand` accepts, if there is one."""
+        return None
+
+    @classmethod
+    def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
+        """The schema of one key as files may write it, where that is more than what the model holds."""
+        return schema
 
     @classmethod
     def prepare(cls, value: Any) -> Any:

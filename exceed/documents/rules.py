@@ -25,7 +25,7 @@ from exceed.core.quantities import QUANTITIES, Quantity, declared
 from exceed.core.units import UNITS, nearest_unit
 from exceed.documents import facts
 from exceed.documents.aircraft import Aircraft
-from exceed.documents.conditions import AIRBORNE, Condition, never, split_rate, state_words
+from exceed.documents.conditions import AIRBORNE, RATE_OF, Condition, never, split_rate, state_words
 from exceed.documents.facts import Fact
 from exceed.documents.fields import (
     Choice,
@@ -242,6 +242,12 @@ class Rule(Model):
     kind: str = ""
     place: str = ""
     rule_set: str = ""
+
+    @classmethod
+    def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
+        if name != "quantity":
+            return schema
+        return {"anyOf": [{"type": "string"}, RATE_OF], "description": "a quantity, or {rate_of: QUANTITY}"}
 
     @classmethod
     def prepare(cls, value: Any) -> Any:
