@@ -12,15 +12,16 @@ from exceed.documents import facts
 from exceed.documents.conditions import AIRBORNE, Condition, never, state_words
 from exceed.documents.fields import Faults, Path, an, nearest
 from exceed.documents.limits import ConstantLimit, FactLimit, RelativeLimit, TableLimit
+from exceed.documents.order import levels_in_order
 from exceed.documents.values import Value, expected_of
 
 if TYPE_CHECKING:
-    from exceed.documents.rules import Level, Rule
+    from exceed.documents.rules import Rule
 
 
 def check(rule: Rule, own: Mapping[str, str] | None) -> tuple[str, Faults]:
     """Kind of quantity that the rule judges, and what does not agree. `own`: declared names; None: any name goes."""
-    found: Faults = []
+    found = Faults()
     row = _row(rule.quantity, rule.rate, own, found, ("quantity",))
     kind = _kind(rule.quantity, rule.rate, row, found, ("quantity",))
     if row is not None and row.discrete:
@@ -31,24 +32,20 @@ def check(rule: Rule, own: Mapping[str, str] | None) -> tuple[str, Faults]:
         _condition(condition, own, found, ("when", index))
     last = never(rule.when)
     if last is not None:
-        found.append(
-            (
-                ("when", last),
-                "no phase is left by this and the phases before it, so the rule never looks",
-                "phases that can hold together",
-                "name all phases in one list, or use {any: [...]}",
-            )
+        found.note(
+            ("when", last),
+            "no phase is left by this and the phases before it, so the rule never looks",
+            "phases that can hold together",
+            "name all phases in one list, or use {any: [...]}",
         )
     touchdown = rule.quantity.startswith("touchdown_")
     for index, condition in enumerate(rule.when):
         if touchdown and condition.phase and not {"landing", "unknown"} & set(condition.phase):
-            found.append(
-                (
-                    ("when", index),
-                    f"a touchdown is never in the phase {' or '.join(condition.phase)}",
-                    "landing, or no phase",
-                    "remove the condition",
-                )
+            found.note(
+                ("when", index),
+                f"a touchdown is never in the phase {' or '.join(condition.phase)}",
+                "landing, or no phase",
+                "remove the condition",
             )
     return kind, found
 
@@ -62,13 +59,11 @@ def _row(name: str, rate: bool, own: Mapping[str, str] | None, found: Faults, pa
     if row is None and own is not None:
         known = {*QUANTITIES, *own, "airspeed"}
         near = nearest(name, known)
-        found.append(
-            (
-                path,
-                f"'{name}' is not a quantity",
-                "a quantity of the trace table, 'airspeed', or one declared under 'quantities'",
-                f"write '{near}' if that is meant" if near else f"declare it: 'quantities: {{{name}: UNIT}}'",
-            )
+        found.note(
+            path,
+            f"'{name}' is not a quantity",
+            "a quantity of the trace table, 'airspeed', or one declared under 'quantities'",
+            f"write '{near}' if that is meant" if near else f"declare it: 'quantities: {{{name}: UNIT}}'",
         )
     return row
 
@@ -82,13 +77,11 @@ def _kind(name: str, rate: bool, row: Quantity | None, found: Faults, path: Path
         return row.kind
     # the rate of any length is a speed, of any speed something that has no unit here
     if row.kind not in RATES or row.discrete:
-        found.append(
-            (
-                path,
-                f"there is no unit for the rate of {name}",
-                f"the rate of {an('quantity')} that is one of {', '.join(sorted(RATES))}",
-                "judge the quantity itself",
-            )
+        found.note(
+            path,
+            f"there is no unit for the rate of {name}",
+            f"the rate of {an('quantity')} that is one of {', '.join(sorted(RATES))}",
+            "judge the quantity itself",
         )
         return ""
     return RATES[row.kind]
@@ -104,29 +97,25 @@ def _right(value: Value, kind: str, quantity: str, found: Faults, path: Path, *,
         do = (
             f"write the unit, as in '{value} {_example(quantity, kind)}'" if value.bare else "give a value of that kind"
         )
-        found.append((path, f"'{value}' is {what} and {quantity} is {an(kind)}", expected, do))
+        found.note(path, f"'{value}' is {what} and {quantity} is {an(kind)}", expected, do)
         return False
     if kind == "ratio" and value.bare and quantity in QUANTITIES and QUANTITIES[quantity].shown == "%":
         return True
     named = quantity if quantity in QUANTITIES and quantity.endswith("_airspeed") else None
     if value.airspeed is not None and named is not None and value.airspeed != named:
-        found.append(
-            (
-                path,
-                f"'{value}' is {an(value.airspeed.replace('_', ' '))} and the rule is about {named.replace('_', ' ')}",
-                named.replace("_", " "),
-                "give it in that kind, or write 'quantity: airspeed'",
-            )
+        found.note(
+            path,
+            f"'{value}' is {an(value.airspeed.replace('_', ' '))} and the rule is about {named.replace('_', ' ')}",
+            named.replace("_", " "),
+            "give it in that kind, or write 'quantity: airspeed'",
         )
         return False
     if quantity == "airspeed" and value.airspeed is None:
-        found.append(
-            (
-                path,
-                f"'{value}' does not say which airspeed it is",
-                expected_of((), airspeed=True),
-                f"write '{value} IAS' if indicated airspeed is meant",
-            )
+        found.note(
+            path,
+            f"'{value}' does not say which airspeed it is",
+            expected_of((), airspeed=True),
+            f"write '{value} IAS' if indicated airspeed is meant",
         )
         return False
     return True
@@ -141,39 +130,33 @@ def _discrete(rule: Rule, found: Faults) -> None:
     words = state_words(_base(rule.quantity))
     for name in ("above", "below"):
         if getattr(rule, name):
-            found.append(
-                (
-                    (name,),
-                    f"{rule.quantity} is a state, so it is neither above nor below a level",
-                    "'is', as in 'is: {caution: up}'",
-                    "use 'is'",
-                )
+            found.note(
+                (name,),
+                f"{rule.quantity} is a state, so it is neither above nor below a level",
+                "'is', as in 'is: {caution: up}'",
+                "use 'is'",
             )
     if rule.limit is not None:
-        found.append(
-            (("limit",), f"{rule.quantity} is a state and has no limit", "'is', as in 'is: {caution: up}'", "remove it")
+        found.note(
+            ("limit",), f"{rule.quantity} is a state and has no limit", "'is', as in 'is: {caution: up}'", "remove it"
         )
     if rule.rate:
-        found.append(
-            (("quantity",), "there is no unit for the rate of a state", "the state itself", "remove 'rate_of'")
-        )
+        found.note(("quantity",), "there is no unit for the rate of a state", "the state itself", "remove 'rate_of'")
     if not rule.is_state and not (rule.above or rule.below):
-        found.append(((), "no level is given", "'is', as in 'is: {caution: up}'", "add 'is'"))
+        found.note((), "no level is given", "'is', as in 'is: {caution: up}'", "add 'is'")
     for severity, word in rule.is_state.items():
         if word not in words:
             near = nearest(word, words)
-            found.append(
-                (
-                    ("is", severity),
-                    f"'{word}' is no state of {rule.quantity}",
-                    f"one of {', '.join(sorted(words))}",
-                    f"write '{near}' if that is meant" if near else "use one of these",
-                )
+            found.note(
+                ("is", severity),
+                f"'{word}' is no state of {rule.quantity}",
+                f"one of {', '.join(sorted(words))}",
+                f"write '{near}' if that is meant" if near else "use one of these",
             )
     for name in ("release", "allowed"):
         if getattr(rule, name):
-            found.append(
-                ((name,), f"'{name}' says nothing about a state", "a rule about a continuous quantity", "remove it")
+            found.note(
+                (name,), f"'{name}' says nothing about a state", "a rule about a continuous quantity", "remove it"
             )
 
 
@@ -185,9 +168,9 @@ def _base(name: str) -> str:
 
 def _continuous(rule: Rule, kind: str, own: Mapping[str, str] | None, found: Faults) -> None:
     if rule.is_state:
-        found.append((("is",), f"{rule.quantity} is no state", "'above' or 'below'", "use 'above' or 'below'"))
+        found.note(("is",), f"{rule.quantity} is no state", "'above' or 'below'", "use 'above' or 'below'")
     elif not rule.above and not rule.below:
-        found.append(((), "no level is given", "'above' or 'below', as in 'above: {caution: 100 %}'", "add one"))
+        found.note((), "no level is given", "'above' or 'below', as in 'above: {caution: 100 %}'", "add one")
     _limit(rule, kind, own, found)
     ratio = kind == "ratio"
     for side in ("above", "below"):
@@ -195,17 +178,13 @@ def _continuous(rule: Rule, kind: str, own: Mapping[str, str] | None, found: Fau
             path: Path = (side, key.severity)
             if key.beyond_by is not None:
                 if rule.limit is None:
-                    found.append(
-                        (path, "'beyond_by' counts from the limit, and there is none", "'limit'", "add the limit")
-                    )
+                    found.note(path, "'beyond_by' counts from the limit, and there is none", "'limit'", "add the limit")
                 elif key.beyond_by.unit == "%" and not ratio:
-                    found.append(
-                        (
-                            path,
-                            f"'{key.beyond_by}' is a per cent",
-                            "a value with the unit of the quantity",
-                            "write the per cent of the limit itself, as in '105 %'",
-                        )
+                    found.note(
+                        path,
+                        f"'{key.beyond_by}' is a per cent",
+                        "a value with the unit of the quantity",
+                        "write the per cent of the limit itself, as in '105 %'",
                     )
                 else:
                     # a step away from a limit has a unit and no kind of airspeed to disagree with
@@ -216,29 +195,32 @@ def _continuous(rule: Rule, kind: str, own: Mapping[str, str] | None, found: Fau
                         found,
                         path,
                     )
+            elif key.at is not None and key.at.unit == "%" and kind == "temperature" and key.at != 1.0:
+                found.note(
+                    path,
+                    f"'{key.at}' of a temperature depends on the scale, so it says nothing",
+                    "100 %, an absolute value, or {beyond_by: 5 degC}",
+                    "say how far beyond the limit",
+                )
             elif key.at is not None and key.at.unit == "%" and not ratio and rule.limit is None:
-                found.append(
-                    (
-                        path,
-                        f"'{key.at}' is a per cent of the limit, and there is none",
-                        "'limit', or an absolute level",
-                        "add the limit",
-                    )
+                found.note(
+                    path,
+                    f"'{key.at}' is a per cent of the limit, and there is none",
+                    "'limit', or an absolute level",
+                    "add the limit",
                 )
             elif key.at is not None:
                 _right(key.at, kind, rule.quantity, found, path, percent=rule.limit is not None)
     if not found:
         for side in ("above", "below"):
-            _order(rule, side, found)
+            levels_in_order(rule, side, found)
     if rule.release is not None:
         if rule.release.unit == "%" and not ratio and rule.limit is None:
-            found.append(
-                (
-                    ("release",),
-                    f"'{rule.release}' is a per cent of the limit, and there is none",
-                    "an absolute value",
-                    "give it with its unit",
-                )
+            found.note(
+                ("release",),
+                f"'{rule.release}' is a per cent of the limit, and there is none",
+                "an absolute value",
+                "give it with its unit",
             )
         else:
             _right(
@@ -260,26 +242,22 @@ def _limit(rule: Rule, kind: str, own: Mapping[str, str] | None, found: Faults) 
     limit = rule.limit
     if isinstance(limit, ConstantLimit):
         if limit.value.unit == "%" and kind != "ratio":
-            found.append(
-                (
-                    ("limit",),
-                    f"'{limit.value}' is a per cent of nothing",
-                    expected_of((kind,)),
-                    "give the limit with its unit",
-                )
+            found.note(
+                ("limit",),
+                f"'{limit.value}' is a per cent of nothing",
+                expected_of((kind,)),
+                "give the limit with its unit",
             )
         else:
             _right(limit.value, kind, rule.quantity, found, ("limit",))
     elif isinstance(limit, FactLimit):
         fact_kind = facts.kind_of_fact(limit.fact)
         if fact_kind and kind and fact_kind != kind:
-            found.append(
-                (
-                    ("limit",),
-                    f"{limit.fact} is {an(fact_kind)} and {rule.quantity} is {an(kind)}",
-                    f"a fact that is {an(kind)}",
-                    "point at another fact, or judge another quantity",
-                )
+            found.note(
+                ("limit",),
+                f"{limit.fact} is {an(fact_kind)} and {rule.quantity} is {an(kind)}",
+                f"a fact that is {an(kind)}",
+                "point at another fact, or judge another quantity",
             )
     elif isinstance(limit, TableLimit):
         row = _row(limit.over, False, own, found, ("limit", "over"))
@@ -291,13 +269,11 @@ def _limit(rule: Rule, kind: str, own: Mapping[str, str] | None, found: Faults) 
     elif isinstance(limit, RelativeLimit):
         row = _row(limit.quantity, False, own, found, ("limit", "quantity"))
         if row is not None and kind and row.kind != kind:
-            found.append(
-                (
-                    ("limit", "quantity"),
-                    f"{limit.quantity} is {an(row.kind)} and {rule.quantity} is {an(kind)}",
-                    f"a quantity that is {an(kind)}",
-                    "name another quantity",
-                )
+            found.note(
+                ("limit", "quantity"),
+                f"{limit.quantity} is {an(row.kind)} and {rule.quantity} is {an(kind)}",
+                f"a quantity that is {an(kind)}",
+                "name another quantity",
             )
         if limit.plus is not None:
             _right(
@@ -309,66 +285,16 @@ def _limit(rule: Rule, kind: str, own: Mapping[str, str] | None, found: Faults) 
             )
 
 
-def _order(rule: Rule, side: str, found: Faults) -> None:
-    """A more severe level must not be reached before a less severe one, unless it asks for a longer time."""
-    levels = [level for level in rule.levels if level.side == side]
-    limit = float(rule.limit.value) if isinstance(rule.limit, ConstantLimit) else None
-    for less, more in itertools.pairwise(levels):
-        wait_less = float(rule.lasting) if less.lasting is None else less.lasting
-        wait_more = float(rule.lasting) if more.lasting is None else more.lasting
-        if wait_more > wait_less:
-            continue
-        step = _farther(less, more, side, limit, rule)
-        if step is not None and step <= 0.0:
-            where = "the same as" if step == 0.0 else "inside"
-            found.append(
-                (
-                    (side, more.severity),
-                    f"{more.severity} at {_shown(more)} is {where} {less.severity} at {_shown(less)}",
-                    f"{more.severity} beyond {less.severity}",
-                    "swap them, or give the severer one a longer 'lasting'",
-                )
-            )
-
-
-def _shown(level: Level) -> str:
-    if level.percent is not None:
-        return f"'{level.percent * 100:g} %'"
-    return f"'{level.absolute}'" if level.absolute is not None else f"'{level.beyond_by}' beyond"
-
-
-def _farther(less: Level, more: Level, side: str, limit: float | None, rule: Rule) -> float | None:
-    """How much farther out the severer level lies (sign only counts); None where it depends on the limit in force."""
-    sign = 1.0 if side == "above" else -1.0
-    if limit is not None:
-        return sign * (float(more.value(limit)) - float(less.value(limit)))
-    if less.absolute is not None and more.absolute is not None:
-        return sign * (float(more.absolute) - float(less.absolute))
-    if less.beyond_by is not None and more.beyond_by is not None:
-        return float(more.beyond_by) - float(less.beyond_by)
-    if less.percent is not None and more.percent is not None:
-        step = more.percent - less.percent
-        if side == "above":
-            return step
-        # below a negative limit farther means a greater per cent, below a positive one a smaller
-        if isinstance(rule.limit, FactLimit) and rule.limit.fact == "aircraft.load_factor.minimum":
-            return step
-        return -step if isinstance(rule.limit, RelativeLimit) else (0.0 if step == 0.0 else None)
-    return None
-
-
 def _allowed(rule: Rule, kind: str, found: Faults) -> None:
     steps: list[tuple[float, float, int]] = []
     for index, step in enumerate(rule.allowed):
         path: Path = ("allowed", index, "up_to")
         if rule.limit is None:
-            found.append((path, "an allowance counts beyond the limit, and there is none", "'limit'", "add the limit"))
+            found.note(path, "an allowance counts beyond the limit, and there is none", "'limit'", "add the limit")
             return
         percent = step.up_to.unit == "%"
         if percent and (step.up_to <= 1.0 if rule.above else step.up_to == 1.0):
-            found.append(
-                (path, f"'{step.up_to}' leaves nothing beyond the limit", "more than 100 %", "check the figure")
-            )
+            found.note(path, f"'{step.up_to}' leaves nothing beyond the limit", "more than 100 %", "check the figure")
         elif not _right(step.up_to, kind, rule.quantity, found, path, percent=True):
             continue
         steps.append((float(step.up_to), float(step.for_time), index))
@@ -377,23 +303,19 @@ def _allowed(rule: Rule, kind: str, found: Faults) -> None:
     sign = 1.0 if rule.above else (-1.0 if isinstance(rule.limit, RelativeLimit) else 0.0)
     for before, here in itertools.pairwise(steps):
         if sign and sign * (here[0] - before[0]) <= 0.0:
-            found.append(
-                (
-                    ("allowed", here[2], "up_to"),
-                    f"'{rule.allowed[here[2]].up_to}' is not beyond '{rule.allowed[before[2]].up_to}' before it",
-                    "steps in order, each farther out",
-                    "put them in order",
-                )
+            found.note(
+                ("allowed", here[2], "up_to"),
+                f"'{rule.allowed[here[2]].up_to}' is not beyond '{rule.allowed[before[2]].up_to}' before it",
+                "steps in order, each farther out",
+                "put them in order",
             )
         if here[1] > before[1]:
-            found.append(
-                (
-                    ("allowed", here[2], "for"),
-                    f"'{rule.allowed[here[2]].for_time}' is longer than "
-                    f"'{rule.allowed[before[2]].for_time}' of the step inside it",
-                    "less time farther out",
-                    "check both figures",
-                )
+            found.note(
+                ("allowed", here[2], "for"),
+                f"'{rule.allowed[here[2]].for_time}' is longer than "
+                f"'{rule.allowed[before[2]].for_time}' of the step inside it",
+                "less time farther out",
+                "check both figures",
             )
 
 
@@ -404,13 +326,11 @@ def _condition(condition: Condition, own: Mapping[str, str] | None, found: Fault
     if name is None:
         return
     if name == "airspeed":
-        found.append(
-            (
-                (*path, "quantity"),
-                "'airspeed' has no limit here to say which it is",
-                "the airspeed's full name",
-                "write 'indicated_airspeed' or 'calibrated_airspeed'",
-            )
+        found.note(
+            (*path, "quantity"),
+            "'airspeed' has no limit here to say which it is",
+            "the airspeed's full name",
+            "write 'indicated_airspeed' or 'calibrated_airspeed'",
         )
         return
     row = _row(name, condition.rate, own, found, (*path, "quantity"))
@@ -419,21 +339,19 @@ def _condition(condition: Condition, own: Mapping[str, str] | None, found: Fault
     if row.discrete and not condition.rate:
         words = state_words(_base(name))
         if condition.state is None:
-            found.append((path, f"{name} is a state", f"'is' with one of {', '.join(sorted(words))}", "use 'is'"))
+            found.note(path, f"{name} is a state", f"'is' with one of {', '.join(sorted(words))}", "use 'is'")
         elif condition.state not in words:
             near = nearest(condition.state, words)
-            found.append(
-                (
-                    (*path, "is"),
-                    f"'{condition.state}' is no state of {name}",
-                    f"one of {', '.join(sorted(words))}",
-                    f"write '{near}' if that is meant" if near else "use one of these",
-                )
+            found.note(
+                (*path, "is"),
+                f"'{condition.state}' is no state of {name}",
+                f"one of {', '.join(sorted(words))}",
+                f"write '{near}' if that is meant" if near else "use one of these",
             )
         return
     kind = _kind(name, condition.rate, row, found, (*path, "quantity"))
     if condition.state is not None:
-        found.append(((*path, "is"), f"{name} is no state", "one of above, below, within", "use one of these"))
+        found.note((*path, "is"), f"{name} is no state", "one of above, below, within", "use one of these")
     values: list[tuple[Path, Any]] = [((*path, "above"), condition.above), ((*path, "below"), condition.below)]
     if condition.within is not None:
         values += [((*path, "within", index), value) for index, value in enumerate(condition.within)]

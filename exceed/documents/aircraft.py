@@ -23,33 +23,35 @@ from typing import Annotated, Any, ClassVar, Literal
 
 from pydantic import Field, model_validator
 
-from exceed.core.quantities import QUANTITIES, nearest_quantity
 from exceed.core.units import UNITS
 from exceed.documents import facts
+from exceed.documents.aircraft_parts import (
+    Accelerometer,
+    FlapSpeedRow,
+    LoadFactorRow,
+    Loading,
+    MachLimit,
+    MachLimits,
+    Masses,
+    PositionErrorRow,
+    Recorder,
+    Rolling,
+    SpeedLimit,
+    Speeds,
+    StallRow,
+    Station,
+    Wing,
+    pairs,
+)
 from exceed.documents.build import build, open_document
 from exceed.documents.facts import Fact
 from exceed.documents.fields import (
-    Airspeed,
-    Angle,
-    AngularRate,
     Any_,
-    Area,
     Choice,
-    Date,
-    Density,
     Faults,
-    Length,
-    LoadFactor,
-    Many,
-    Mass,
     Model,
     Number,
-    Ready,
-    Size,
-    Slope,
-    Tuple,
     Words,
-    collect,
     make,
     nearest,
     raise_any,
@@ -69,482 +71,6 @@ CATEGORIES = (
     "sailplane-utility",
     "sailplane-aerobatic",
 )
-
-_MASS = Number(("mass",), sign="positive")
-_LENGTH = Number(("length",))
-_ANGLE = Number(("angle",))
-_AIRSPEED = Number(("speed",), airspeed="required", sign="positive")
-_MACH = Number(("ratio",), bare=True, sign="positive", at_most=5.0)
-_OVER: dict[str, Number] = {"pressure_altitude": _LENGTH, "mass": _MASS, "flaps": _ANGLE}
-
-
-def _pairs(first: Number, second: Number) -> dict[str, Any]:
-    return Many(Tuple((first, second), "a pair"), "a list of pairs").schema()
-
-
-def check_ascending(points: Any, what: str, found: Faults, path: tuple[str | int, ...] = ()) -> None:
-    """Note every point whose first value is not above the one before it."""
-    for index in range(1, len(points)):
-        before, here = points[index - 1][0], points[index][0]
-        if not here > before:
-            found.append(
-                (
-                    (*path, index),
-                    f"{what} '{here}' is not above '{before}' before it",
-                    "rows in ascending order",
-                    "put the rows in order, each value once",
-                )
-            )
-
-
-class Masses(Model):
-    WHAT: ClassVar[str] = "the mapping of masses"
-    empty: Mass | None = Field(default=None, description="empty mass")
-    maximum_take_off: Mass | None = Field(default=None, description="maximum take-off mass")
-    maximum_landing: Mass | None = Field(default=None, description="maximum landing mass")
-    maximum_zero_fuel: Mass | None = Field(default=None, description="maximum zero fuel mass")
-
-    @model_validator(mode="after")
-    def _possible(self) -> Masses:
-        found: Faults = []
-        top = self.maximum_take_off
-        for name in ("empty", "maximum_landing", "maximum_zero_fuel"):
-            value = getattr(self, name)
-            if value is not None and top is not None and (value > top or (name == "empty" and value == top)):
-                words = name.replace("_", " ")
-                found.append(
-                    (
-                        (name,),
-                        f"{words} mass '{value}' is not below maximum take-off mass '{top}'"
-                        if name == "empty"
-                        else f"{words} mass '{value}' is above maximum take-off mass '{top}'",
-                        f"at most {top}",
-                        "check both figures",
-                    )
-                )
-        for name in ("maximum_landing", "maximum_zero_fuel"):
-            value = getattr(self, name)
-            if value is not None and self.empty is not None and value <= self.empty:
-                found.append(
-                    (
-                        (name,),
-                        f"{name.replace('_', ' ')} mass '{value}' is not above empty mass '{self.empty}'",
-                        f"above {self.empty}",
-                        "check both figures",
-                    )
-                )
-        raise_any(found)
-        return self
-
-
-class StallRow(Model):
-    WHAT: ClassVar[str] = "a row of stall speeds"
-    flaps: Angle | None = Field(default=None, description="flap setting; omitted: flaps up or none")
-    mass: Mass | None = Field(default=None, description="mass the figures are for; omitted: maximum take-off mass")
-    upright: Airspeed = Field(description="level, 1 g, idle")
-    inverted: Airspeed | None = Field(default=None, description="inverted, at -1 g")
-
-
-class LoadFactorRow(Model):
-    """One row of limit load factors; a key that is None matches always."""
-
-    WHAT: ClassVar[str] = "a row of load factors"
-    flaps: Angle | None = Field(default=None, description="flap setting this row is for")
-    mass_up_to: Mass | None = Field(default=None, description="this row holds up to and with this mass")
-    speed_up_to: Airspeed | None = Field(default=None, description="this row holds up to and with this airspeed")
-    airbrakes: Annotated[Literal["out", "in"], Choice(("out", "in"), "a state of the airbrakes")] | None = Field(
-        default=None, description="this row holds with airbrakes out or in"
-    )
-    maximum: LoadFactor | None = Field(default=None, description="positive limit load factor")
-    minimum: LoadFactor | None = Field(default=None, description="negative limit load factor, with its sign")
-
-    @model_validator(mode="after")
-    def _possible(self) -> LoadFactorRow:
-        found: Faults = []
-        if self.maximum is None and self.minimum is None:
-            found.append(
-                ((), "this row has neither maximum nor minimum", "'maximum', 'minimum' or both", "add the limit")
-            )
-        if self.maximum is not None and self.maximum < 1.0:
-            found.append(
-                (
-                    ("maximum",),
-                    f"maximum '{self.maximum}' is below 1 g, so level flight would be beyond it",
-                    "a positive limit load factor of 1 g or more",
-                    "check the figure and its sign",
-                )
-            )
-        if self.minimum is not None and self.minimum > 1.0:
-            found.append(
-                (
-                    ("minimum",),
-                    f"minimum '{self.minimum}' is above 1 g, so level flight would be beyond it",
-                    "a limit load factor of 1 g or less, as in '-1.76 g'",
-                    "check the figure and its sign",
-                )
-            )
-        if self.maximum is not None and self.minimum is not None and self.minimum >= self.maximum:
-            found.append(
-                (
-                    ("minimum",),
-                    f"minimum '{self.minimum}' is not below maximum '{self.maximum}'",
-                    "a minimum below the maximum",
-                    "check both figures and their signs",
-                )
-            )
-        raise_any(found)
-        return self
-
-
-class Rolling(Model):
-    WHAT: ClassVar[str] = "the rolling reduction"
-    factor: Annotated[Value, Number(("ratio",), bare=True, sign="positive", at_most=1.0)] = Field(
-        description="share of the positive limit that is left while rolling"
-    )
-    above_roll_rate: AngularRate = Field(description="roll rate from which it counts")
-
-
-class SpeedLimit(Model):
-    """A speed limit: one value, a table `over` a quantity, or a value that goes with the root of mass.
-
-    `airspeed` is the kind of airspeed it is given in. `points` are (x, speed) pairs, linear between, held beyond.
-    """
-
-    WHAT: ClassVar[str] = "a speed, or a table of speeds"
-    value: Airspeed | None = Field(default=None, description="one speed for all conditions, or the one at `mass`")
-    over: (
-        Annotated[Literal["pressure_altitude", "mass", "flaps"], Choice(tuple(_OVER), "a quantity to give speeds over")]
-        | None
-    ) = Field(default=None, description="quantity the table is over")
-    points: Annotated[tuple[tuple[Value, Value], ...], Ready(lambda: _pairs(Number(), _AIRSPEED))] = Field(
-        default=(), description="pairs of `over` and speed, ascending"
-    )
-    mass: Mass | None = Field(default=None, description="mass at which `value` holds")
-    scale: Annotated[Literal["sqrt_mass"], Choice(("sqrt_mass",), "a way to scale a speed")] | None = Field(
-        default=None, description="only where the manual says so"
-    )
-    MARK: ClassVar[Number] = _AIRSPEED
-
-    @classmethod
-    def shorthand(cls, value: Any) -> Any:
-        return {"value": value} if isinstance(value, str | int | float) else value
-
-    @classmethod
-    def short_schema(cls) -> dict[str, Any]:
-        return cls.MARK.schema()
-
-    @classmethod
-    def prepare(cls, value: Any) -> Any:
-        value = cls.shorthand(value)
-        if not isinstance(value, dict) or "points" not in value:
-            return value
-        x = _OVER.get(str(value.get("over")), Number())
-        pairs = Many(Tuple((x, cls.MARK), "a pair, as in '[960 kg, 128 KIAS]'"), "a list of pairs", least=2)
-        found: Faults = []
-        points = collect(found, ("points",), pairs.read, value["points"])
-        raise_any(found)
-        return {**value, "points": points}
-
-    @model_validator(mode="after")
-    def _one_form(self) -> SpeedLimit:
-        found: Faults = []
-        if self.value is None and not self.points:
-            found.append(((), "neither a value nor points are given", "a speed, or 'over' and 'points'", "add them"))
-        if self.value is not None and self.points:
-            found.append((("points",), "both a value and points are given", "one of them", "remove one"))
-        if self.points and self.over is None:
-            found.append(
-                ((), "points are given and 'over' is missing", f"over: one of {', '.join(sorted(_OVER))}", "add 'over'")
-            )
-        if self.over is not None and not self.points:
-            found.append(((), "'over' is given and the points are missing", "a list of pairs", "add 'points'"))
-        if self.scale is not None and (self.mass is None or self.value is None):
-            found.append(
-                (
-                    (),
-                    "scaling with mass needs 'value' and 'mass'",
-                    "{value: 128 KIAS, mass: 960 kg, scale: sqrt_mass}",
-                    "add the missing one",
-                )
-            )
-        if self.points:
-            check_ascending(self.points, str(self.over).replace("_", " "), found, ("points",))
-            first = self.points[0][1]
-            for index, (_, speed) in enumerate(self.points):
-                if speed.airspeed != first.airspeed:
-                    found.append(
-                        (
-                            ("points", index, 1),
-                            f"'{speed}' is another kind of airspeed than '{first}'",
-                            "one kind of airspeed in a table",
-                            "give all in the same kind",
-                        )
-                    )
-        raise_any(found)
-        return self
-
-    @property
-    def airspeed(self) -> str | None:
-        """Quantity the limit is given in, e.g. 'indicated_airspeed'."""
-        return self.value.airspeed if self.value is not None else self.points[0][1].airspeed
-
-    @property
-    def greatest(self) -> Value:
-        return self.value if self.value is not None else max((pair[1] for pair in self.points), key=float)
-
-    @property
-    def least(self) -> Value:
-        return self.value if self.value is not None else min((pair[1] for pair in self.points), key=float)
-
-
-class MachLimit(SpeedLimit):
-    """A Mach limit in the same forms."""
-
-    points: Annotated[tuple[tuple[Value, Value], ...], Ready(lambda: _pairs(Number(), _MACH))] = Field(
-        default=(), description="pairs of `over` and Mach number, ascending"
-    )
-
-    WHAT: ClassVar[str] = "a Mach number, or a table of Mach numbers"
-    value: Annotated[Value, _MACH] | None = Field(default=None, description="one Mach number for all conditions")
-    MARK: ClassVar[Number] = _MACH
-
-
-class FlapSpeedRow(Model):
-    WHAT: ClassVar[str] = "a row of flap speeds"
-    flaps: Angle | None = Field(default=None, description="flap setting; None for one speed at all settings")
-    maximum: Airspeed = Field(description="maximum speed with this setting")
-
-
-class Speeds(Model):
-    WHAT: ClassVar[str] = "the mapping of speeds"
-    manoeuvring: SpeedLimit | None = Field(default=None, description="V_A; no speed limit by itself")
-    normal_operating: SpeedLimit | None = Field(default=None, description="V_NO")
-    never_exceed: SpeedLimit | None = Field(default=None, description="V_NE")
-    maximum_operating: SpeedLimit | None = Field(default=None, description="V_MO")
-    flaps_extended: tuple[FlapSpeedRow, ...] = Field(
-        default=(), description="V_FE: rows of flaps and maximum, or one speed"
-    )
-    gear_operating: SpeedLimit | None = Field(default=None, description="V_LO")
-    gear_extended: SpeedLimit | None = Field(default=None, description="V_LE")
-    turbulence: SpeedLimit | None = Field(default=None, description="V_B or V_RA")
-    airbrakes: SpeedLimit | None = Field(default=None, description="maximum speed with airbrakes out")
-    aerotow: SpeedLimit | None = Field(default=None, description="V_T")
-    winch: SpeedLimit | None = Field(default=None, description="V_W")
-
-    @classmethod
-    def prepare(cls, value: Any) -> Any:
-        """One speed and a table over flaps become rows."""
-        if not isinstance(value, dict):
-            return value
-        given = value.get("flaps_extended")
-        if isinstance(given, str):
-            found: Faults = []
-            speed = collect(found, ("flaps_extended",), _AIRSPEED.read, given)
-            raise_any(found)
-            return {**value, "flaps_extended": (FlapSpeedRow(maximum=speed),)}
-        if isinstance(given, dict) and given.get("over") == "flaps" and isinstance(given.get("points"), list):
-            found = []
-            pair = Many(Tuple((_ANGLE, _AIRSPEED), "a pair, as in '[30 deg, 90 KIAS]'"), "a list of pairs")
-            rows = collect(found, ("flaps_extended", "points"), pair.read, given["points"])
-            raise_any(found)
-            return {**value, "flaps_extended": tuple(FlapSpeedRow(flaps=flaps, maximum=speed) for flaps, speed in rows)}
-        return value
-
-    @model_validator(mode="after")
-    def _possible(self) -> Speeds:
-        found: Faults = []
-        rows = self.flaps_extended
-        for index in range(1, len(rows)):
-            here, before = rows[index], rows[index - 1]
-            if here.flaps is None or before.flaps is None or not here.flaps > before.flaps:
-                found.append(
-                    (
-                        ("flaps_extended", index),
-                        f"flaps '{here.flaps}' are not above '{before.flaps}' before them",
-                        "rows in ascending order of flaps",
-                        "put the rows in order, each setting once",
-                    )
-                )
-            elif here.maximum > before.maximum and here.maximum.airspeed == before.maximum.airspeed:
-                found.append(
-                    (
-                        ("flaps_extended", index, "maximum"),
-                        f"'{here.maximum}' with more flaps is above '{before.maximum}' with fewer",
-                        "a speed that does not grow with flaps",
-                        "check both figures",
-                    )
-                )
-        for lower, upper in (
-            ("normal_operating", "never_exceed"),
-            ("manoeuvring", "never_exceed"),
-            ("turbulence", "never_exceed"),
-            ("turbulence", "maximum_operating"),
-            ("manoeuvring", "maximum_operating"),
-        ):
-            low, high = getattr(self, lower), getattr(self, upper)
-            if low is None or high is None or low.airspeed != high.airspeed:
-                continue
-            # tables may cross the constant elsewhere; only what holds nowhere is impossible
-            if low.least > high.greatest:
-                found.append(
-                    (
-                        (lower,),
-                        f"{lower.replace('_', ' ')} speed '{low.least}' is above "
-                        f"{upper.replace('_', ' ')} speed '{high.greatest}'",
-                        f"at most {high.greatest}",
-                        "check both figures",
-                    )
-                )
-        raise_any(found)
-        return self
-
-    @classmethod
-    def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
-        if name != "flaps_extended":
-            return schema
-        table = {
-            "type": "object",
-            "properties": {"over": {"const": "flaps"}, "points": _pairs(_ANGLE, _AIRSPEED)},
-            "required": ["over", "points"],
-            "additionalProperties": False,
-        }
-        return {"anyOf": [schema, _AIRSPEED.schema(), table], "description": schema.get("description", "")}
-
-
-class MachLimits(Model):
-    WHAT: ClassVar[str] = "the mapping of Mach limits"
-    maximum_operating: MachLimit | None = Field(default=None, description="M_MO")
-    never_exceed: MachLimit | None = Field(default=None, description="M_NE")
-
-
-class PositionErrorRow(Model):
-    """Indicated against calibrated airspeed at a flap setting (None: all)."""
-
-    WHAT: ClassVar[str] = "a row of position errors"
-    flaps: Angle | None = Field(default=None, description="flap setting; omitted: all")
-    points: Annotated[
-        tuple[tuple[Value, Value], ...],
-        Many(Tuple((_AIRSPEED, _AIRSPEED), "a pair, as in '[50 KIAS, 54 KCAS]'"), "a list of pairs"),
-    ] = Field(description="pairs of indicated and calibrated airspeed, ascending")
-
-    @model_validator(mode="after")
-    def _possible(self) -> PositionErrorRow:
-        found: Faults = []
-        for index, pair in enumerate(self.points):
-            for place, wanted, letters in ((0, "indicated_airspeed", "KIAS"), (1, "calibrated_airspeed", "KCAS")):
-                if pair[place].airspeed != wanted:
-                    found.append(
-                        (
-                            ("points", index, place),
-                            f"'{pair[place]}' is no {wanted.replace('_', ' ')}",
-                            "indicated airspeed first, calibrated airspeed second",
-                            f"give it in {letters}",
-                        )
-                    )
-        if not found:
-            check_ascending(self.points, "indicated airspeed", found, ("points",))
-            check_ascending([pair[::-1] for pair in self.points], "calibrated airspeed", found, ("points",))
-        raise_any(found)
-        return self
-
-
-class Wing(Model):
-    WHAT: ClassVar[str] = "the wing's data"
-    area: Area | None = Field(default=None, description="wing area")
-    span: Size | None = Field(default=None, description="wing span")
-    mean_chord: Size | None = Field(default=None, description="mean geometric chord")
-    lift_curve_slope: Slope | None = Field(default=None, description="of the aeroplane, per angle")
-
-
-class Accelerometer(Model):
-    WHAT: ClassVar[str] = "the accelerometer's data"
-    position: (
-        Annotated[tuple[Value, Value, Value], Tuple((_LENGTH,) * 3, "three lengths: forward, right, down of the CG")]
-        | None
-    ) = Field(default=None, description="from the centre of gravity: forward, right, down")
-    range: (
-        Annotated[tuple[Value, Value], Tuple((Number(("load factor",)),) * 2, "two load factors: lowest, highest")]
-        | None
-    ) = Field(default=None, description="lowest and highest reading the sensor can give")
-    calibrated: Date | None = Field(default=None, description="day of the last calibration")
-
-    @model_validator(mode="after")
-    def _possible(self) -> Accelerometer:
-        if self.range is not None and not self.range[0] < self.range[1]:
-            raise_any(
-                [(("range",), f"'{self.range[0]}' is not below '{self.range[1]}'", "lowest reading first", "swap them")]
-            )
-        return self
-
-
-class Recorder(Model):
-    WHAT: ClassVar[str] = "the recorder's data"
-    accelerometer: Accelerometer | None = Field(
-        default=None, description="where the accelerometer sits and what it can read"
-    )
-    accuracy: Annotated[
-        dict[str, Value], Ready(lambda: {"type": "object", "additionalProperties": Number(bare=True).schema()})
-    ] = Field(default_factory=dict, description="half-width of a 95 % interval, by quantity")
-
-    @classmethod
-    def prepare(cls, value: Any) -> Any:
-        if not isinstance(value, dict) or not isinstance(value.get("accuracy"), dict):
-            return value
-        found: Faults = []
-        made: dict[str, Any] = {}
-        for name, text in value["accuracy"].items():
-            row = QUANTITIES.get(name)
-            path = ("accuracy", name)
-            if row is None:
-                near = nearest_quantity(name)
-                # further names are allowed, as in a channels file; a near miss of a known one is a slip
-                if near is not None:
-                    found.append(
-                        (path, f"key '{name}' is not known here", "a quantity", f"write '{near}' if that is meant")
-                    )
-                    continue
-                mark = Number(bare=True, difference=True, sign="positive")
-            else:
-                mark = Number(
-                    (row.kind,), bare=row.kind == "ratio", difference=True, airspeed="refused", sign="positive"
-                )
-            made[name] = collect(found, path, mark.read, text)
-        raise_any(found)
-        return {**value, "accuracy": made}
-
-
-class Station(Model):
-    WHAT: ClassVar[str] = "a station's data"
-    arm: Length = Field(description="from the manual's datum, aft positive")
-    density: Density | None = Field(default=None, description="for a tank: density of the fuel")
-    maximum: Mass | None = Field(default=None, description="most this station may carry")
-
-
-class Loading(Model):
-    WHAT: ClassVar[str] = "the loading data"
-    stations: dict[str, Station] = Field(default_factory=dict, description="where load and fuel sit")
-    empty_arm: Length | None = Field(default=None, description="arm of the empty aeroplane")
-    envelope: Annotated[
-        tuple[tuple[Value, Value, Value], ...],
-        Many(Tuple((_MASS, _LENGTH, _LENGTH), "a row of mass, forward limit, aft limit"), "rows of the envelope"),
-    ] = Field(default=(), description="rows of mass, forward limit, aft limit; linear between")
-
-    @model_validator(mode="after")
-    def _possible(self) -> Loading:
-        found: Faults = []
-        check_ascending(self.envelope, "mass", found, ("envelope",))
-        for index, (_, forward, aft) in enumerate(self.envelope):
-            if not forward < aft:
-                found.append(
-                    (
-                        ("envelope", index),
-                        f"forward limit '{forward}' is not ahead of aft limit '{aft}'",
-                        "mass, forward limit, aft limit; arms count aft",
-                        "check the order of the row",
-                    )
-                )
-        raise_any(found)
-        return self
 
 
 class Aircraft(Model):
@@ -605,7 +131,7 @@ class Aircraft(Model):
         """One plain list of points is one row for all flap settings."""
         rows = value.get("position_error") if isinstance(value, dict) else None
         if isinstance(rows, list) and rows and isinstance(rows[0], list):
-            found: Faults = []
+            found = Faults()
             row = make(found, ("position_error",), PositionErrorRow, {"points": rows})
             # the row's own 'points' is no key of the text
             raise_any([((path[0], *path[2:]), *texts) for path, *texts in found])  # type: ignore[misc]
@@ -616,7 +142,10 @@ class Aircraft(Model):
     def written(cls, name: str, schema: dict[str, Any]) -> dict[str, Any]:
         if name != "position_error":
             return schema
-        return {"anyOf": [schema, _pairs(_AIRSPEED, _AIRSPEED)], "description": schema.get("description", "")}
+        return {
+            "anyOf": [schema, pairs(Number(("speed",), airspeed="required"), Number(("speed",), airspeed="required"))],
+            "description": schema.get("description", ""),
+        }
 
     @model_validator(mode="after")
     def _possible(self) -> Aircraft:
@@ -694,4 +223,27 @@ def same_registration(one: str | None, other: str | None) -> bool:
     return bool(first) and first == second
 
 
-__all__ = ["CATEGORIES", "Aircraft", "Fact", "category_aircraft", "load_aircraft", "same_registration"]
+__all__ = [
+    "CATEGORIES",
+    "Accelerometer",
+    "Aircraft",
+    "Fact",
+    "FlapSpeedRow",
+    "LoadFactorRow",
+    "Loading",
+    "MachLimit",
+    "MachLimits",
+    "Masses",
+    "PositionErrorRow",
+    "Recorder",
+    "Rolling",
+    "SpeedLimit",
+    "Speeds",
+    "StallRow",
+    "Station",
+    "Wing",
+    "category_aircraft",
+    "load_aircraft",
+    "plain_registration",
+    "same_registration",
+]

@@ -68,11 +68,11 @@ class TextsMark(Marker):
             raise fault(
                 f"{kind_of(value)} stands where a list is due", "a list of texts", "write the items in brackets"
             )
-        found: Faults = []
+        found = Faults()
         made = []
         for index, item in enumerate(given):
             if not isinstance(item, str):
-                found.append(((index,), f"{kind_of(item)} stands where text is due", "text", "quote it"))
+                found.note((index,), f"{kind_of(item)} stands where text is due", "text", "quote it")
             else:
                 made.append(item)
         raise_any(found)
@@ -196,36 +196,32 @@ class Clock(Model):
 
     @model_validator(mode="after")
     def _fits(self) -> Clock:
-        found: Faults = []
+        found = Faults()
         if self.column is not None and self.columns != (self.column,):
-            found.append((("column",), "both 'column' and 'columns' are given", "one of them", "remove one"))
+            found.note(("column",), "both 'column' and 'columns' are given", "one of them", "remove one")
         if not self.columns:
-            found.append(((), "no column is named", "'column' or 'columns'", "name the column"))
+            found.note((), "no column is named", "'column' or 'columns'", "name the column")
         if len(self.columns) > (3 if self.kind == "date_time" else 1):
             most = "at most three columns" if self.kind == "date_time" else "one column"
-            found.append(
-                (("columns",), f"{len(self.columns)} columns are too many for the kind {self.kind}", most, "name fewer")
+            found.note(
+                ("columns",), f"{len(self.columns)} columns are too many for the kind {self.kind}", most, "name fewer"
             )
         if self.kind in ("iso", "date_time", "frame") and self.unit is not None:
-            found.append(
-                (
-                    ("unit",),
-                    f"a clock of the kind {self.kind} has no unit",
-                    "'unit' only for elapsed or epoch",
-                    "remove it",
-                )
+            found.note(
+                ("unit",),
+                f"a clock of the kind {self.kind} has no unit",
+                "'unit' only for elapsed or epoch",
+                "remove it",
             )
         if self.kind in ("elapsed", "frame") and self.zone is not None:
-            found.append(
-                (
-                    ("zone",),
-                    f"a clock of the kind {self.kind} has no zone",
-                    "'zone' for iso, date_time or epoch",
-                    "remove it",
-                )
+            found.note(
+                ("zone",),
+                f"a clock of the kind {self.kind} has no zone",
+                "'zone' for iso, date_time or epoch",
+                "remove it",
             )
         if self.kind != "frame" and self.interval is not None:
-            found.append((("interval",), "only a frame counter has an interval", "'kind: frame'", "remove it"))
+            found.note(("interval",), "only a frame counter has an interval", "'kind: frame'", "remove it")
         raise_any(found)
         return self
 
@@ -249,18 +245,16 @@ class Channel(Model):
 
     @model_validator(mode="after")
     def _fits(self) -> Channel:
-        found: Faults = []
+        found = Faults()
         row = QUANTITIES.get(
             re.sub(r"(_\d+){1,2}$", "", self.quantity) if self.quantity not in QUANTITIES else self.quantity
         )
         if not re.fullmatch(r"[a-z][a-z0-9_]*", self.quantity):
-            found.append(
-                (
-                    ("quantity",),
-                    f"'{self.quantity}' is no name for a quantity",
-                    "lower-case letters, digits and '_'",
-                    "rename it",
-                )
+            found.note(
+                ("quantity",),
+                f"'{self.quantity}' is no name for a quantity",
+                "lower-case letters, digits and '_'",
+                "rename it",
             )
         unit_kind = (
             UNITS[AIRSPEED_UNITS[self.unit][0] if self.unit in AIRSPEED_UNITS else self.unit].kind
@@ -274,54 +268,44 @@ class Channel(Model):
             and unit_kind != row.kind
             and not (row.kind == "ratio" and unit_kind == "state")
         ):
-            found.append(
-                (
-                    ("unit",),
-                    f"'{self.unit}' is a unit of {unit_kind} and {self.quantity} is {an(row.kind)}",
-                    f"one of {', '.join(units_of(row.kind))}",
-                    "check quantity and unit",
-                )
+            found.note(
+                ("unit",),
+                f"'{self.unit}' is a unit of {unit_kind} and {self.quantity} is {an(row.kind)}",
+                f"one of {', '.join(units_of(row.kind))}",
+                "check quantity and unit",
             )
         if self.unit in AIRSPEED_UNITS and row is not None and AIRSPEED_UNITS[self.unit][1] != row.name:
-            found.append(
-                (
-                    ("unit",),
-                    f"'{self.unit}' is {AIRSPEED_UNITS[self.unit][1].replace('_', ' ')} and the quantity is {self.quantity}",
-                    "the unit of the quantity, as in 'kt'",
-                    "check quantity and unit",
-                )
+            found.note(
+                ("unit",),
+                f"'{self.unit}' is {AIRSPEED_UNITS[self.unit][1].replace('_', ' ')} and not {self.quantity}",
+                "the unit of the quantity, as in 'kt'",
+                "check quantity and unit",
             )
         words = AXES.get(row.name if row is not None else "")
         if self.positive is not None and words is None:
-            found.append(
-                (
-                    ("positive",),
-                    f"{self.quantity} has no sense to choose",
-                    "'positive' only where there are two senses",
-                    "remove it",
-                )
+            found.note(
+                ("positive",),
+                f"{self.quantity} has no sense to choose",
+                "'positive' only where there are two senses",
+                "remove it",
             )
         elif self.positive is not None and words is not None and self.positive not in words:
-            found.append(
-                (
-                    ("positive",),
-                    f"'{self.positive}' does not fit {self.quantity}",
-                    f"one of {', '.join(sorted(words))}",
-                    "use one of these",
-                )
+            found.note(
+                ("positive",),
+                f"'{self.positive}' does not fit {self.quantity}",
+                f"one of {', '.join(sorted(words))}",
+                "use one of these",
             )
         if self.datum is not None and self.quantity not in _LOAD_FACTORS:
-            found.append(
-                (("datum",), f"{self.quantity} has no datum to choose", "'datum' only for load factors", "remove it")
+            found.note(
+                ("datum",), f"{self.quantity} has no datum to choose", "'datum' only for load factors", "remove it"
             )
         if self.accuracy is not None and kind is not None and self.accuracy.kind != kind:
-            found.append(
-                (
-                    ("accuracy",),
-                    f"'{self.accuracy}' is {an(self.accuracy.kind)} and {self.quantity} is {an(kind)}",
-                    f"one of {', '.join(units_of(kind))}",
-                    "give a value of that kind",
-                )
+            found.note(
+                ("accuracy",),
+                f"'{self.accuracy}' is {an(self.accuracy.kind)} and {self.quantity} is {an(kind)}",
+                f"one of {', '.join(units_of(kind))}",
+                "give a value of that kind",
             )
         raise_any(found)
         return self
@@ -384,32 +368,26 @@ class Channels(Model):
 
     @model_validator(mode="after")
     def _once(self) -> Channels:
-        found: Faults = []
+        found = Faults()
         columns: dict[str, int] = {}
         quantities: dict[str, int] = {}
         for index, row in enumerate(self.channels):
             for seen, what, key in ((columns, "column", row.column), (quantities, "quantity", row.quantity)):
                 if key in seen:
-                    found.append(
-                        (
-                            ("channels", index, what),
-                            f"{what} '{key}' is there twice, first as channel {seen[key] + 1}",
-                            f"each {what} once",
-                            "remove one, or add an index as in 'engine_speed_2'"
-                            if what == "quantity"
-                            else "remove one",
-                        )
+                    found.note(
+                        ("channels", index, what),
+                        f"{what} '{key}' is there twice, first as channel {seen[key] + 1}",
+                        f"each {what} once",
+                        "remove one, or add an index as in 'engine_speed_2'" if what == "quantity" else "remove one",
                     )
                 seen.setdefault(key, index)
         for index, name in enumerate(self.ignore):
             if name in columns or (self.clock is not None and name in self.clock.columns):
-                found.append(
-                    (
-                        ("ignore", index),
-                        f"column '{name}' is both used and ignored",
-                        "one of the two",
-                        "remove it here or there",
-                    )
+                found.note(
+                    ("ignore", index),
+                    f"column '{name}' is both used and ignored",
+                    "one of the two",
+                    "remove it here or there",
                 )
         raise_any(found)
         return self

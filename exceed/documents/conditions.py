@@ -81,7 +81,7 @@ class PhaseMark(Marker):
                 "a list, as in '[approach, landing]'",
                 "name the phases, or leave the condition out",
             )
-        found: Faults = []
+        found = Faults()
         made = []
         for index, word in enumerate(given):
             plain = " ".join(word.split()) if isinstance(word, str) else word
@@ -146,35 +146,31 @@ class Condition(Model):
 
     @model_validator(mode="after")
     def _one_form(self) -> Condition:
-        found: Faults = []
+        found = Faults()
         tests = [name for name in ("above", "below", "within", "state") if getattr(self, name) is not None]
         forms = [bool(self.phase), self.quantity is not None, bool(self.any)]
         if sum(forms) != 1:
             text = "a condition needs one of 'phase', 'quantity' and 'any'"
-            found.append(
-                ((), text, "{phase: [approach]}, {quantity: Q, above: X} or {any: [...]}", "use one of these forms")
+            found.note(
+                (), text, "{phase: [approach]}, {quantity: Q, above: X} or {any: [...]}", "use one of these forms"
             )
         elif self.quantity is not None and not tests:
-            found.append(
-                ((), "this condition compares with nothing", "one of above, below, is, within", "add one of these")
+            found.note(
+                (), "this condition compares with nothing", "one of above, below, is, within", "add one of these"
             )
         elif self.quantity is None and tests:
-            found.append(
-                ((), "this condition has a value and no quantity", "{quantity: Q, above: X}", "name the quantity")
-            )
+            found.note((), "this condition has a value and no quantity", "{quantity: Q, above: X}", "name the quantity")
         if self.within is not None and not self.within[0] < self.within[1]:
-            found.append(
-                (
-                    ("within",),
-                    f"'{self.within[0]}' is not below '{self.within[1]}'",
-                    "two values, lowest first",
-                    "swap them",
-                )
+            found.note(
+                ("within",),
+                f"'{self.within[0]}' is not below '{self.within[1]}'",
+                "two values, lowest first",
+                "swap them",
             )
         low, high = self.above, self.below
         if low is not None and high is not None and low >= high:
             text = f"above '{low}' and below '{high}' can never both hold"
-            found.append((("below",), text, "'below' greater than 'above'", "swap them, or use {any: [...]}"))
+            found.note(("below",), text, "'below' greater than 'above'", "swap them, or use {any: [...]}")
         raise_any(found)
         return self
 

@@ -123,7 +123,7 @@ def look_up(aircraft: Aircraft, name: str) -> Fact:
 
 def contradictions(aircraft: Aircraft) -> Faults:
     """What cannot be true together; each at its path in the file."""
-    found: Faults = []
+    found = Faults()
     _stall_rows(aircraft, found)
     _load_factor_rows(aircraft, found)
     if aircraft.flaps == "none":
@@ -134,50 +134,42 @@ def contradictions(aircraft: Aircraft) -> Faults:
         for name, listed in settings_of:
             for index, flaps in enumerate(listed):
                 if flaps is not None and abs(flaps) > 1e-9:
-                    found.append(
-                        (
-                            (name, index, "flaps"),
-                            f"flaps '{flaps}' are given and the aeroplane has none",
-                            "'flaps: recorded' or 'not_recorded', or no rows with flaps",
-                            "correct one of the two",
-                        )
+                    found.note(
+                        (name, index, "flaps"),
+                        f"flaps '{flaps}' are given and the aeroplane has none",
+                        "'flaps: recorded' or 'not_recorded', or no rows with flaps",
+                        "correct one of the two",
                     )
         if aircraft.speeds.flaps_extended:
-            found.append(
-                (
-                    ("speeds", "flaps_extended"),
-                    "flap speeds are given and the aeroplane has no flaps",
-                    "'flaps: recorded' or 'not_recorded'",
-                    "correct one of the two",
-                )
+            found.note(
+                ("speeds", "flaps_extended"),
+                "flap speeds are given and the aeroplane has no flaps",
+                "'flaps: recorded' or 'not_recorded'",
+                "correct one of the two",
             )
     if aircraft.gear == "fixed":
         for name in ("gear_operating", "gear_extended"):
             if getattr(aircraft.speeds, name) is not None:
-                found.append(
-                    (
-                        ("speeds", name),
-                        "a gear speed is given and the gear is fixed",
-                        "'gear: recorded' or 'not_recorded'",
-                        "correct one of the two",
-                    )
+                found.note(
+                    ("speeds", name),
+                    "a gear speed is given and the gear is fixed",
+                    "'gear: recorded' or 'not_recorded'",
+                    "correct one of the two",
                 )
     envelope, empty = aircraft.loading.envelope, aircraft.mass.empty
     if envelope and empty is not None and envelope[-1][0] < empty:
         problem = f"the envelope ends at '{envelope[-1][0]}', below empty mass '{empty}'"
         path = ("loading", "envelope", len(envelope) - 1)
-        found.append((path, problem, "an envelope up to maximum take-off mass", "check the figures"))
+        found.note(path, problem, "an envelope up to maximum take-off mass", "check the figures")
     settings = [row.flaps for row in aircraft.position_error]
     for index in range(1, len(settings)):
         here, before = settings[index], settings[index - 1]
         if here is None or before is None or not here > before:
-            found.append(
-                (
-                    ("position_error", index),
-                    f"flaps '{here}' are not above '{before}' before them",
-                    "rows in ascending order of flaps",
-                    "put the rows in order, each setting once",
-                )
+            found.note(
+                ("position_error", index),
+                f"flaps '{here}' are not above '{before}' before them",
+                "rows in ascending order of flaps",
+                "put the rows in order, each setting once",
             )
     return found
 
@@ -188,23 +180,19 @@ def _stall_rows(aircraft: Aircraft, found: Faults) -> None:
         here, before = rows[index], rows[index - 1]
         flaps, flaps_before = here.flaps or 0.0, before.flaps or 0.0
         if flaps < flaps_before or (flaps == flaps_before and here.mass == before.mass):
-            found.append(
-                (
-                    ("stall_speed", index),
-                    f"flaps '{here.flaps}' are not above '{before.flaps}' before them",
-                    "rows in ascending order of flaps",
-                    "put the rows in order, each setting once",
-                )
+            found.note(
+                ("stall_speed", index),
+                f"flaps '{here.flaps}' are not above '{before.flaps}' before them",
+                "rows in ascending order of flaps",
+                "put the rows in order, each setting once",
             )
         same = here.upright.airspeed == before.upright.airspeed and here.mass == before.mass
         if flaps > flaps_before and same and here.upright > before.upright:
-            found.append(
-                (
-                    ("stall_speed", index, "upright"),
-                    f"stall speed '{here.upright}' with more flaps is above '{before.upright}' with fewer",
-                    "a stall speed that does not grow with flaps",
-                    "check both figures",
-                )
+            found.note(
+                ("stall_speed", index, "upright"),
+                f"stall speed '{here.upright}' with more flaps is above '{before.upright}' with fewer",
+                "a stall speed that does not grow with flaps",
+                "check both figures",
             )
     if not rows:
         return
@@ -213,13 +201,11 @@ def _stall_rows(aircraft: Aircraft, found: Faults) -> None:
         limit = getattr(aircraft.speeds, name)
         # indicated and calibrated differ by the position error, far less than these two may ever be apart
         if limit is not None and limit.greatest <= clean:
-            found.append(
-                (
-                    ("speeds", name),
-                    f"{_SPEEDS[name]} '{limit.greatest}' is not above stall speed '{clean}'",
-                    f"above {clean}",
-                    "check both figures",
-                )
+            found.note(
+                ("speeds", name),
+                f"{_SPEEDS[name]} '{limit.greatest}' is not above stall speed '{clean}'",
+                f"above {clean}",
+                "check both figures",
             )
 
 
@@ -231,13 +217,11 @@ def _load_factor_rows(aircraft: Aircraft, found: Faults) -> None:
                 continue
             key = (row.flaps, row.mass_up_to, row.speed_up_to, row.airbrakes, side)
             if key in seen:
-                found.append(
-                    (
-                        ("load_factor", index),
-                        f"this row has the same conditions as row {seen[key] + 1}",
-                        "each set of conditions once",
-                        "remove one, or tell them apart",
-                    )
+                found.note(
+                    ("load_factor", index),
+                    f"this row has the same conditions as row {seen[key] + 1}",
+                    "each set of conditions once",
+                    "remove one, or tell them apart",
                 )
                 break
             seen[key] = index

@@ -71,27 +71,23 @@ class Fleet(Model):
 
     @model_validator(mode="after")
     def _once(self) -> Fleet:
-        found: Faults = []
+        found = Faults()
         for index, row in enumerate(self.aircraft):
             for before in range(index):
                 other = self.aircraft[before]
                 if same_registration(row.registration, other.registration):
-                    found.append(
-                        (
-                            ("aircraft", index, "registration"),
-                            f"registration '{row.registration}' is there twice, first as aeroplane {before + 1}",
-                            "each registration once",
-                            "remove one of them",
-                        )
+                    found.note(
+                        ("aircraft", index, "registration"),
+                        f"registration '{row.registration}' is there twice, first as aeroplane {before + 1}",
+                        "each registration once",
+                        "remove one of them",
                     )
                 if row.recorder_serial is not None and row.recorder_serial == other.recorder_serial:
-                    found.append(
-                        (
-                            ("aircraft", index, "recorder_serial"),
-                            f"recorder '{row.recorder_serial}' is in {other.registration} as well",
-                            "each recorder in one aeroplane",
-                            "correct one of the serial numbers",
-                        )
+                    found.note(
+                        ("aircraft", index, "recorder_serial"),
+                        f"recorder '{row.recorder_serial}' is in {other.registration} as well",
+                        "each recorder in one aeroplane",
+                        "correct one of the serial numbers",
                     )
         raise_any(found)
         return self
@@ -161,7 +157,7 @@ def _expression(pattern: str) -> str:
 
 
 def by_path(fleet: Fleet, paths: Iterable[str]) -> list[FleetAircraft]:
-    """Rows whose `logs` patterns fit one of the paths (relative to the fleet file, to the PATH given, or the file name)."""
+    """Rows whose `logs` patterns fit one of the paths, or the file name at its end."""
     forms = [path for path in paths if path]
     forms += [path.replace("\\", "/").rsplit("/", 1)[-1] for path in forms]
     return [row for row in fleet.aircraft if any(matches(pattern, form) for pattern in row.logs for form in forms)]

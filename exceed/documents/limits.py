@@ -73,20 +73,18 @@ class TableLimit(Model):
 
     @model_validator(mode="after")
     def _ascending(self) -> TableLimit:
-        found: Faults = []
+        found = Faults()
         for column, first in ((0, self.points[0][0]), (1, self.points[0][1])):
             for index, pair in enumerate(self.points):
                 if pair[column].kind != first.kind or pair[column].airspeed != first.airspeed:
                     text = f"'{pair[column]}' is another kind of value than '{first}'"
-                    found.append(
-                        (("points", index, column), text, "one kind in each column", "give all in the same kind")
-                    )
+                    found.note(("points", index, column), text, "one kind in each column", "give all in the same kind")
         if not found:
             for index in range(1, len(self.points)):
                 before, here = self.points[index - 1][0], self.points[index][0]
                 if not here > before:
                     text = f"'{here}' is not above '{before}' before it"
-                    found.append((("points", index), text, "points in ascending order", "put them in order, each once"))
+                    found.note(("points", index), text, "points in ascending order", "put them in order, each once")
         raise_any(found)
         return self
 
@@ -111,7 +109,7 @@ class LimitMark(Marker):
     def read(self, value: Any) -> Limit:
         if isinstance(value, ConstantLimit | FactLimit | TableLimit | RelativeLimit):
             return value
-        found: Faults = []
+        found = Faults()
         made: Limit | None = None
         if isinstance(value, dict):
             if "over" in value or "points" in value:
@@ -203,7 +201,7 @@ class LevelsMark(Marker):
             raise fault(f"{kind_of(value)} stands where levels are due", expected, "name the severity of each level")
         if not value:
             raise fault("no level is given", expected, "add a level")
-        found: Faults = []
+        found = Faults()
         made: list[LevelKey] = []
         for name, level in value.items():
             if name not in SEVERITIES:

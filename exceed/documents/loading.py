@@ -1,7 +1,7 @@
 """A loading sheet, `exceed-loading/1`: what was on board, and what the cockpit g-meter said.
 
-`load_loading(path or text) -> LoadingSheet`: registration, take_off (UTC) or None, log or None, stations (name -> mass in
-kg or volume in m3), observed.load_factor_maximum / load_factor_minimum, path, sha256.
+`load_loading(path or text) -> LoadingSheet`: registration, take_off (UTC) or None, log or None, stations (name -> mass
+in kg or volume in m3), observed.load_factor_maximum / load_factor_minimum, path, sha256.
 `sheet_for_flights` says which sheet belongs to which flight; `station_masses` turns litres into kilograms.
 """
 
@@ -49,7 +49,7 @@ class StationsMark(Marker):
                 "a mapping, as in '{pilot: 82 kg}'",
                 "write 'station: mass'",
             )
-        found: Faults = []
+        found = Faults()
         made = {name: collect(found, (name,), self.part.read, load) for name, load in value.items()}
         raise_any(found)
         return made

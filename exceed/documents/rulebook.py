@@ -98,8 +98,9 @@ class RuleBook:
 def layer(sets: Iterable[RuleSet]) -> RuleBook:
     """Put sets on top of one another, later ones over earlier ones.
 
-    The very same rule in two sets counts once. A later rule of the same id replaces the earlier one if it says `override: true`, and is an error otherwise. The
-    same file given twice counts once, and is noted. Raises DocumentError with all problems.
+    The very same rule in two sets counts once. A later rule of the same id replaces the earlier one if it says
+    `override: true`, and is an error otherwise. The same file given twice counts once, and is noted. Raises
+    DocumentError with all problems.
     """
     problems: list[Problem] = []
     notes: list[str] = []

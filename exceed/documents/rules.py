@@ -1,12 +1,12 @@
 """Rules and rule sets, `exceed-rules/1`: frozen models, every number a float in SI that keeps its text (`Value`).
 
-Attributes of `Rule`: id, title, quantity (a name, or 'airspeed'), rate (True for {rate_of: ...}), kind (kind of quantity
-of what is judged), limit (None | ConstantLimit .value | FactLimit .fact | TableLimit .over .points .between |
+Attributes of `Rule`: id, title, quantity (a name, or 'airspeed'), rate (True for {rate_of: ...}), kind (kind of
+quantity of what is judged), limit (None | ConstantLimit .value | FactLimit .fact | TableLimit .over .points .between |
 RelativeLimit .quantity .times .plus), levels (tuple of Level), states (tuple of StateLevel, for `is`), when (tuple of
 Condition: .phase | .quantity .rate .above .below .within .state_value | .any), lasting, joining (floats, s), release
 (Value | None) with release_is_percent, allowed (.up_to .for_time .within), count (.at_least .within), total (.above
-.within), must_see (Value | None), judge_on ('estimate' | 'sample'), override, inspection (.from_severity .certainty .task
-.ata .before), source, notes (tuple of text), place ('file:line:column'), rule_set (name of its set).
+.within), must_see (Value | None), judge_on ('estimate' | 'sample'), override, inspection (.from_severity .certainty
+.task .ata .before), source, notes (tuple of text), place ('file:line:column'), rule_set (name of its set).
 `rule.needs()` lists the quantities it asks for; `rule.look_up(aircraft) -> Fact | None`; `rule.channels(names)` the
 recorded names it matches, by index.
 `RuleSet`: name, title, rules, quantities {name: unit}, path, sha256. See `rulebook` for loading and layering.
@@ -37,6 +37,7 @@ from exceed.documents.fields import (
     Model,
     Number,
     Words,
+    an,
     collect,
     fault,
     kind_of,
@@ -117,13 +118,13 @@ class StatesMark(Marker):
             raise fault(
                 f"{kind_of(value)} stands where states are due", "a mapping, as in '{caution: up}'", "name the severity"
             )
-        found: Faults = []
+        found = Faults()
         made: dict[str, str] = {}
         for name, word in value.items():
             collect(found, (name,), Choice(SEVERITIES, "a severity").read, name)
             if not isinstance(word, str) or not word.strip():
-                found.append(
-                    ((name,), f"{kind_of(word)} stands where a state is due", "a word, as in 'up'", "write the state")
+                found.note(
+                    (name,), f"{kind_of(word)} stands where a state is due", "a word, as in 'up'", "write the state"
                 )
             else:
                 made[name] = word.strip().lower()
@@ -158,30 +159,26 @@ class UnitsMark(Marker):
                 "a mapping, as in '{oil_temperature: degC}'",
                 "write 'name: unit'",
             )
-        found: Faults = []
+        found = Faults()
         for name, unit in value.items():
             if not _NAME.match(name):
-                found.append(
-                    (
-                        (name,),
-                        f"key '{name}' is no name for a quantity",
-                        "lower-case letters, digits and '_'",
-                        "rename it",
-                    )
+                found.note(
+                    (name,),
+                    f"key '{name}' is no name for a quantity",
+                    "lower-case letters, digits and '_'",
+                    "rename it",
                 )
             elif name in QUANTITIES or name == "airspeed":
-                found.append(
-                    (
-                        (name,),
-                        f"key '{name}' is a quantity that is known already",
-                        "a name of your own",
-                        "remove this line",
-                    )
+                found.note(
+                    (name,),
+                    f"key '{name}' is a quantity that is known already",
+                    "a name of your own",
+                    "remove this line",
                 )
             if not isinstance(unit, str) or unit not in UNITS:
                 near = nearest_unit(unit) if isinstance(unit, str) else None
                 do = f"write '{near}' if that is meant" if near else "use a unit of the list"
-                found.append(((name,), f"unit {kind_of(unit)} is not known", f"one of {', '.join(sorted(UNITS))}", do))
+                found.note((name,), f"unit {kind_of(unit)} is not known", f"one of {', '.join(sorted(UNITS))}", do)
         raise_any(found)
         return dict(value)
 
@@ -319,12 +316,18 @@ class Rule(Model):
         return next((value.airspeed for value in written if value.airspeed), None)
 
     def look_up(self, aircraft: Aircraft) -> Fact | None:
-        """The aircraft fact its limit points at, or None if it points at none. One of the wrong kind counts as missing."""
+        """The aircraft fact its limit points at, or None. One that does not fit the rule counts as missing."""
         if not isinstance(self.limit, FactLimit):
             return None
         fact = aircraft.fact(self.limit.fact)
+        text = ""
         if fact.value is not None and self.kind and fact.kind != self.kind:
-            text = f"{fact.name} is a {fact.kind} and the rule is about a {self.kind}"
+            text = f"{fact.name} is {an(fact.kind)} and the rule is about {an(self.kind)}"
+        elif fact.value is not None and self.quantity == "airspeed" and fact.airspeed is None:
+            text = f"{fact.name} does not say which airspeed it is"
+        elif fact.airspeed is not None and self.quantity in AIRSPEEDS and fact.airspeed != self.quantity:
+            text = f"{fact.name} is {an(fact.airspeed.replace('_', ' '))} and the rule is about {self.quantity}"
+        if text:
             return Fact(fact.name, fact.kind, missing=text, assumed=fact.assumed, source=fact.source)
         return fact
 
@@ -359,7 +362,7 @@ class Rule(Model):
         return tuple(dict.fromkeys(names))
 
     def channels(self, names: Iterable[str]) -> tuple[str, ...]:
-        """Those of `names` it judges: its quantity, and each with an index after it (engine_speed_1, engine_speed_2)."""
+        """Those of `names` it judges: its quantity, and each with an index after it, as in engine_speed_2."""
         pattern = re.compile(re.escape(self.quantity) + r"(_\d+){0,2}$")
         return tuple(sorted((name for name in names if pattern.match(name)), key=natural))
 
@@ -397,15 +400,15 @@ class RuleSet(Model):
 
     @model_validator(mode="after")
     def _once(self) -> RuleSet:
-        found: Faults = []
+        found = Faults()
         seen: dict[str, int] = {}
         for index, rule in enumerate(self.rules):
             if rule.id in seen:
                 text = f"id '{rule.id}' is there twice, first as rule {seen[rule.id] + 1}"
-                found.append((("rules", index, "id"), text, "each id once in a file", "give one of them another id"))
+                found.note(("rules", index, "id"), text, "each id once in a file", "give one of them another id")
             seen.setdefault(rule.id, index)
         if not self.rules:
-            found.append((("rules",), "there is no rule", "a list of rules", "'exceed template rules' prints examples"))
+            found.note(("rules",), "there is no rule", "a list of rules", "'exceed template rules' prints examples")
         raise_any(found)
         return self
 

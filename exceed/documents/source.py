@@ -15,9 +15,9 @@ from typing import Any
 
 import yaml
 
+from exceed.documents.reading import read_text, syntax
 from exceed.errors import DocumentError, Problem
 
-MAXIMUM_BYTES = 2_000_000
 MAXIMUM_DEPTH = 32
 MAXIMUM_NODES = 50_000
 
@@ -95,85 +95,6 @@ def plain(node: Node) -> Any:
     return node.text if isinstance(node, Scalar) else None
 
 
-def read_text(path: Path | str, name: str | None = None) -> tuple[str, bytes]:
-    """Text and bytes of a file. Raises DocumentError for what is not there or is no UTF-8 text."""
-    shown = name or str(path)
-    path = Path(path)
-    try:
-        if path.is_dir():
-            raise DocumentError(Problem(shown, "this is a folder", "a YAML file", "name the file in it"))
-        size = path.stat().st_size
-        if size > MAXIMUM_BYTES:
-            raise DocumentError(
-                Problem(
-                    shown,
-                    f"the file has {size} bytes, too many for one of our YAML files",
-                    f"at most {MAXIMUM_BYTES} bytes",
-                    "check that this is the right file",
-                )
-            )
-        with path.open("rb") as stream:
-            data = stream.read(MAXIMUM_BYTES + 1)
-    except FileNotFoundError:
-        raise DocumentError(Problem(shown, "there is no such file", "a YAML file", "check the path")) from None
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or "the name is not possible"
-        raise DocumentError(
-            Problem(
-                shown,
-                f"the file cannot be read: {reason}",
-                "a readable YAML file",
-                "check the path and its permissions",
-            )
-        ) from error
-    return decode(data, shown), data
-
-
-def decode(data: bytes, name: str) -> str:
-    """Bytes as text. Raises DocumentError with the place for anything but clean UTF-8."""
-    if len(data) > MAXIMUM_BYTES:
-        raise DocumentError(
-            Problem(
-                name,
-                f"more than {MAXIMUM_BYTES} bytes are too many for one of our YAML files",
-                f"at most {MAXIMUM_BYTES} bytes",
-                "check that this is the right file",
-            )
-        )
-    save = "save the file as UTF-8 text"
-    if data.startswith((b"\xff\xfe", b"\xfe\xff")):
-        raise DocumentError(Problem(f"{name}:1:1", "the text is UTF-16", "UTF-8 text", save))
-    try:
-        text = data.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        before = data[: error.start].decode("utf-8-sig", errors="replace")
-        place = f"{name}:{_position(before)}"
-        raise DocumentError(
-            Problem(place, f"byte 0x{data[error.start]:02x} is no UTF-8 text", "UTF-8 text", save)
-        ) from None
-    for index, character in enumerate(text):
-        code = ord(character)
-        if (
-            (code < 32 and character not in "\t\n\r")
-            or (127 <= code < 160 and code != 0x85)
-            or code in (0xFEFF, 0xFFFE, 0xFFFF)
-        ):
-            raise DocumentError(
-                Problem(
-                    f"{name}:{_position(text[:index])}",
-                    f"a control character (U+{code:04X}) stands here",
-                    "plain UTF-8 text",
-                    "remove it, or check that this is the right file",
-                )
-            )
-    return text
-
-
-def _position(before: str) -> str:
-    line = before.count("\n") + 1
-    return f"{line}:{len(before) - (before.rfind(chr(10)) + 1) + 1}"
-
-
 def load(path: Path | str, name: str | None = None) -> Document:
     """Read and parse one file. `name` is how messages call it."""
     shown = name or str(path)
@@ -189,7 +110,7 @@ def parse(text: str, name: str = "text", sha256: str = "") -> Document:
         for event in yaml.parse(text, Loader=_Loader):
             builder.take(event)
     except yaml.YAMLError as error:
-        raise DocumentError(*builder.problems, _syntax(error, name, text)) from error
+        raise DocumentError(*builder.problems, syntax(error, name, text)) from error
     except RecursionError:
         raise DocumentError(
             Problem(
@@ -420,72 +341,6 @@ def _count(root: Mapping, name: str) -> None:
         return known
 
     size(root)
-
-
-# what the parser says -> our words, and what to do
-_SYNTAX: tuple[tuple[str, str, str], ...] = (
-    (
-        "mapping values are not allowed",
-        "a ': ' stands where none can be",
-        "quote the text if the colon belongs to it, else start a new line",
-    ),
-    ("cannot start any token", "a character stands here that cannot start a value", "quote the value"),
-    (
-        "did not find expected ',' or '}'",
-        "the braces are not closed, or a comma is missing",
-        "write '{key: value, key: value}'",
-    ),
-    (
-        "did not find expected ',' or ']'",
-        "the brackets are not closed, or a comma is missing",
-        "write '[value, value]'",
-    ),
-    ("did not find expected key", "a key is due here", "align the keys of a mapping in one column, as in 'key: value'"),
-    (
-        "did not find expected '-' indicator",
-        "a list item is due here",
-        "start every item of the list with '- ' in one column",
-    ),
-    ("could not find expected ':'", "a ':' is missing after a key", "write 'key: value'"),
-    ("found unexpected end of stream", "a quote is opened and never closed", "close the quote"),
-    ("did not find expected node content", "a value is due here", "write the value"),
-    ("block sequence entries are not allowed", "a list item cannot stand here", "start the list on a line of its own"),
-    ("found unknown escape character", "a backslash in double quotes starts an unknown escape", "use single quotes"),
-    ("found duplicate anchor", "an anchor is there twice", "give each anchor its own name"),
-    ("found undefined tag handle", "a tag is not known", "remove the tag"),
-    (
-        "did not find expected <document start>",
-        "text follows after the end of the document",
-        "keep one document in a file",
-    ),
-    ("found undefined alias", "an alias has no anchor before it", "write the value out"),
-)
-
-
-def _syntax(error: yaml.YAMLError, name: str, text: str) -> Problem:
-    mark = getattr(error, "problem_mark", None) or getattr(error, "context_mark", None)
-    said = str(getattr(error, "problem", "") or "")
-    if mark is None:
-        return Problem(name, "this is no YAML text", "YAML", "check that this is the right file")
-    place = f"{name}:{mark.line + 1}:{mark.column + 1}"
-    lines = text.splitlines()
-    line = lines[mark.line] if mark.line < len(lines) else ""
-    at = line[mark.column : mark.column + 1]
-    if at == "%":
-        return Problem(
-            place, "'%' stands unquoted where a value starts", "a quoted per cent sign", "write '\"%\"' with its quotes"
-        )
-    if at == "\t" or "\t" in line[: len(line) - len(line.lstrip())]:
-        return Problem(
-            place, "a tab stands where blanks are due", "blanks for indentation", "replace the tab by blanks"
-        )
-    for start, ours, do in _SYNTAX:
-        if start in said:
-            shown = f" ('{at}')" if at and "character" in ours else ""
-            return Problem(place, ours + shown, "valid YAML", do)
-    return Problem(
-        place, "the text is no valid YAML here", "valid YAML", "check quotes, brackets and indentation near here"
-    )
 
 
 def unquoted_dates(document: Document) -> list[Problem]:
