@@ -80,6 +80,22 @@ def first_pass(recording: Recording, aircraft: Aircraft | None = None, stall_spe
     return FirstPass(MappingProxyType(channels), track, coarse, signals, found, MappingProxyType(facts), tuple(notes))
 
 
+def inverted_time(bank: Channel, time: Array, airborne: Intervals) -> Channel:
+    """Seconds since the aeroplane turned beyond 90 degrees of bank, 0 upright, on the bank's own samples.
+
+    time : (n,) s, of the recording's axis. Continues over samples that are missing, not over gaps. [DEFINITION]
+    """
+    when = time if bank.rows is None else time[bank.rows]
+    angle = np.abs((bank.values + np.pi) % (2.0 * np.pi) - np.pi)
+    inverted = (angle > 0.5 * np.pi) & airborne.contains(when)
+    # the latest instant at which it was known not to be inverted, or at which a gap ended
+    upright = ~inverted & np.isfinite(angle)
+    upright[1:] |= np.diff(when) > bank.gap
+    last = np.maximum.accumulate(np.where(upright, np.arange(len(when)), 0)) if len(when) else np.empty(0, dtype=int)
+    values = np.where(np.isfinite(angle), np.where(inverted, when - when[last], 0.0), np.nan)
+    return Channel("inverted_time", "", frozen(values), bank.rows, bank.interval, found_by="derived")
+
+
 def _field_levels(coarse: Coarse, signals: Signals, found: Found) -> tuple[Array, Array] | None:
     """Instants and levels of the fields of take-offs and landings, as the altitude that is used shows them."""
     if signals.height is None:

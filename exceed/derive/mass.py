@@ -104,8 +104,15 @@ def masses_of(
     loaded = max(float(np.nanmax(series)) - lightest, 0.0) if loads else 0.0
     own = float(np.hypot(LOAD_SHARE * loaded, used.share * extent))
     made = {"mass": _series(coarse, "mass", series)}
+    zero = np.full(len(coarse), np.nan)
+    for place, load in loads.items():
+        start, end, _ = spans[place]
+        zero[(coarse.time >= start) & (coarse.time < end)] = load.zero_fuel
     steps = {"mass": Step("mass", method, None, assumes=assumes, uncertainty=own, source="FAA-WB")}
     missing = {}
+    if np.isfinite(zero).any():
+        made["zero_fuel_mass"] = _series(coarse, "zero_fuel_mass", zero)
+        steps["zero_fuel_mass"] = Step("zero_fuel_mass", "loading sheet", None, source="FAA-WB")
     if np.isfinite(arms).any():
         made["centre_of_gravity"] = _series(coarse, "centre_of_gravity", arms)
         method_cg = "loading sheet, fuel burnt at its station"
@@ -262,13 +269,13 @@ def _fuel_used(first: FirstPass, aircraft: Aircraft | None, facts: Facts, notes:
             return _Used(np.interp(time, time[known], burnt[known]), "fuel flow integrated", 0.03)
     rate: Any = None if aircraft is None else aircraft.fuel_consumption
     if rate is not None:
-        flow = float(rate) * (1.0 if rate.kind == "mass flow" else _density(aircraft, facts, notes))
+        steady = float(rate) * (1.0 if rate.kind == "mass flow" else _density(aircraft, facts, notes))
         flown = np.zeros(len(coarse))
         for flight in first.track.flights:
             flown += np.clip(coarse.time - flight.start, 0.0, flight.end - flight.start)
         if not first.track.known:
             flown = time - time[0]
-        return _Used(flow * flown, "fuel consumption of the aircraft file", 0.2)
+        return _Used(steady * flown, "fuel consumption of the aircraft file", 0.2)
     return _Used(np.zeros(len(coarse)), "no fuel used", 0.0)
 
 

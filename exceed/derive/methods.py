@@ -1,25 +1,16 @@
-"""The functions of `DERIVATIONS` that are more than one of physics: pure, arrays (n,) in SI, NaN where unknown.
+"""Air, motion and load factor: functions of `DERIVATIONS` that are more than one function of physics.
 
-A parameter is named for a quantity, for `recorded_QUANTITY` (the channel beneath a correction), for `time`, or for a
-fact. One with the default None is used where it can be had.
+Pure, arrays (n,) in SI, NaN where unknown. A parameter is named for a quantity, for `recorded_QUANTITY` (the channel
+beneath a correction), for `time`, or for a fact. One with the default None is used where it can be had.
 """
 
 from __future__ import annotations
 
-from typing import Any
-
 import numpy as np
 
 from exceed.core.constants import EARTH_RADIUS, STANDARD_GRAVITY
-from exceed.core.intervals import Intervals
-from exceed.core.phases import PHASE_CODE, PhaseTrack
 from exceed.core.recording import Array
-from exceed.physics import airspeed, atmosphere, gust, kinematics, load_limits, smoothing, stall, tables
-from exceed.physics.load_limits import LoadFactorTable
-from exceed.physics.stall import StallTable
-
-GUST_BANK = np.radians(30.0)  # steeper is a manoeuvre; common practice, no source
-FLAPS_UP = np.radians(1.0)
+from exceed.physics import airspeed, atmosphere, kinematics, smoothing
 
 
 def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
@@ -50,10 +41,6 @@ def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
 def angle_slope(time: Array, angle: Array, width: float, max_gap: float) -> Array:
     """Rate of change of an angle that wraps, rad/s; as `slope`."""
     return slope(time, smoothing.unwrap_angle(angle), width, max_gap)
-
-
-def _flown(time: Array, airborne: Intervals, values: Array) -> Array:
-    return np.where(airborne.contains(time), values, np.nan)
 
 
 # --- airspeed and air -------------------------------------------------------------------------------------------
@@ -244,188 +231,3 @@ def load_factor_from_path(
 
 def load_factor_wings_level(time: Array, vertical_speed: Array, width: float, max_gap: float) -> Array:
     return 1.0 + slope(time, vertical_speed, width, max_gap) / STANDARD_GRAVITY
-
-
-# --- stall and limits -------------------------------------------------------------------------------------------
-
-
-def _flaps(flap_angle: Array | None, like: Array) -> Array:
-    return np.zeros(np.shape(like)) if flap_angle is None else flap_angle
-
-
-def stall_speed(
-    time: Array,
-    load_factor: Array,
-    mass: Array,
-    stall_table: StallTable,
-    airborne: Intervals,
-    flap_angle: Array | None = None,
-    pressure_altitude: Array | None = None,
-) -> Array:
-    """Calibrated airspeed of the stall at the sample's load factor; null on the ground. Source: [CONSTANT-CL]."""
-    flaps = _flaps(flap_angle, load_factor)
-    if pressure_altitude is None:
-        # at sea level equivalent is calibrated
-        return _flown(time, airborne, stall.stall_speed_equivalent(load_factor, mass, flaps, stall_table))
-    return _flown(time, airborne, stall.stall_speed(load_factor, mass, flaps, pressure_altitude, stall_table))
-
-
-def stall_speed_ratio(
-    time: Array,
-    calibrated_airspeed: Array,
-    mass: Array,
-    stall_table: StallTable,
-    airborne: Intervals,
-    flap_angle: Array | None = None,
-) -> Array:
-    """Calibrated airspeed over the 1 g stall speed at this mass and these flaps. Source: [CONSTANT-CL]."""
-    one_g = stall.stall_speed_1g(mass, _flaps(flap_angle, calibrated_airspeed), stall_table)
-    return _flown(time, airborne, stall.stall_speed_ratio(calibrated_airspeed, one_g))
-
-
-def _limit_keys(time: Array, keys: tuple[Array | None, ...]) -> tuple[Array, ...]:
-    flaps, mass, speed, brakes = keys
-    nothing = np.full(len(time), np.nan)
-    still = np.zeros(len(time))
-    return (
-        still if flaps is None else flaps,
-        nothing if mass is None else mass,
-        nothing if speed is None else speed,
-        still if brakes is None else brakes,
-    )
-
-
-def load_factor_maximum(
-    time: Array,
-    load_factor_table: LoadFactorTable,
-    rolling: tuple[float, float] | None = None,
-    limit_flap_angle: Array | None = None,
-    limit_mass: Array | None = None,
-    limit_airspeed: Array | None = None,
-    limit_airbrakes: Array | None = None,
-    limit_roll_rate: Array | None = None,
-) -> Array:
-    """Positive limit load factor in force: rows by flaps, mass, speed, airbrakes; the manual's reduction while rolling.
-
-    Source: [COMMON-PRACTICE], see `load_limits.load_factor_maximum`.
-    """
-    keys = _limit_keys(time, (limit_flap_angle, limit_mass, limit_airspeed, limit_airbrakes))
-    limit = _limit(load_limits.load_factor_maximum, keys, load_factor_table)
-    if rolling is not None and limit_roll_rate is not None:
-        limit = load_limits.load_factor_maximum_rolling(limit, limit_roll_rate, *rolling)
-    return np.broadcast_to(limit, time.shape)
-
-
-def load_factor_minimum(
-    time: Array,
-    load_factor_table: LoadFactorTable,
-    limit_flap_angle: Array | None = None,
-    limit_mass: Array | None = None,
-    limit_airspeed: Array | None = None,
-    limit_airbrakes: Array | None = None,
-) -> Array:
-    """Negative limit load factor in force. Source: [COMMON-PRACTICE], see `load_limits.load_factor_minimum`."""
-    keys = _limit_keys(time, (limit_flap_angle, limit_mass, limit_airspeed, limit_airbrakes))
-    return np.broadcast_to(_limit(load_limits.load_factor_minimum, keys, load_factor_table), time.shape)
-
-
-def _limit(function: Any, keys: tuple[Array, ...], table: LoadFactorTable) -> Array:
-    # a key that keeps one value all through the block, as flaps and mass mostly do, is worked out once
-    flat = [key[:1] if (len(key) and (key[0] == key).all()) or np.isnan(key).all() else key for key in keys]
-    found: Array = function(*flat, table)
-    return found
-
-
-def manoeuvring_speed(time: Array, manoeuvring: Any, manoeuvring_over: Array | None = None) -> Array:
-    """V_A by the manual's table, in the kind of airspeed it is given in. Source: [DEFINITION]."""
-    if isinstance(manoeuvring, float):
-        return np.full(len(time), manoeuvring)
-    over = np.zeros(len(time)) if manoeuvring_over is None else manoeuvring_over
-    if isinstance(manoeuvring, tables.Table):
-        return tables.table_value(manoeuvring, over)
-    _, value, mass = manoeuvring
-    return stall.speed_at_mass(value, over, mass)
-
-
-# --- gusts and touchdown ----------------------------------------------------------------------------------------
-
-
-def gust_velocity(
-    time: Array,
-    load_factor: Array,
-    equivalent_airspeed: Array,
-    mass: Array,
-    wing_area: float,
-    mean_chord: float,
-    lift_curve_slope: float,
-    airborne: Intervals,
-    phases: PhaseTrack,
-    pressure_altitude: Array | None = None,
-    static_air_temperature: Array | None = None,
-    bank_angle: Array | None = None,
-    flap_angle: Array | None = None,
-) -> Array:
-    """Derived equivalent gust velocity in excursions of less than two seconds; null elsewhere, and where the aeroplane
-    manoeuvres, banks steeply or has flaps out. Source: [NACA-1206], [TWO-SECOND-RULE].
-    """
-    result = np.full(len(time), np.nan)
-    fits = airborne.contains(time) & (phases.at(time) != PHASE_CODE["manoeuvring"]) & np.isfinite(load_factor)
-    undisturbed = np.ones(len(time))
-    with np.errstate(invalid="ignore"):
-        if bank_angle is not None:
-            bank = np.abs((bank_angle + np.pi) % (2.0 * np.pi) - np.pi)
-            fits &= ~(bank > GUST_BANK)
-            undisturbed = np.where(bank <= GUST_BANK, 1.0 / np.cos(np.minimum(bank, GUST_BANK)), undisturbed)
-        if flap_angle is not None:
-            fits &= ~(np.abs(flap_angle) > FLAPS_UP)
-    increment = np.where(np.isfinite(load_factor), load_factor - undisturbed, np.nan)
-    found = gust.peaks_between_means(time, increment)
-    short = gust.is_gust(found.duration)
-    if not short.any():
-        return result
-    first, last = found.first[short], found.last[short]
-    inside = np.zeros(len(time) + 1, dtype=np.int64)
-    np.add.at(inside, first, 1)
-    np.add.at(inside, last + 1, -1)
-    place = np.flatnonzero((np.cumsum(inside[:-1]) > 0) & fits)
-    altitude = np.zeros(len(place)) if pressure_altitude is None else pressure_altitude[place]
-    air = atmosphere.standard_temperature(altitude) if static_air_temperature is None else static_air_temperature[place]
-    density = atmosphere.density(atmosphere.static_pressure(altitude), air)
-    result[place] = gust.derived_gust_velocity(
-        increment[place], equivalent_airspeed[place], mass[place], wing_area, mean_chord, lift_curve_slope, density
-    )
-    return result
-
-
-def touchdown_load_factor(time: Array, recorded_load_factor: Array, touchdown_windows: Intervals) -> Array:
-    """The accelerometer as recorded, round each touchdown only."""
-    return np.where(touchdown_windows.contains(time), recorded_load_factor, np.nan)
-
-
-def touchdown_sink_rate_radio(time: Array, height_above_ground: Array, touchdowns: Array, width: float) -> Array:
-    """Sink rate over the last second before each touchdown, next to it: least squares on radio height."""
-    result = np.full(len(time), np.nan)
-    for when in _within(touchdowns, time):
-        last = (time >= when - width) & (time <= when) & np.isfinite(height_above_ground)
-        if last.sum() >= 2:
-            run = time[last] - np.mean(time[last])
-            result[np.abs(time - when) <= 0.5 * width] = -np.sum(run * height_above_ground[last]) / np.sum(run**2)
-    return result
-
-
-def touchdown_sink_rate(time: Array, vertical_speed: Array, touchdowns: Array, width: float) -> Array:
-    """Mean sink rate over the last second before each touchdown, at the samples next to it."""
-    result = np.full(len(time), np.nan)
-    for when in _within(touchdowns, time):
-        last = (time >= when - width) & (time <= when) & np.isfinite(vertical_speed)
-        if last.any():
-            result[np.abs(time - when) <= 0.5 * width] = -np.mean(vertical_speed[last])
-    return result
-
-
-def _within(touchdowns: Array, time: Array) -> list[float]:
-    if len(time) == 0:
-        return []
-    inside = (touchdowns >= time[0] - 5.0) & (touchdowns <= time[-1] + 5.0)
-    found: list[float] = touchdowns[inside].tolist()
-    return found

@@ -13,7 +13,7 @@ from exceed.core.recording import Channel, Recording
 from exceed.core.trace import Step, Trace
 from exceed.derive import evidence, mass, phases
 from exceed.derive.facts import Facts, facts_of
-from exceed.derive.first_pass import first_pass
+from exceed.derive.first_pass import first_pass, inverted_time
 from exceed.derive.resolve import FOUND_FACTS, LOAD_FACTORS, Resolver, closure, leaves, with_uncertainty
 from exceed.physics.kinematics import lever_arm_uncertainty
 
@@ -50,9 +50,9 @@ def needed_channels(
             resolver.resolve(name)
         for name in wanted:
             resolver.resolve(name)
-        rests = closure(resolver.steps, wanted)
+        rests = closure(resolver.steps, wanted) | set(wanted)
         needed |= leaves(resolver.steps, wanted)
-        if rests & {"mass", "centre_of_gravity", "fuel_mass"} or quantities is None:
+        if rests & {"mass", "centre_of_gravity", "zero_fuel_mass", "fuel_mass"}:
             needed |= set(mass.EVIDENCE)
     return (needed | set(evidence.EVIDENCE) | set(phases.EVIDENCE)) & available
 
@@ -72,12 +72,18 @@ def build_trace(
     """
     from exceed.derive.mass import masses_of
 
+    quantities = None if quantities is None else list(quantities)
     facts = facts_of(aircraft)
     first = first_pass(recording, aircraft, facts.stall_speed)
     weight = masses_of(first, aircraft, facts, mass, _several(loading))
     channels: dict[str, Channel] = {**first.channels, **weight.channels}
     intervals = {name: channel.interval for name, channel in first.channels.items() if len(channel.values)}
-    resolver = Resolver(intervals, facts, first.facts, weight.steps)
+    preset = dict(weight.steps)
+    bank = first.channels.get("bank_angle")
+    if bank is not None and (quantities is None or "inverted_time" in quantities):
+        channels["inverted_time"] = inverted_time(bank, recording.time, first.track.airborne)
+        preset["inverted_time"] = Step("inverted_time", "time beyond 90 degrees of bank", None, source="DEFINITION")
+    resolver = Resolver(intervals, facts, first.facts, preset)
     everything = [*TRACE_ORDER, *sorted(set(recording.channels) - set(TRACE_ORDER))]
     for name in everything:
         resolver.resolve(name)

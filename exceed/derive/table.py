@@ -15,7 +15,7 @@ from typing import Any
 import numpy as np
 
 from exceed.core.constants import KNOT
-from exceed.derive import corrections, methods
+from exceed.derive import corrections, encounters, margins, methods
 from exceed.physics import airspeed, atmosphere, load_limits, loading, stall, turning
 
 POSSIBLE = "possible"
@@ -46,7 +46,7 @@ class Derivation:
     sample by sample; it goes to the function as `width`, and `looks` times it is the row's reach. uncertainty : the
     method's own standard uncertainty in SI, besides what its inputs bring. one_sided : a bound by construction.
     cap : highest certainty. corrects : goes before what is recorded, which it corrects. when : why the row does not fit
-    the channels' intervals.
+    the channels' intervals. main : the parameters whose samples are the method's own; the others only correct them.
     """
 
     quantity: str
@@ -62,6 +62,7 @@ class Derivation:
     cap: str | None = None
     corrects: bool = False
     when: Callable[[Mapping[str, float]], str | None] | None = None
+    main: tuple[str, ...] = ()
 
 
 _FLAPS = "flaps not recorded: taken as up"
@@ -77,6 +78,7 @@ _RATES = ("roll_rate", "pitch_rate", "yaw_rate")
 DERIVATIONS: tuple[Derivation, ...] = (
     # airspeed
     Derivation("calibrated_airspeed", corrections.calibrated_from_indicated, "position error table", "DEFINITION",
+               main=("indicated_airspeed",),
                without={"flap_angle": "flaps not recorded: position error of the clean row"}),
     Derivation("calibrated_airspeed", methods.calibrated_taken_as_indicated, "indicated airspeed", "COMMON-PRACTICE",
                assumes="no position error given: calibrated airspeed taken as indicated", uncertainty=_SYSTEM_ERROR),
@@ -89,19 +91,23 @@ DERIVATIONS: tuple[Derivation, ...] = (
     Derivation("calibrated_airspeed", airspeed.calibrated_airspeed_from_true, "true airspeed and temperature",
                "PITOT-STATIC"),
     Derivation("indicated_airspeed", corrections.indicated_from_calibrated, "position error table", "DEFINITION",
+               main=("calibrated_airspeed",),
                without={"flap_angle": "flaps not recorded: position error of the clean row"}),
     Derivation("indicated_airspeed", methods.indicated_taken_as_calibrated, "calibrated airspeed", "COMMON-PRACTICE",
                assumes="no position error given: indicated airspeed taken as calibrated", uncertainty=_SYSTEM_ERROR),
     Derivation("mach", methods.mach_from_pressures, "recorded pressures", "PITOT-STATIC"),
-    Derivation("mach", airspeed.mach, "calibrated airspeed and altitude", "PITOT-STATIC"),
+    Derivation("mach", airspeed.mach, "calibrated airspeed and altitude", "PITOT-STATIC",
+               main=("calibrated_airspeed",)),
     Derivation("mach", airspeed.mach_from_equivalent, "equivalent airspeed and altitude", "PITOT-STATIC"),
     Derivation("mach", airspeed.mach_from_true_airspeed, "true airspeed and temperature", "PITOT-STATIC"),
-    Derivation("equivalent_airspeed", airspeed.equivalent_airspeed, "calibrated airspeed and altitude", "PITOT-STATIC"),
+    Derivation("equivalent_airspeed", airspeed.equivalent_airspeed, "calibrated airspeed and altitude", "PITOT-STATIC",
+               main=("calibrated_airspeed",)),
     Derivation("equivalent_airspeed", airspeed.equivalent_airspeed_from_mach, "Mach number and altitude",
                "PITOT-STATIC"),
     Derivation("equivalent_airspeed", airspeed.equivalent_airspeed_from_true, "true airspeed and temperature",
                "PITOT-STATIC"),
-    Derivation("true_airspeed", airspeed.true_airspeed, "calibrated airspeed, altitude, temperature", "PITOT-STATIC"),
+    Derivation("true_airspeed", airspeed.true_airspeed, "calibrated airspeed, altitude, temperature", "PITOT-STATIC",
+               main=("calibrated_airspeed",)),
     Derivation("true_airspeed", airspeed.true_airspeed_from_mach, "Mach number and temperature", "PITOT-STATIC"),
     Derivation("true_airspeed", airspeed.true_airspeed_from_equivalent, "equivalent airspeed and temperature",
                "PITOT-STATIC"),
@@ -152,7 +158,7 @@ DERIVATIONS: tuple[Derivation, ...] = (
     Derivation("yaw_acceleration", methods.yaw_acceleration, "yaw rate differentiated", "SAVITZKY-GOLAY", width=0.1),
     # load factor
     Derivation("load_factor", methods.load_factor_moved, "accelerometer moved to the centre of gravity", "RIGID-BODY",
-               corrects=True, when=_quick("load_factor", *_RATES)),
+               corrects=True, when=_quick("load_factor", *_RATES), main=("recorded_load_factor",)),
     Derivation("load_factor", methods.load_factor_from_path_and_turn, "attitude and flight path", "FLIGHT-PATH",
                width=1.0,
                assumes="coordinated flight in still air", uncertainty=0.1),
@@ -166,32 +172,38 @@ DERIVATIONS: tuple[Derivation, ...] = (
     Derivation("load_factor", methods.load_factor_wings_level, "vertical acceleration", "FLIGHT-PATH", width=1.0,
                assumes="wings level: turns are not seen", uncertainty=0.15, one_sided=True, cap=POSSIBLE),
     # mass
+    Derivation("zero_fuel_mass", margins.zero_fuel_mass, "mass less fuel", "FAA-WB"),
     Derivation("fuel_mass", loading.fuel_mass_of_volume, "fuel quantity and density", "DEFINITION"),
     # stall and limits
-    Derivation("stall_speed", methods.stall_speed, "constant maximum lift coefficient", "CONSTANT-CL",
-               without={"flap_angle": _FLAPS, "pressure_altitude": _SEA_LEVEL}),
+    Derivation("stall_speed", margins.stall_speed, "constant maximum lift coefficient", "CONSTANT-CL",
+               without={"flap_angle": _FLAPS, "pressure_altitude": _SEA_LEVEL}, main=("load_factor",)),
     Derivation("stall_margin", stall.stall_margin, "calibrated airspeed less the stall speed", "DEFINITION"),
-    Derivation("stall_speed_ratio", methods.stall_speed_ratio, "calibrated airspeed over the 1 g stall speed",
+    Derivation("stall_speed_ratio", margins.stall_speed_ratio, "calibrated airspeed over the 1 g stall speed",
                "CONSTANT-CL",
-               without={"flap_angle": _FLAPS}),
-    Derivation("load_factor_maximum", methods.load_factor_maximum, "limit in force", "COMMON-PRACTICE",
+               without={"flap_angle": _FLAPS}, main=("calibrated_airspeed",)),
+    Derivation("load_factor_maximum", margins.load_factor_maximum, "limit in force", "COMMON-PRACTICE",
                without={"limit_flap_angle": _FLAPS, "limit_airbrakes": "airbrakes not recorded: taken as in",
                         "limit_roll_rate": "roll rate not recorded: rolling limit not looked at"}),
-    Derivation("load_factor_minimum", methods.load_factor_minimum, "limit in force", "COMMON-PRACTICE",
+    Derivation("load_factor_minimum", margins.load_factor_minimum, "limit in force", "COMMON-PRACTICE",
                without={"limit_flap_angle": _FLAPS, "limit_airbrakes": "airbrakes not recorded: taken as in"}),
-    Derivation("load_factor_margin", load_limits.load_factor_margin, "distance to the nearer limit", "DEFINITION"),
-    Derivation("manoeuvring_speed", methods.manoeuvring_speed, "the manual's figure", "DEFINITION"),
+    Derivation("load_factor_margin", load_limits.load_factor_margin, "distance to the nearer limit", "DEFINITION",
+               main=("load_factor",)),
+    Derivation("manoeuvring_speed", margins.manoeuvring_speed, "the manual's figure", "DEFINITION"),
+    # configuration
+    Derivation("gear_moving", margins.gear_moving, "near a change of gear down", "COMMON-PRACTICE", width=8.0,
+               assumes="the gear moves for 8 s before it is down and after it leaves that", cap=POSSIBLE),
     # gusts and touchdown
-    Derivation("gust_velocity", methods.gust_velocity, "gust alleviation formula", "NACA-1206", width=2.5,
+    Derivation("gust_velocity", encounters.gust_velocity, "gust alleviation formula", "NACA-1206", width=2.5,
                assumes="excursions below two seconds outside manoeuvres are gusts",
                without={"static_air_temperature": _ISA, "pressure_altitude": _SEA_LEVEL,
                         "bank_angle": "bank not recorded: steep turns cannot be left out",
                         "flap_angle": "flaps not recorded: taken as up"},
-               when=_quick("load_factor")),
-    Derivation("touchdown_load_factor", methods.touchdown_load_factor, "accelerometer as recorded", "COMMON-PRACTICE"),
-    Derivation("touchdown_sink_rate", methods.touchdown_sink_rate_radio, "radio height over the last second",
+               when=_quick("load_factor"), main=("load_factor",)),
+    Derivation("touchdown_load_factor", encounters.touchdown_load_factor, "accelerometer as recorded",
+               "COMMON-PRACTICE"),
+    Derivation("touchdown_sink_rate", encounters.touchdown_sink_rate_radio, "radio height over the last second",
                "SAVITZKY-GOLAY", width=1.0, looks=1.6),
-    Derivation("touchdown_sink_rate", methods.touchdown_sink_rate, "vertical speed over the last second",
+    Derivation("touchdown_sink_rate", encounters.touchdown_sink_rate, "vertical speed over the last second",
                "COMMON-PRACTICE", width=1.0, looks=1.6, cap=POSSIBLE, uncertainty=0.5,
                assumes="static pressure near the ground is little disturbed"),
 )  # fmt: skip
