@@ -230,20 +230,19 @@ def _table(
         label = spelled(unit, habit.spelling)
         if habit.delimiter == " ":
             name = name.replace(" ", "_")
-        if habit.header == "suffix" and unit.label:
-            name = f"{name}_{suffix(unit)}"
+        tail = f"_{suffix(unit)}" if habit.header == "suffix" and unit.label else ""
         units[quantity], rates[quantity] = unit, truth.rate_hz / every
         if habit.rates == "subframe":
             inside = range(0, per_row, every)
             many = len(inside) > 1
-            here = [f"{name}{k + 1}" if many else name for k in range(len(inside))]
+            here = [f"{name}{k + 1}{tail}" if many else name + tail for k in range(len(inside))]
             columns[quantity] = [_heading_cell(one, label, habit) for one in here]
             names += here
             unit_labels += [label] * len(inside)
             cells += [[text[row + shift] for row in rows] for shift in inside]
             continue
-        columns[quantity] = [_heading_cell(name, label, habit)]
-        names.append(name)
+        columns[quantity] = [_heading_cell(name + tail, label, habit)]
+        names.append(name + tail)
         unit_labels.append(label)
         if habit.rates == "blanks":
             cells.append([text[row] if row % every == 0 else habit.missing for row in rows])

@@ -49,6 +49,7 @@ def allowed(habit: Habit) -> bool:
         habit.header == "suffix" and habit.vocabulary != "snake",
         # without units only the trade's own can be presumed
         habit.header == "name" and (habit.units != "trade" or habit.spelling != "plain"),
+        habit.header == "name" and habit.clock in ("elapsed_ms", "elapsed_us"),
         habit.midnight and habit.clock.startswith(("elapsed", "frame")),
         habit.ragged == "short" and habit.missing != "",
         habit.repeat_header and habit.header == "three-line",

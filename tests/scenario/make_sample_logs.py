@@ -152,9 +152,7 @@ def in_words(row: dict[str, Any]) -> str:
         return (f"stall at {row['time_s']:.1f} s: {row['calibrated_airspeed_kt']:.1f} KCAS at "
                 f"{row['load_factor_g']:.2f} g, stall speed {row['stall_speed_kt']:.1f} KCAS")  # fmt: skip
     places = 1 if row["unit"] == "kt" else 3
-    tail = {"hidden": ", between samples", "found": ""}[row["expect"]] + (
-        ", cut by the gap" if row["cut_by"] else ""
-    )
+    tail = {"hidden": ", between samples", "found": ""}[row["expect"]] + (", cut by the gap" if row["cut_by"] else "")
     peak = f"{row['true_peak']:.{places}f} {row['unit']}".rstrip()
     lasting = row["true_end_s"] - row["true_start_s"]
     return (f"{row['family']} {peak} (limit {row['limit']:g}) at {row['true_peak_s']:.1f} s, "
