@@ -94,11 +94,13 @@ def _limit(
                 holds = holds & ~exact[j]
         best = np.where(holds, np.minimum(best, size * values[i]), best)
 
-    for i in rows:  # the last mass, and the last speed, of a group of rows go on holding beyond themselves
+    # The last mass, and the last speed, of a group of rows go on holding beyond themselves. A row for any mass is then
+    # no leave to fly heavier with more than the shrunken limit: the more protective of both holds.
+    for i in rows:
         group = [j for j in rows if _same(flaps[i], flaps[j]) and _same(out[i], out[j])]
         over_mass = np.asarray(False)
         over_speed = np.asarray(False)
-        if not np.isnan(heavy[i]) and not any(np.isnan(heavy[j]) or heavy[j] > heavy[i] for j in group if j != i):
+        if not np.isnan(heavy[i]) and not any(heavy[j] > heavy[i] for j in group):
             over_mass = mass > heavy[i]
         if not np.isnan(fast[i]) and not any(np.isnan(fast[j]) or fast[j] > fast[i] for j in group if j != i):
             over_speed = speed > fast[i]

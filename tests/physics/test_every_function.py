@@ -18,11 +18,12 @@ from exceed.physics.envelope import LoadFactorTable, StepTable, Table
 from exceed.physics.loading import LoadingEnvelope
 from exceed.physics.stall import StallTable
 
-MODULES = [
+MODULES = (
     "atmosphere",
     "airspeed",
     "turning",
     "kinematics",
+    "smoothing",
     "stall",
     "tables",
     "load_limits",
@@ -33,8 +34,7 @@ MODULES = [
     "loading",
     "counting",
     "uncertainty",
-    "smoothing",
-]
+)
 
 NAN = float("nan")
 STALL = StallTable(np.radians([0, 30]), [960, 960], [28.0, 25.0], [34.0, 31.0])
