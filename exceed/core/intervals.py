@@ -44,6 +44,14 @@ class Intervals:
 
     def contains(self, at: Array) -> NDArray[np.bool_]:
         """(k,) bool: does each instant lie in a stretch?"""
+        at = np.asarray(at)
+        if at.size > 1000 and at.size > 8 * len(self) and bool((at[1:] >= at[:-1]).all()):
+            # ascending instants, as whole blocks are, need two look-ups a stretch and not one an instant
+            inside = np.zeros(at.shape, dtype=bool)
+            first, last = np.searchsorted(at, self.start), np.searchsorted(at, self.end)
+            for low, high in zip(first.tolist(), last.tolist(), strict=True):
+                inside[low:high] = True
+            return inside
         index = np.searchsorted(self.start, at, side="right") - 1
         inside = np.zeros(np.shape(at), dtype=bool)
         some = index >= 0

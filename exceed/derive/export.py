@@ -49,7 +49,7 @@ class Block:
 
 
 def trace_columns(trace: Trace) -> list[Column]:
-    """Columns of the trace table after time_s, utc, flight and phase: known quantities in their order, then declared."""
+    """Columns after time_s, utc, flight and phase: quantities in their order, then declared ones."""
     names = [name for name in TRACE_ORDER if name in trace.steps]
     names += sorted(name for name in trace.steps if name not in QUANTITIES)
     return [_column(trace, name) for name in names]
