@@ -1,0 +1,253 @@
+"""What the commands do: call the pipeline, word its outcome, choose the exit code."""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import sys
+import traceback
+from collections.abc import Iterator
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import typer
+
+from exceed.errors import ExceedError
+
+if TYPE_CHECKING:
+    from exceed.core.outcome import DayOutcome
+    from exceed.settings import Settings
+
+DONE, FOUND, WRONG, FAILED, FOUND_AND_FAILED, INTERRUPTED = 0, 1, 2, 3, 4, 130
+
+
+class Terminal:
+    """What the two streams are. Each decides for itself whether it is a terminal."""
+
+    @staticmethod
+    def width(stream: Any) -> int | None:
+        """Columns of a terminal, None for a pipe or a file."""
+        if not stream.isatty():
+            return None
+        with contextlib.suppress(OSError, ValueError):
+            columns = int(os.environ.get("COLUMNS", "0") or "0")
+            return columns if columns > 0 else os.get_terminal_size(stream.fileno()).columns
+        return 80
+
+    @staticmethod
+    def err(text: str) -> None:
+        """A line on stderr, with control characters shown, not sent."""
+        from exceed.report.show import visible
+
+        for line in text.split("\n"):
+            print(visible(line), file=sys.stderr)
+
+
+@contextlib.contextmanager
+def guarded(debug: bool) -> Iterator[None]:
+    """A user's mistake becomes its message and exit code, a fault of ours one line; never a traceback unasked."""
+    try:
+        yield
+    except (typer.Exit, typer.Abort, KeyboardInterrupt, BrokenPipeError):
+        raise
+    except ExceedError as error:
+        Terminal.err(f"exceed: {error}")
+        raise typer.Exit(error.exit_code) from None
+    except MemoryError:
+        Terminal.err("exceed: there is not enough memory for this\n  do: scan fewer or smaller logs at a time")
+        raise typer.Exit(FAILED) from None
+    except Exception as error:
+        if debug:
+            traceback.print_exc()
+        Terminal.err(
+            f"exceed: internal error, this is a fault of exceed: {type(error).__name__}: {error}\n"
+            "  do: run again with --debug and report it"
+        )
+        raise typer.Exit(FAILED) from None
+
+
+def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
+    """Scan, write what was asked for, and give the exit code."""
+    from exceed import pipeline
+    from exceed.report.summary import summarise
+    from exceed.report.write import to_json, write_whole
+
+    with _progress(shown["quiet"]) as progress:
+        outcome = pipeline.scan(settings, progress)
+    summary = summarise(outcome)
+    if shown["json"] is not None:
+        write_whole(shown["json"], to_json(summary))
+    if shown["html"] is not None:
+        _write_page(outcome, summary, shown)
+    if shown["json"] != "-" and not shown["quiet"]:
+        _print_table(summary, shown)
+    _say_failures(summary, shown)
+    return exit_code(summary, shown["fail_at"])
+
+
+def _print_table(summary: dict[str, Any], shown: dict[str, Any]) -> None:
+    from exceed.report.show import wants_colour, wants_unicode
+    from exceed.report.table import render_table
+
+    out = sys.stdout
+    text = render_table(
+        summary,
+        width=Terminal.width(out),
+        colour=wants_colour(dict(os.environ), terminal=out.isatty(), no_colour=not shown["colour"]),
+        unicode=wants_unicode(out.encoding),
+        units=shown["units"],
+        certainty_floor=shown["certainty"],
+    )
+    _out(text)
+
+
+def _write_page(outcome: DayOutcome, summary: dict[str, Any], shown: dict[str, Any]) -> None:
+    from exceed.report.page import render_page
+    from exceed.report.write import write_whole
+
+    plots = [log.plots for log in outcome.logs if log.plots is not None]
+    page = render_page(summary, plots, units=shown["units"], certainty_floor=shown["certainty"])
+    write_whole(shown["html"], page)
+
+
+def _out(text: str) -> None:
+    """Text to stdout, whatever its encoding can take."""
+    encoding = sys.stdout.encoding or "utf-8"
+    sys.stdout.write(text.encode(encoding, "replace").decode(encoding))
+    sys.stdout.flush()
+
+
+def _say_failures(summary: dict[str, Any], shown: dict[str, Any]) -> None:
+    """Failed logs on stderr too, where the table does not say them."""
+    if not shown["quiet"] and shown["json"] != "-":
+        return
+    for recording in summary["recordings"]:
+        if recording["status"] == "failed":
+            Terminal.err(f"exceed: {_problem_text(recording)}")
+
+
+def _problem_text(recording: dict[str, Any]) -> str:
+    problem = recording["problem"]
+    if isinstance(problem, str):
+        return problem
+    text = f"{problem['place']}: {problem['problem']}" if problem.get("place") else str(problem["problem"])
+    if problem.get("expected"):
+        text += f"\n  expected: {problem['expected']}"
+    if problem.get("do"):
+        text += f"\n  do: {problem['do']}"
+    return text
+
+
+def exit_code(summary: dict[str, Any], fail_at: str | None) -> int:
+    """0 done, 1 found at or above `fail_at`, 3 some logs failed, 4 both."""
+    from exceed.core.findings import SEVERITIES
+
+    found = False
+    if fail_at is not None:
+        least = SEVERITIES.index(fail_at)
+        found = any(
+            SEVERITIES.index(event["severity"]) >= least
+            for recording in summary["recordings"]
+            for event in (*recording["events"], *recording["undecided"])
+        )
+    bad = any(recording["status"] == "failed" for recording in summary["recordings"])
+    return {(False, False): DONE, (True, False): FOUND, (False, True): FAILED, (True, True): FOUND_AND_FAILED}[
+        found, bad
+    ]
+
+
+@contextlib.contextmanager
+def _progress(quiet: bool) -> Iterator[Any]:
+    """A progress bar on stderr for a terminal, nothing else."""
+    if quiet or not sys.stderr.isatty():
+        yield None
+        return
+    from rich.console import Console
+    from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeRemainingColumn
+
+    columns = (TextColumn("reading logs"), BarColumn(), MofNCompleteColumn(), TimeRemainingColumn())
+    with Progress(*columns, console=Console(stderr=True), transient=True) as bar:
+        task = bar.add_task("logs", total=None)
+        yield lambda done, total: bar.update(task, completed=done, total=total)
+
+
+def run_describe(settings: Settings, write: Path | None, colour: bool) -> int:
+    """Print a note on one log; write a channels file if asked."""
+    from exceed import pipeline
+    from exceed.report.describe import describe
+    from exceed.report.show import wants_colour, wants_unicode
+
+    outcome, survey, recording = pipeline.describe(settings)
+    out = sys.stdout
+    _out(
+        describe(
+            outcome,
+            width=Terminal.width(out),
+            colour=wants_colour(dict(os.environ), terminal=out.isatty(), no_colour=not colour),
+            unicode=wants_unicode(out.encoding),
+        )
+    )
+    if write is not None:
+        from exceed.read import channels_file
+        from exceed.report.write import write_whole
+
+        write_whole(write, channels_file(survey, recording))
+        Terminal.err(f"channels file written: {write}")
+    return DONE
+
+
+def run_trace(settings: Settings, out: Path) -> int:
+    """Write the derived table."""
+    from exceed import pipeline
+    from exceed.tables import write_trace
+
+    trace, outcome = pipeline.trace_of(settings)
+    rows, columns = write_trace(trace, outcome, out)
+    from exceed.core.findings import CAUTIONS
+
+    Terminal.err(f"{rows} rows and {columns} columns written: {out}")
+    for name, why in sorted(trace.missing.items()):
+        Terminal.err(f"  {name.replace('_', ' ')}: null, {why}")
+    for caution in CAUTIONS:
+        Terminal.err(caution)
+    return DONE
+
+
+def run_lint(files: list[Path]) -> int:
+    """Every problem of every file; 2 if there is one."""
+    from exceed.documents.lint import lint
+
+    bad = False
+    for path in files:
+        problems = lint(path)
+        bad = bad or bool(problems)
+        for problem in problems:
+            print(problem)
+        if not problems:
+            print(f"{path}: no problem found")
+    return WRONG if bad else DONE
+
+
+def run_schema(kind: str) -> int:
+    import json
+
+    if kind == "summary":
+        from exceed.report.model import schema_summary
+
+        found = schema_summary()
+    else:
+        from exceed.documents.schema import schema
+
+        found = schema(kind)
+    _out(json.dumps(found, indent=1, ensure_ascii=False) + "\n")
+    return DONE
+
+
+def run_selfcheck(all_lines: bool) -> int:
+    """The published check values, recomputed here; 1 if one fails."""
+    from exceed.reference.check import run_checks
+    from exceed.report.checks import render_checks
+
+    results = run_checks()
+    _out(render_checks(results, all_lines=all_lines))
+    return DONE if all(result.passed for result in results) else FOUND

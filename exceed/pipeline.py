@@ -1,0 +1,286 @@
+"""The only place that joins the stages: read -> derive -> judge, for one log and for a day of logs.
+
+`assess` is the unit of work: one log and a Run in, a LogOutcome out, both picklable, so that the same function serves
+this process, others, and other machines.
+"""
+
+from __future__ import annotations
+
+import datetime
+import traceback
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+from exceed.core.outcome import DayOutcome, FeedRow, LogOutcome
+from exceed.core.quantities import QUANTITIES
+from exceed.core.recording import Recording
+from exceed.core.trace import Trace
+from exceed.derive.plan import build_trace, needed_channels
+from exceed.documents.aircraft import same_registration
+from exceed.documents.fleet import belongs
+from exceed.errors import ExceedError, LogError, Problem
+from exceed.judge.compile import compile_rule
+from exceed.judge.compiled import Compiled
+from exceed.judge.engine import judge
+from exceed.judge.events import CONTEXT
+from exceed.outcomes import outcome
+from exceed.prepare import Member, Run, prepare
+from exceed.read import LogPath, Survey, find_logs, load, survey
+from exceed.settings import Settings
+
+# every flight's extremes are given for these, as far as they can be had
+EXTREMES: tuple[str, ...] = (
+    "load_factor",
+    "lateral_load_factor",
+    "bank_angle",
+    "pitch_angle",
+    "indicated_airspeed",
+    "calibrated_airspeed",
+    "true_airspeed",
+    "ground_speed",
+    "mach",
+    "pressure_altitude",
+    "vertical_speed",
+    "stall_margin",
+    "mass",
+)
+# threads for blocks of one log; a log of fewer samples is not worth a second one
+THREADS = 2
+WORTH_THREADS = 200_000
+MEMORY_SHARE = 0.6
+
+
+@dataclass(frozen=True, slots=True)
+class Assigned:
+    """Whose a log is: the documents it is judged with, the registration, what is to be said of it."""
+
+    member: Member
+    registration: str | None
+    survey: Survey
+    notes: tuple[str, ...] = ()
+
+
+def scan(settings: Settings, progress: Callable[[int, int], None] | None = None) -> DayOutcome:
+    """The main job. Raises ExceedError for wrong wishes or documents; a log that fails is in the outcome.
+
+    progress : called with (done, all) after each log.
+    """
+    logs, skipped = find_logs(settings.paths)
+    run = prepare(settings, [(str(Path(log.location).parent), log.root) for log in logs])
+    from exceed.batch import each
+
+    outcomes = each(logs, run, settings.jobs, progress)
+    return day(run, outcomes, skipped)
+
+
+def day(run: Run, outcomes: Iterable[LogOutcome], skipped: Iterable[tuple[str, str]] = ()) -> DayOutcome:
+    """Outcomes of logs as one day."""
+    fleets = [run.fleets[path] for path in sorted(run.fleets)]
+    one = fleets[0].fleet if len(fleets) == 1 else None
+    created = datetime.datetime.now(datetime.UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
+    return DayOutcome(
+        logs=tuple(outcomes),
+        created=created,
+        judged_with=run.judged_with,
+        rules=run.rule_sets,
+        skipped=tuple(skipped),
+        fleet=", ".join(sorted(run.fleets)) or None,
+        operator=one.operator if one is not None else None,
+        time_zone=one.time_zone if one is not None else None,
+        notes=run.notes,
+    )
+
+
+def assess(log: LogPath, run: Run) -> LogOutcome:
+    """One log, from file to outcome. Never raises: a log that cannot be read or assessed is a failed outcome."""
+    try:
+        return _assess(log, run)
+    except ExceedError as error:
+        return failed(log.shown, error)
+    except MemoryError:
+        return failed(log.shown, LogError(Problem(log.shown, "there is not enough memory for this log", "",
+                                                  "split the log, or give the machine more memory")))  # fmt: skip
+    except Exception as error:  # a bug met in one log must not lose the others
+        words = traceback.format_exc() if run.settings.debug else f"{type(error).__name__}: {error}"
+        problem = Problem(log.shown, f"internal error, this is a fault of exceed: {words}", "",
+                          "run again with --debug and report it with the log")  # fmt: skip
+        return failed(log.shown, LogError(problem))
+
+
+def failed(path: str, error: ExceedError) -> LogOutcome:
+    """The outcome of a log that could not be done."""
+    first, *more = error.problems or (Problem(path, "failed"),)
+    return LogOutcome(path, "failed", first, notes=tuple(str(problem) for problem in more))
+
+
+def _assess(log: LogPath, run: Run) -> LogOutcome:
+    assigned = assign(log, run)
+    member = assigned.member
+    names = wanted(member)
+    recording = read(assigned, names)
+    trace = build_trace(recording, member.aircraft, quantities=names, mass=run.mass, loading=list(member.loading))
+    compiled = ready_rules(trace, member)
+    threads = THREADS if len(recording.time) > WORTH_THREADS else 1
+    findings = judge(trace, compiled, [name for name in EXTREMES if trace.has(name)], threads=threads)
+    plots = None
+    if run.settings.plots:
+        from exceed.drawing import log_plots
+
+        plots = log_plots(log.shown, trace, compiled, findings, member.aircraft)
+    return outcome(
+        log.shown, member, assigned.registration, trace, findings, compiled, notes=assigned.notes, plots=plots
+    )
+
+
+def assign(log: LogPath, run: Run) -> Assigned:
+    """Whose log is it? What is written in it, else its recorder's serial, else the fleet's patterns.
+
+    Raises LogError where the evidence disagrees.
+    """
+    settings = run.settings
+    loaded = run.fleet_of(log.location)
+    member = run.default
+    first = survey(log.location, shown=log.shown, channels=member.channels, declared=dict(member.book.quantities))
+    written = first.registration
+    notes: list[str] = []
+    if settings.registration and written and not same_registration(settings.registration, written):
+        raise LogError(
+            Problem(
+                log.shown,
+                f"the log says it is of {written}, and --registration says {settings.registration}",
+                "one registration",
+                "leave --registration out, or choose the logs of one aeroplane",
+            )
+        )
+    registration = written or settings.registration
+    if loaded is not None:
+        relative = _relative(log.location, loaded.fleet.folder)
+        found = belongs(
+            loaded.fleet, registration, first.recorder_serial, [path for path in (relative, log.shown) if path]
+        )
+        if found.problem:
+            raise LogError(
+                Problem(
+                    log.shown, found.problem, "evidence that agrees", "correct the fleet file, or name the aeroplane"
+                )
+            )
+        if found.note:
+            notes.append(found.note)
+        if found.entry is not None:
+            member = loaded.members[found.entry.registration]
+        registration = found.registration or registration
+    own = member.aircraft
+    if settings.aircraft and own is not None and not own.assumed:
+        if written and not same_registration(written, own.registration):
+            raise LogError(
+                Problem(
+                    log.shown,
+                    f"the log says it is of {written}, and {own.path} is the file of {own.registration}",
+                    f"a log of {own.registration}",
+                    "give the aeroplane's own file, or use a fleet file",
+                )
+            )
+        registration = registration or own.registration
+    if member is not run.default and (member.channels or member.book.quantities):
+        first = survey(log.location, shown=log.shown, channels=member.channels, declared=dict(member.book.quantities))
+    if registration is None:
+        notes.append("no registration: neither the log nor its recorder's serial nor the fleet file says whose it is")
+    return Assigned(member, registration, first, tuple(notes))
+
+
+def _relative(location: str, folder: Path) -> str | None:
+    try:
+        return Path(location).resolve().relative_to(folder.resolve()).as_posix()
+    except ValueError:
+        return None
+
+
+def wanted(member: Member) -> list[str]:
+    """The quantities that rules, context and extremes ask for."""
+    names: dict[str, None] = {}
+    for rule in member.book.rules:
+        for name in rule.needs(member.aircraft):
+            names[name] = None
+        if rule.quantity != "airspeed":
+            names[rule.quantity] = None
+    for name in (*EXTREMES, *CONTEXT):
+        names[name] = None
+    return list(names)
+
+
+def read(assigned: Assigned, names: Iterable[str] | None) -> Recording:
+    """The recording, with no more columns than these quantities need (None: all)."""
+    found = assigned.survey
+    aircraft = assigned.member.aircraft
+    if names is None:
+        return load(found, None, aircraft=aircraft)
+    available = set(found.quantities)
+    needed = needed_channels(_indexed(names, available), available, aircraft)
+    return load(found, needed, aircraft=aircraft)
+
+
+def _indexed(names: Iterable[str], available: set[str]) -> list[str]:
+    """Names, and for one like engine_speed every engine_speed_1, engine_speed_2 that is there."""
+    from exceed.documents.rules import base_name
+
+    wanted_names = dict.fromkeys(names)
+    for name in sorted(available):
+        if base_name(name) in wanted_names:
+            wanted_names[name] = None
+    return list(wanted_names)
+
+
+def ready_rules(trace: Trace, member: Member) -> list[Compiled]:
+    """The member's rules, ready for this trace."""
+    return [
+        one
+        for rule in member.book.rules
+        for one in compile_rule(rule, trace, member.aircraft, rule.rule_set, member.book.quantities)
+    ]
+
+
+def trace_of(settings: Settings) -> tuple[Trace, LogOutcome]:
+    """The trace of one log with every quantity, and its outcome without events. Raises ExceedError."""
+    log, run = _one_log(settings)
+    assigned = assign(log, run)
+    recording = read(assigned, None)
+    trace = build_trace(recording, assigned.member.aircraft, mass=run.mass, loading=list(assigned.member.loading))
+    extremes = [name for name in EXTREMES if trace.has(name)]
+    findings = judge(trace, [], extremes)
+    return trace, outcome(log.shown, assigned.member, assigned.registration, trace, findings, [], notes=assigned.notes)
+
+
+def describe(settings: Settings) -> tuple[LogOutcome, Survey, Recording]:
+    """What is in one log, and which built-in rules it can feed. Raises ExceedError."""
+    from exceed.documents.rulebook import BUILT_IN, load_rules
+
+    log, run = _one_log(settings)
+    assigned = assign(log, run)
+    recording = read(assigned, None)
+    aircraft = assigned.member.aircraft
+    trace = build_trace(recording, aircraft, mass=run.mass, loading=list(assigned.member.loading))
+    findings = judge(trace, [], [name for name in EXTREMES if trace.has(name)])
+    feeds = []
+    for name in BUILT_IN:
+        rules = load_rules(name)
+        for rule in rules.rules:
+            rows = compile_rule(rule, trace, aircraft, name, rules.quantities)
+            lacks = tuple(dict.fromkeys(text for row in rows if (text := row.unassessed or row.not_applicable)))
+            feeds.append(FeedRow(name, rule.id, rule.title or rule.id, lacks))
+    made = outcome(log.shown, assigned.member, assigned.registration, trace, findings, [], notes=assigned.notes)
+    return replace(made, feeds=tuple(feeds)), assigned.survey, recording
+
+
+def _one_log(settings: Settings) -> tuple[LogPath, Run]:
+    logs, skipped = find_logs(settings.paths)
+    run = prepare(settings, [(str(Path(log.location).parent), log.root) for log in logs])
+    if not logs:
+        reason = skipped[0][1] if skipped else "no such log"
+        raise LogError(Problem(settings.paths[0], reason, "one log", "name a log file"))
+    if len(logs) > 1:
+        raise LogError(Problem(settings.paths[0], f"there are {len(logs)} logs here", "one log", "name one of them"))
+    return logs[0], run
+
+
+__all__ = ["QUANTITIES", "assess", "day", "describe", "failed", "scan", "trace_of"]
