@@ -26,6 +26,7 @@ Array = NDArray[np.float64]
 NEAR = 5  # samples each side of the extreme that the Gaussian process uses
 HALO = 8  # samples each side that size_peak can use at all (E4 looks farthest)
 ALIASED = 0.6  # ratio above which a channel slower than SLOW cannot size a peak
+QUICKEST = 0.3  # s, the shortest excursion of a load factor that is flown; the fit's signals go down to it
 SLOW = 0.25 * 1.1  # s; the yardstick shows that 8 and 4 Hz size what they see, with 10 % tolerance on the interval
 _FINE = 8  # places a sampling interval at which curves are drawn
 _DRAWS = 128  # curves a candidate; antithetic, so the medians are steady
@@ -53,6 +54,7 @@ _OUT_95 = (0.81, 0.66, 0.60, 0.54, 0.00)  # to the 95 % point
 _UP_95 = (1.38, 1.91, 2.04, 1.51, 0.00)  # to the upper end of the 95 % interval
 _DOWN_1 = (0.38, 0.14, 0.27)
 _DOWN_95 = (0.55, 0.53, 0.88)
+_HARMLESS = 2.0  # prediction errors up to so many standard uncertainties of the sensor leave a peak sized
 _NOISE_BELOW = 2.2  # the lower end lies at least so many times the noise below the recorded extreme
 
 
@@ -61,10 +63,10 @@ class Peak:
     """The true extreme behind a recorded one. All values in the unit of the samples, times in s.
 
     `recorded` is the sample; `estimate` the median of the true extreme, `time` when it was, `low` and `high` its 95 %
-    interval, with `down` and `up` the distances to its 16 % and 84 % points (the two sides differ) and `outward` that to
-    the point beyond which the truth lies with 5 %. On the open side
-    the end is None where the sensor saturated (`saturated`) or the channel is too slow (`sized` False): the truth is
-    then at least what was seen. `ratio` is E2/E4: near 0 a resolved peak, towards 1 an aliased one.
+    interval, with `down` and `up` the distances to its 16 % and 84 % points (the two sides differ) and `outward` that
+    to the point beyond which the truth lies with 5 %. On the open side the end is None where the sensor saturated
+    (`saturated`) or the channel is too slow (`sized` False): the truth is then at least what was seen. `ratio` is E2/E4
+    (near 0 for a resolved peak, towards 1 for an aliased one).
     """
 
     side: int
@@ -104,6 +106,7 @@ def size_peak(
     resolution: float = 0.0,
     noise: float | None = None,
     saturation: float | None = None,
+    quickest: float = QUICKEST,
 ) -> Peak:
     """Estimate the true extreme within one sampling interval of a recorded one.
 
@@ -119,6 +122,9 @@ def size_peak(
     noise : standard deviation of white noise where it was measured; None: between nothing and `standard_uncertainty`,
         as the samples suggest.
     saturation : the sensor's end in this direction; an extreme that reaches it is "at least".
+    quickest : s, the shortest excursion that the quantity can make: 0.3 for load factors, angular rates and angle of
+        attack, about 1 for bank and pitch, about 3 for airspeed, Mach and height, which inertia keeps slow. A signal
+        sampled well within it cannot be aliased.
 
     Returns
     -------
@@ -151,11 +157,12 @@ def size_peak(
         return _open(side, seen, float(t[index]), spread, ratio, clipped, standard_uncertainty)
     s = _spread(u, v, place, step, known_noise, standard_uncertainty)
     error, ratio = _ratio(u, v, place, s.noise)
-    if interval > SLOW and ratio > ALIASED:
+    pace = interval * QUICKEST / quickest
+    if pace > SLOW and ratio > ALIASED and error > _HARMLESS * standard_uncertainty:
         return _open(
             side, seen, float(t[index]), math.hypot(standard_uncertainty, s.noise), ratio, False, standard_uncertainty
         )
-    up_features, down_features = _features(seen, s, error, ratio, interval)
+    up_features, down_features = _features(seen, s, error, ratio, pace)
     up_1, up_95 = float(np.dot(_UP_1, up_features)), float(np.dot(_UP_95, up_features))
     down_1, down_95 = float(np.dot(_DOWN_1, down_features)), float(np.dot(_DOWN_95, down_features))
     room = float(bend(u, v)[place]) + 6.0 * s.noise
@@ -207,10 +214,10 @@ def _open(side: int, seen: float, time: float, spread: float, ratio: float, clip
     )
 
 
-def _features(seen: float, s: _Spread, error: float, ratio: float, interval: float) -> tuple[list[float], list[float]]:
-    """What the widths upward and downward are made of. `interval`: bodies move no faster for slow recorders."""
+def _features(seen: float, s: _Spread, error: float, ratio: float, pace: float) -> tuple[list[float], list[float]]:
+    """What the widths upward and downward are made of. `pace`: the interval, s, as load factors go."""
     beyond, spread = max(s.middle - seen, 0.0), s.high - s.middle
-    slower = max(interval / 0.125 - 1.0, 0.0)
+    slower = max(pace / 0.125 - 1.0, 0.0)
     up = [spread, error * ratio**2, error * ratio**2 * slower, beyond, s.noise]
     return up, [s.middle - s.low, beyond, s.noise]
 
@@ -231,11 +238,14 @@ def _ratio(u: Array, v: Array, place: int, noise: float) -> tuple[float, float]:
 
 
 def _error(u: Array, v: Array, place: int, step: int) -> float | None:
-    """Largest error of the three samples about the extreme, each predicted by a cubic through samples 2*step apart."""
-    worst: float | None = None
-    for j in (place - 1, place, place + 1):
-        if j - step < 0 or j + step >= v.size:
-            continue
+    """Largest error of the three samples about the extreme, each predicted by a cubic through samples 2*step apart.
+
+    Near an end of the window those stand in that are the nearest with neighbours on both sides.
+    """
+    if v.size < 2 * step + 1:
+        return None
+    worst = 0.0
+    for j in sorted({min(max(place + k, step), v.size - 1 - step) for k in (-1, 0, 1)}):
         nodes = sorted({max(j - 3 * step, 0), j - step, j + step, min(j + 3 * step, v.size - 1)})
         x = u[nodes] - u[j]
         predicted = 0.0
@@ -243,7 +253,7 @@ def _error(u: Array, v: Array, place: int, step: int) -> float | None:
             others = np.delete(x, i)
             predicted += float(v[node]) * float(np.prod(others / (others - x[i])))
         error = abs(float(v[j]) - predicted)
-        worst = error if worst is None else max(worst, error)
+        worst = max(worst, error)
     return worst
 
 
