@@ -20,15 +20,26 @@ def floats(value: ArrayLike) -> Array:
 
 
 def finite(result: ArrayLike) -> Array:
-    """`result` with NaN in place of infinities; a fresh array (or a numpy scalar for scalar input)."""
-    out = np.array(result, dtype=np.float64)
+    """A fresh result with NaN in place of infinities (a numpy scalar for a scalar).
+
+    It is changed in place, so it must be no one's input; a read-only one is copied.
+    """
+    out = np.asarray(result, dtype=np.float64)
+    if not out.flags.writeable:
+        out = out.copy()
     if not np.isfinite(out).all():
+        if out.ndim == 0:
+            return np.float64(np.nan)  # type: ignore[return-value]
         out[np.isinf(out)] = np.nan
     return out[()]
 
 
 def where(condition: NDArray[np.bool_] | np.bool_, result: ArrayLike) -> Array:
     """`finite(result)` where the condition holds, NaN elsewhere (a NaN input makes a condition False)."""
-    out = np.asarray(result, dtype=np.float64)
     # the mask is seldom needed and a select costs more than the look
-    return finite(out) if np.all(condition) else finite(np.where(condition, out, np.nan))
+    return finite(result) if np.all(condition) else finite(np.where(condition, result, np.nan))
+
+
+def all_within(values: Array, low: float, high: float) -> bool:
+    """Whether every value lies in a closed range; a NaN does not. Cheaper than two masks."""
+    return values.size == 0 or bool(values.min() >= low and values.max() <= high)

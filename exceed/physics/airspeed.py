@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from exceed.core.constants import DENSITY_0, GAMMA, PRESSURE_0, SPEED_OF_SOUND_0
-from exceed.physics._arrays import Array, finite, floats, quiet, where
+from exceed.physics._arrays import Array, all_within, finite, floats, quiet, where
 from exceed.physics.atmosphere import pressure_altitude as _pressure_altitude
 from exceed.physics.atmosphere import speed_of_sound
 from exceed.physics.atmosphere import static_pressure as _static_pressure
@@ -23,38 +23,43 @@ _SONIC_RATIO = 1.2**3.5 - 1.0
 _LOG_RAYLEIGH = 3.5 * float(np.log(1.2)) + 2.5 * float(np.log(6.0))
 
 
-def _impact_ratio(mach: Array) -> Array:
-    """Impact pressure over static pressure; NaN for negative Mach."""
-    mach = np.asarray(mach)
+def _impact_ratio(mach: ArrayLike) -> Array:
+    """Impact pressure over static pressure; NaN for negative Mach. Always an array, a fresh one."""
+    number = floats(mach)
     # log1p and expm1: plain powers lose most digits when the aircraft stands still
-    square = mach * mach
-    ratio = np.asarray(np.expm1(3.5 * np.log1p(0.2 * square)))
-    fast = mach > 1.0
-    if fast.any():
-        rayleigh = np.expm1(_LOG_RAYLEIGH + 7.0 * np.log(mach) - 2.5 * np.log(7.0 * square - 1.0))
-        ratio = np.where(fast, rayleigh, ratio)
-    usable = mach >= 0.0
-    return ratio if usable.all() else np.where(usable, ratio, np.nan)
+    ratio = np.multiply(number, number, out=np.empty(number.shape))
+    ratio *= 0.2
+    np.log1p(ratio, out=ratio)
+    ratio *= 3.5
+    np.expm1(ratio, out=ratio)
+    if all_within(number, 0.0, 1.0):
+        return ratio
+    fast = number > 1.0
+    above = number[fast]
+    ratio[fast] = np.expm1(_LOG_RAYLEIGH + 7.0 * np.log(above) - 2.5 * np.log(7.0 * above * above - 1.0))
+    ratio[~(number >= 0.0)] = np.nan
+    return ratio
 
 
 def _mach_of_ratio(ratio: Array) -> Array:
     """Mach number of an impact pressure ratio; the inverse of `_impact_ratio`. NaN for negative ratios."""
-    ratio = np.asarray(ratio)
-    mach = np.asarray(np.sqrt(5.0 * np.expm1(np.log1p(ratio) / 3.5)))
+    mach = np.log1p(ratio, out=np.empty(ratio.shape))
+    mach *= 1.0 / 3.5
+    np.expm1(mach, out=mach)
+    mach *= 5.0
+    np.sqrt(mach, out=mach)
+    if all_within(ratio, 0.0, _SONIC_RATIO):
+        return mach
     fast = ratio > _SONIC_RATIO
-    if fast.any():
-        # Newton on the logarithm of Rayleigh: increasing and concave there, so it comes from the left and stays
-        target = np.log1p(ratio[fast]) if ratio.ndim else np.log1p(ratio)
-        guess = np.maximum(1.0, np.exp(0.5 * (target - _LOG_RAYLEIGH + 2.5 * np.log(7.0))))
-        for _ in range(12):
-            square = guess * guess
-            value = _LOG_RAYLEIGH + 7.0 * np.log(guess) - 2.5 * np.log(7.0 * square - 1.0)
-            slope = 7.0 * (2.0 * square - 1.0) / (guess * (7.0 * square - 1.0))
-            guess = np.maximum(1.0, guess + (target - value) / slope)
-        if ratio.ndim:
-            mach[fast] = guess
-        else:
-            mach = np.asarray(guess)
+    # Newton on the logarithm of Rayleigh: increasing and concave there, so it comes from the left and stays
+    target = np.log1p(ratio[fast])
+    guess = np.maximum(1.0, np.exp(0.5 * (target - _LOG_RAYLEIGH + 2.5 * np.log(7.0))))
+    for _ in range(12):
+        square = guess * guess
+        value = _LOG_RAYLEIGH + 7.0 * np.log(guess) - 2.5 * np.log(7.0 * square - 1.0)
+        slope = 7.0 * (2.0 * square - 1.0) / (guess * (7.0 * square - 1.0))
+        guess = np.maximum(1.0, guess + (target - value) / slope)
+    mach[fast] = guess
     return mach
 
 
@@ -66,7 +71,9 @@ def impact_pressure(calibrated_airspeed: ArrayLike) -> Array:
     Returns: (n,) array, Pa. NaN for negative speeds.
     Source: [PITOT-STATIC] definition of calibrated airspeed; above 340.3 m/s [NACA-1135] Rayleigh.
     """
-    return finite(PRESSURE_0 * _impact_ratio(floats(calibrated_airspeed) / SPEED_OF_SOUND_0))
+    pressure = _impact_ratio(floats(calibrated_airspeed) / SPEED_OF_SOUND_0)
+    pressure *= PRESSURE_0
+    return finite(pressure)
 
 
 @quiet
@@ -78,7 +85,7 @@ def impact_pressure_from_mach(mach: ArrayLike, static_pressure: ArrayLike) -> Ar
     Source: [PITOT-STATIC]; above Mach 1 [NACA-1135] Rayleigh.
     """
     pressure = floats(static_pressure)
-    return where(pressure >= 0.0, pressure * _impact_ratio(floats(mach)))
+    return where(pressure >= 0.0, pressure * _impact_ratio(mach))
 
 
 @quiet
@@ -88,7 +95,9 @@ def calibrated_airspeed_from_impact_pressure(impact_pressure: ArrayLike) -> Arra
     Parameters: impact_pressure : (n,) array, Pa.    Returns: (n,) array, m/s. NaN for negative pressures.
     Source: [PITOT-STATIC], [NACA-1135].
     """
-    return finite(SPEED_OF_SOUND_0 * _mach_of_ratio(floats(impact_pressure) / PRESSURE_0))
+    speed = _mach_of_ratio(np.asarray(floats(impact_pressure) / PRESSURE_0))
+    speed *= SPEED_OF_SOUND_0
+    return finite(speed)
 
 
 @quiet
@@ -100,7 +109,7 @@ def mach_from_impact_pressure(impact_pressure: ArrayLike, static_pressure: Array
     Source: [PITOT-STATIC], [NACA-1135].
     """
     pressure = floats(static_pressure)
-    return where(pressure > 0.0, _mach_of_ratio(floats(impact_pressure) / pressure))
+    return where(pressure > 0.0, _mach_of_ratio(np.asarray(floats(impact_pressure) / pressure)))
 
 
 def mach(calibrated_airspeed: ArrayLike, pressure_altitude: ArrayLike) -> Array:
@@ -338,4 +347,4 @@ def crossover_altitude(calibrated_airspeed: ArrayLike, mach: ArrayLike) -> Array
     Returns: (n,) array, m. NaN where it would leave the atmosphere's range or an input is not positive.
     Source: [PITOT-STATIC]; the static pressure is the one that makes both impact pressures equal.
     """
-    return _pressure_altitude(finite(impact_pressure(calibrated_airspeed) / _impact_ratio(floats(mach))))
+    return _pressure_altitude(finite(impact_pressure(calibrated_airspeed) / _impact_ratio(mach)))

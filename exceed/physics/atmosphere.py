@@ -24,7 +24,7 @@ from exceed.core.constants import (
     UPPER_LAYER_BASE,
     UPPER_LAYER_TOP,
 )
-from exceed.physics._arrays import Array, finite, floats, quiet, where
+from exceed.physics._arrays import Array, all_within, finite, floats, quiet, where
 
 LOWEST_ALTITUDE = -5000.0
 
@@ -52,6 +52,8 @@ def standard_temperature(pressure_altitude: ArrayLike) -> Array:
     Source: [ISO-2533] temperature layers.
     """
     altitude = floats(pressure_altitude)
+    if all_within(altitude, LOWEST_ALTITUDE, TROPOPAUSE):
+        return finite(TEMPERATURE_0 + LAPSE_RATE_TROPOSPHERE * altitude)
     below = np.minimum(altitude, TROPOPAUSE)
     above = np.maximum(altitude, UPPER_LAYER_BASE) - UPPER_LAYER_BASE
     temperature = TEMPERATURE_0 + LAPSE_RATE_TROPOSPHERE * below + LAPSE_RATE_UPPER * above
@@ -67,15 +69,20 @@ def static_pressure(pressure_altitude: ArrayLike) -> Array:
     Source: [ISO-2533] hydrostatic equation with constant lapse rate in each layer.
     """
     altitude = floats(pressure_altitude)
-    # log1p keeps the digits of a small height above sea level
-    ratio = (LAPSE_RATE_TROPOSPHERE / TEMPERATURE_0) * altitude
-    pressure = np.asarray(PRESSURE_0 * np.exp(_TROPOSPHERE_EXPONENT * np.log1p(ratio)))
+    # log1p keeps the digits of a small height above sea level; one buffer, for new memory costs more than the sums
+    pressure = np.multiply(altitude, LAPSE_RATE_TROPOSPHERE / TEMPERATURE_0, out=np.empty(altitude.shape))
+    np.log1p(pressure, out=pressure)
+    pressure *= _TROPOSPHERE_EXPONENT
+    np.exp(pressure, out=pressure)
+    pressure *= PRESSURE_0
+    if all_within(altitude, LOWEST_ALTITUDE, TROPOPAUSE):
+        return pressure[()]
     high = altitude > TROPOPAUSE
-    if high.any():
-        isothermal = _PRESSURE_TROPOPAUSE * np.exp((TROPOPAUSE - altitude) / _SCALE_HEIGHT)
-        warming = (LAPSE_RATE_UPPER / _TEMPERATURE_TROPOPAUSE) * (altitude - UPPER_LAYER_BASE)
-        upper = _PRESSURE_UPPER_BASE * np.exp(_UPPER_EXPONENT * np.log1p(warming))
-        pressure = np.where(high, np.where(altitude > UPPER_LAYER_BASE, upper, isothermal), pressure)
+    above = altitude[high]
+    isothermal = _PRESSURE_TROPOPAUSE * np.exp((TROPOPAUSE - above) / _SCALE_HEIGHT)
+    warming = (LAPSE_RATE_UPPER / _TEMPERATURE_TROPOPAUSE) * (above - UPPER_LAYER_BASE)
+    upper = _PRESSURE_UPPER_BASE * np.exp(_UPPER_EXPONENT * np.log1p(warming))
+    pressure[high] = np.where(above > UPPER_LAYER_BASE, upper, isothermal)
     return where((altitude >= LOWEST_ALTITUDE) & (altitude <= UPPER_LAYER_TOP), pressure)
 
 
@@ -88,8 +95,13 @@ def pressure_altitude(static_pressure: ArrayLike) -> Array:
     Source: [ISO-2533] the pressure law solved for altitude.
     """
     pressure = floats(static_pressure)
-    log_ratio = np.log(pressure / PRESSURE_0)
-    altitude = np.asarray((TEMPERATURE_0 / LAPSE_RATE_TROPOSPHERE) * np.expm1(log_ratio / _TROPOSPHERE_EXPONENT))
+    altitude = np.divide(pressure, PRESSURE_0, out=np.empty(pressure.shape))
+    np.log(altitude, out=altitude)
+    altitude /= _TROPOSPHERE_EXPONENT
+    np.expm1(altitude, out=altitude)
+    altitude *= TEMPERATURE_0 / LAPSE_RATE_TROPOSPHERE
+    if all_within(pressure, _PRESSURE_TROPOPAUSE, _PRESSURE_LOWEST):
+        return altitude[()]
     high = pressure < _PRESSURE_TROPOPAUSE
     if high.any():
         isothermal = TROPOPAUSE - _SCALE_HEIGHT * np.log(pressure / _PRESSURE_TROPOPAUSE)

@@ -37,10 +37,29 @@ def _fit(times: Array, values: Array, width: float, max_gap: float) -> _Fit:
     return _Fit(*out)
 
 
-def _fit_usable(t: Array, v: Array, width: float, max_gap: float) -> NDArray[np.float64]:
+# samples fitted at a time: the sums then stay in the processor's cache, which halves the time
+_CHUNK = 8192
+
+
+def _fit_usable(t: Array, v: Array, width: float, max_gap: float) -> Array:
     n = t.size
     step = np.diff(t)
-    segment = np.concatenate(([0], np.cumsum((step > max_gap) | (step < 0.0))))
+    apart = (step > max_gap) | (step < 0.0)
+    segment = np.concatenate(([0], np.cumsum(apart)))
+    # a clock that never runs back, to find each chunk's neighbours by
+    rising = np.concatenate(([0.0], np.cumsum(np.where(apart, 3.0 * width, step))))
+    out = np.empty((4, n))
+    for low in range(0, n, _CHUNK):
+        high = min(n, low + _CHUNK)
+        first = int(np.searchsorted(rising, rising[low] - 1.1 * width))
+        last = int(np.searchsorted(rising, rising[high - 1] + 1.1 * width, side="right"))
+        part = _fit_chunk(t[first:last], v[first:last], segment[first:last], width)
+        out[:, low:high] = part[:, low - first : high - first]
+    return out
+
+
+def _fit_chunk(t: Array, v: Array, segment: NDArray[np.intp], width: float) -> Array:
+    n = t.size
     reach = width * (1.0 + 1e-6)  # so that a sample meant to sit on the edge is in, whatever its rounding
     # Sums of powers of u = dt/width over the window: s0..s4, and of (v - v_i) times them: a0..a2
     s = np.zeros((5, n))

@@ -51,19 +51,30 @@ def _one_g(mass: Array, flap_angle: Array, table: StallTable, speeds: Array, sna
     mass, flap_angle = np.broadcast_arrays(mass, flap_angle)
     if settings.size == 0:
         return np.full(mass.shape, np.nan)
-    curves = [_speed_of_root_mass(float(setting), mass, table, speeds) for setting in settings]
-    result = curves[-1]
-    for j in range(settings.size - 2, -1, -1):
-        low, high = settings[j], settings[j + 1]
-        share = np.clip((flap_angle - low) / (high - low), 0.0, 1.0)
-        result = np.where(flap_angle < high, curves[j] + share * (curves[j + 1] - curves[j]), result)
-    result = np.where(np.isnan(flap_angle), np.nan, result)
+    if np.unique(table.flap_angle[np.isfinite(speeds)], return_counts=True)[1].max() == 1:
+        rows = np.flatnonzero(np.isfinite(speeds))
+        rows = rows[np.argsort(table.flap_angle[rows])]
+        scaled = speeds[rows] / np.sqrt(table.mass[rows])
+        result = np.interp(flap_angle, table.flap_angle[rows], scaled)
+    else:
+        result = _interpolated_curves(flap_angle, mass, table, speeds, settings)
     if snap:
         known = (flap_angle >= settings[0] - FLAP_TOLERANCE - 1e-9) & (
             flap_angle <= settings[-1] + FLAP_TOLERANCE + 1e-9
         )
         result = np.where(known, result, np.nan)
     return np.asarray(result * np.sqrt(mass))
+
+
+def _interpolated_curves(flap_angle: Array, mass: Array, table: StallTable, speeds: Array, settings: Array) -> Array:
+    """V/sqrt(m) between settings some of which have several rows over mass."""
+    curves = [_speed_of_root_mass(float(setting), mass, table, speeds) for setting in settings]
+    result = curves[-1]
+    for j in range(settings.size - 2, -1, -1):
+        low, high = settings[j], settings[j + 1]
+        share = np.clip((flap_angle - low) / (high - low), 0.0, 1.0)
+        result = np.where(flap_angle < high, curves[j] + share * (curves[j + 1] - curves[j]), result)
+    return np.where(np.isnan(flap_angle), np.nan, result)
 
 
 @quiet
@@ -129,7 +140,8 @@ def stall_speed_equivalent(
     one_g = np.asarray(stall_speed_1g(m, flaps, stall_table))
     negative = n < 0.0
     if negative.any():
-        one_g = np.where(negative, stall_speed_1g_inverted(m, flaps, stall_table), one_g)
+        one_g = np.array(one_g)
+        one_g[negative] = stall_speed_1g_inverted(m[negative], flaps[negative], stall_table)
     return finite(one_g * np.sqrt(np.abs(n)))
 
 

@@ -12,7 +12,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from exceed.physics._arrays import Array, finite, floats, quiet, where
+from exceed.physics._arrays import Array, all_within, finite, floats, quiet, where
 
 FLAP_TOLERANCE = float(np.radians(1.0))
 _ROUNDING = 1e-9  # rad; 11 deg less 1 deg is to find the 10 deg row whatever the rounding
@@ -112,6 +112,8 @@ def flap_setting_in_force(flap_angle: ArrayLike, flap_settings: ArrayLike) -> Ar
     angle = np.asarray(floats(flap_angle))
     listed = floats(flap_settings).ravel()
     settings = np.unique(listed[np.isfinite(listed)])
+    if all_within(angle, -FLAP_TOLERANCE, FLAP_TOLERANCE):
+        return np.zeros(angle.shape)[()]
     up = np.abs(angle) <= FLAP_TOLERANCE + _ROUNDING
     if settings.size == 0:
         return finite(np.where(up, 0.0, np.nan))

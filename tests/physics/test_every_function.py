@@ -307,6 +307,7 @@ def test_a_slice_gives_the_slice_of_the_whole_and_a_scalar_the_same_number(funct
 def test_hostile_numbers_give_no_warning_and_no_infinity(function: Callable[..., Any]) -> None:
     """Warnings are errors in these tests."""
     hostile = np.array([0.0, -0.0, np.nan, np.inf, -np.inf, 1e308, -1e308, 1e-308, -1.0, 90.0, np.pi / 2])
+    hostile.flags.writeable = False
     arrays, facts = _arrays(function, hostile.size)
     for name in arrays:
         answer = function(**{**arrays, name: hostile}, **facts)

@@ -78,6 +78,16 @@ def test_blocks_that_hold_the_reach_give_the_whole() -> None:
         np.testing.assert_array_equal(part[low - offset : high - offset], whole[low:high])
 
 
+def test_a_record_of_many_chunks_is_fitted_as_if_it_were_one(monkeypatch: pytest.MonkeyPatch) -> None:
+    rng = np.random.default_rng(11)
+    t = np.cumsum(rng.choice([0.05, 0.3, 2.0], 700, p=[0.6, 0.37, 0.03]))
+    t[400:] -= 30.0  # the clock runs back
+    v = rng.normal(size=700)
+    whole = smoothing.smooth_derivative(t, v, 1.0, 1.5)
+    monkeypatch.setattr(smoothing, "_CHUNK", 64)
+    np.testing.assert_array_equal(smoothing.smooth_derivative(t, v, 1.0, 1.5), whole)
+
+
 def test_a_step_across_a_gap_leaves_both_sides_flat() -> None:
     t = np.concatenate((np.arange(0, 5, 0.1), np.arange(6, 11, 0.1)))
     v = np.where(t < 5.5, 1.0, 9.0)
