@@ -35,6 +35,7 @@ class Coarse:
     time: Array
     first: Index
     _picked: dict[str, Array] = field(default_factory=dict)
+    _counted: dict[str, Cells] = field(default_factory=dict)
 
     def __len__(self) -> int:
         return len(self.time)
@@ -71,6 +72,11 @@ class Coarse:
 
     def statistics(self, name: str) -> Cells:
         """Mean, least and greatest of each cell's own samples."""
+        if name not in self._counted:
+            self._counted[name] = self._count(name)
+        return self._counted[name]
+
+    def _count(self, name: str) -> Cells:
         channel = self.recording.channels[name]
         last = len(self.recording.time)
         starts, stops = self.first, np.append(self.first[1:], last)
@@ -99,6 +105,17 @@ class Coarse:
         count[:] = 0.0
         count[some] = number
         return Cells(mean, low, high, count)
+
+    def part(self, start: float, end: float) -> slice:
+        """The cells whose first rows lie in [start, end)."""
+        low, high = np.searchsorted(self.time, [start, end])
+        return slice(int(low), int(high))
+
+    def median_near(self, values: Array, when: float, within: float) -> float:
+        """Median of readings within `within` s of an instant; NaN if there are none."""
+        near = values[self.part(when - within, when + within)]
+        near = near[np.isfinite(near)]
+        return float(np.median(near)) if len(near) else float("nan")
 
     def slope(self, values: Array, half: float = 5.0) -> Array:
         """(m,) rate of change over `half` seconds to either side; NaN where there is nothing to compare."""

@@ -104,14 +104,10 @@ def _field_levels(coarse: Coarse, signals: Signals, found: Found) -> tuple[Array
     for flight in found.flights:
         instants += [flight.start] if flight.take_off_seen else []
         instants += [when for when in flight.touchdowns if when < flight.end or flight.landing_seen]
-    levels = []
-    kept = []
-    for when in sorted(instants):
-        near = signals.height[np.abs(coarse.time - when) <= 3.0]
-        near = near[np.isfinite(near)]
-        if len(near):
-            kept.append(when)
-            levels.append(float(np.median(near)))
+    instants.sort()
+    levels = [coarse.median_near(signals.height, when, 3.0) for when in instants]
+    kept = [when for when, level in zip(instants, levels, strict=True) if np.isfinite(level)]
+    levels = [level for level in levels if np.isfinite(level)]
     return (np.array(kept), np.array(levels)) if kept else None
 
 

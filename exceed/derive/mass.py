@@ -73,10 +73,10 @@ def masses_of(
     series, arms = np.full(len(coarse), np.nan), np.full(len(coarse), np.nan)
     unknown = []
     for place, (start, end, take_off) in enumerate(spans):
-        inside = (coarse.time >= start) & (coarse.time < end)
+        inside = coarse.part(start, end)
         load = loads.get(place)
         at_take_off = int(np.searchsorted(coarse.time, take_off, side="right")) - 1
-        since = used.burnt - used.burnt[max(at_take_off, 0)]
+        since = used.burnt[inside] - used.burnt[max(at_take_off, 0)]
         if load is not None:
             total = load.total(used, max(at_take_off, 0))
         elif mass is not None:
@@ -84,10 +84,10 @@ def masses_of(
         else:
             unknown.append(place + 1)
             continue
-        series[inside] = (total - since)[inside]
+        series[inside] = total - since
         if load is not None and load.moment is not None and load.fuel_arm is not None:
             moment = load.moment_with_fuel(total) - since * load.fuel_arm
-            arms[inside] = (moment / (total - since))[inside]
+            arms[inside] = moment / (total - since)
     if unknown:
         if mass is None and not loads:
             return _range(facts, notes)
@@ -107,7 +107,7 @@ def masses_of(
     zero = np.full(len(coarse), np.nan)
     for place, load in loads.items():
         start, end, _ = spans[place]
-        zero[(coarse.time >= start) & (coarse.time < end)] = load.zero_fuel
+        zero[coarse.part(start, end)] = load.zero_fuel
     steps = {"mass": Step("mass", method, None, assumes=assumes, uncertainty=own, source="FAA-WB")}
     missing = {}
     if np.isfinite(zero).any():
@@ -165,10 +165,10 @@ def _summary(
     arms: Array | None = None,
 ) -> tuple[FlightMass, ...]:
     found = []
-    time = first.coarse.time
     for place, flight in enumerate(first.track.flights):
-        inside = (time >= flight.start - 1.0) & (time <= flight.end) & np.isfinite(series)
-        if not inside.any():
+        cells = first.coarse.part(flight.start - 1.0, flight.end + 1e-9)
+        inside = np.arange(cells.start, cells.stop)[np.isfinite(series[cells])]
+        if not len(inside):
             continue
         flown = series[inside]
         load = (loads or {}).get(place)
@@ -270,12 +270,12 @@ def _fuel_used(first: FirstPass, aircraft: Aircraft | None, facts: Facts, notes:
     rate: Any = None if aircraft is None else aircraft.fuel_consumption
     if rate is not None:
         steady = float(rate) * (1.0 if rate.kind == "mass flow" else _density(aircraft, facts, notes))
-        flown = np.zeros(len(coarse))
+        flown = np.zeros(len(coarse), dtype=bool)
         for flight in first.track.flights:
-            flown += np.clip(coarse.time - flight.start, 0.0, flight.end - flight.start)
-        if not first.track.known:
-            flown = time - time[0]
-        return _Used(steady * flown, "fuel consumption of the aircraft file", 0.2)
+            flown[coarse.part(flight.start, flight.end)] = True
+        flown |= not first.track.known
+        passed = np.concatenate([[0.0], np.cumsum(np.diff(time) * flown[:-1])])
+        return _Used(steady * passed, "fuel consumption of the aircraft file", 0.2)
     return _Used(np.zeros(len(coarse)), "no fuel used", 0.0)
 
 

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from exceed.core.constants import FOOT
 from exceed.core.intervals import Intervals, joined, lasting, normal
-from exceed.core.phases import PHASE_CODE, PhaseTrack
+from exceed.core.phases import PHASE_CODE, Flight, PhaseTrack
 from exceed.core.recording import Array
 from exceed.derive.coarse import Coarse
 from exceed.derive.evidence import Signals
@@ -31,6 +31,7 @@ STEEP_PITCH = np.radians(30.0)
 PULLED, PUSHED = 1.8, 0.4  # mean load factor of a second
 MANOEUVRE_LEAST, MANOEUVRE_JOIN, MANOEUVRE_PAD = 1.5, 30.0, 5.0  # s
 MOVING = 1.0  # m/s over the ground
+AROUND = 120.0  # s before and after a flight that belong to its runs on the ground
 ROLLING_FAST = 15.0  # m/s: the landing roll ends, the take-off run begins
 
 Mask = NDArray[np.bool_]
@@ -53,16 +54,17 @@ def phases_of(coarse: Coarse, signals: Signals, found: Found) -> tuple[PhaseTrac
     if not told:
         notes.append("no bank, pitch or load factor: manoeuvring cannot be told")
     for flight in found.flights:
-        inside = (coarse.time >= flight.start) & (coarse.time < flight.end)
+        cells = coarse.part(flight.start - AROUND, flight.end + AROUND)
+        time, code = coarse.time[cells], codes[cells]
+        inside = (time >= flight.start) & (time < flight.end)
         if climb is not None:
-            _legs(coarse, climb, inside, codes)
-        _ends(coarse, signals, flight.start, flight.end, flight.take_off_seen, flight.landing_seen, inside, codes)
-        low = np.isin(codes, [PHASE_CODE["take-off"], PHASE_CODE["landing"]])
-        codes[inside & manoeuvring & ~low] = PHASE_CODE["manoeuvring"]
+            _legs(time, climb[cells], inside, code)
+        _ends(coarse, signals, flight, cells, inside, code)
+        low = np.isin(code, [PHASE_CODE["take-off"], PHASE_CODE["landing"]])
+        code[inside & manoeuvring[cells] & ~low] = PHASE_CODE["manoeuvring"]
         for when in flight.touchdowns:
-            touching = (coarse.time >= when - 2.0) & (coarse.time < min(when + 8.0, flight.end))
-            codes[touching] = PHASE_CODE["landing"]
-    _rolls(coarse, signals, found, codes)
+            code[(time >= when - 2.0) & (time < min(when + 8.0, flight.end))] = PHASE_CODE["landing"]
+        _rolls(signals, flight, time, cells, code)
     if not found.known:
         codes[manoeuvring] = PHASE_CODE["manoeuvring"]
     change = np.concatenate([[0], np.flatnonzero(codes[1:] != codes[:-1]) + 1])
@@ -124,12 +126,12 @@ def _manoeuvring(coarse: Coarse) -> tuple[Mask, bool]:
     return joined(padded, MANOEUVRE_JOIN).contains(coarse.time), told
 
 
-def _legs(coarse: Coarse, climb: Array, inside: Mask, codes: NDArray[np.int8]) -> None:
+def _legs(time: Array, climb: Array, inside: Mask, codes: NDArray[np.int8]) -> None:
     """Climb, cruise and descent with hysteresis; legs that last too short join the one before."""
     place = np.flatnonzero(inside & np.isfinite(climb))
     if len(place) == 0:
         return
-    rate = climb[place]
+    rate, time = climb[place], time[place]
     up, level, down = (PHASE_CODE[name] for name in ("climb", "cruise", "descent"))
     # hysteresis without a loop: a decided cell holds until another one decides
     decided = np.select([rate > CLIMBING, rate < -CLIMBING, np.abs(rate) < LEVELLED], [up, down, level], default=-1)
@@ -137,7 +139,6 @@ def _legs(coarse: Coarse, climb: Array, inside: Mask, codes: NDArray[np.int8]) -
     last = np.maximum.accumulate(np.where(decided >= 0, np.arange(len(place)), -1))
     state = np.where(last >= 0, decided[np.maximum(last, 0)], level).astype(np.int8)
     edges = np.concatenate([[0], np.flatnonzero(np.diff(state)) + 1, [len(state)]])
-    time = coarse.time[place]
     legs: list[list[int]] = []  # first, last, code
     for first, stop in zip(edges[:-1].tolist(), edges[1:].tolist(), strict=True):
         lasted = float(time[min(stop, len(time) - 1)] - time[first])
@@ -150,33 +151,27 @@ def _legs(coarse: Coarse, climb: Array, inside: Mask, codes: NDArray[np.int8]) -
 
 
 def _ends(
-    coarse: Coarse,
-    signals: Signals,
-    start: float,
-    end: float,
-    take_off_seen: bool,
-    landing_seen: bool,
-    inside: Mask,
-    codes: NDArray[np.int8],
+    coarse: Coarse, signals: Signals, flight: Flight, cells: slice, inside: Mask, codes: NDArray[np.int8]
 ) -> None:
     """Take-off, initial climb, approach and landing, from height above the field at either end."""
-    time, height = coarse.time, signals.height
+    time, start, end = coarse.time[cells], flight.start, flight.end
     take_off, initial = PHASE_CODE["take-off"], PHASE_CODE["initial climb"]
     approach, landing = PHASE_CODE["approach"], PHASE_CODE["landing"]
-    if height is None:
-        codes[inside & take_off_seen & (time < start + 5.0)] = take_off
-        codes[inside & landing_seen & (time >= end - 5.0)] = landing
+    if signals.height is None:
+        codes[inside & flight.take_off_seen & (time < start + 5.0)] = take_off
+        codes[inside & flight.landing_seen & (time >= end - 5.0)] = landing
         return
-    if take_off_seen:
-        above = height - _level(coarse, height, start)
+    height = signals.height[cells]
+    if flight.take_off_seen:
+        above = height - coarse.median_near(signals.height, start, 4.0)
         codes[inside & _until(time, above > SCREEN, start, 30.0)] = take_off
         climbing = inside & (time >= start) & (codes != take_off)
         # it ends at 1000 ft, or where the climb does: the first cruise or descent in the circuit
         levelled = (codes == PHASE_CODE["cruise"]) | (codes == PHASE_CODE["descent"])
         ends = (above > CIRCUIT) | (levelled & (above > SCREEN) & (time > start + 20.0))
         codes[climbing & _until(time, ends, start, 600.0)] = initial
-    if landing_seen:
-        above = height - _level(coarse, height, end)
+    if flight.landing_seen:
+        above = height - coarse.median_near(signals.height, end, 4.0)
         backwards = -time[::-1]
         low = _until(backwards, (above > CIRCUIT)[::-1], -end, 1800.0)[::-1] & inside
         low &= ~np.isin(codes, [take_off, initial])
@@ -191,22 +186,15 @@ def _until(time: Array, stop: Mask, start: float, longest: float) -> Mask:
     return (time >= start) & (time < min(end, start + longest))
 
 
-def _level(coarse: Coarse, height: Array, when: float) -> float:
-    near = height[np.abs(coarse.time - when) <= 4.0]
-    near = near[np.isfinite(near)]
-    return float(np.median(near)) if len(near) else np.nan
-
-
-def _rolls(coarse: Coarse, signals: Signals, found: Found, codes: NDArray[np.int8]) -> None:
+def _rolls(signals: Signals, flight: Flight, time: Array, cells: slice, codes: NDArray[np.int8]) -> None:
     """The take-off run before lift-off and the landing roll after touchdown, while the wheels run fast."""
-    speed = signals.rolling if signals.rolling is not None else signals.speed
-    if speed is None:
+    source = signals.rolling if signals.rolling is not None else signals.speed
+    if source is None:
         return
-    time = coarse.time
-    for flight in found.flights:
-        if flight.take_off_seen:
-            slow = (speed < ROLLING_FAST / 3.0)[::-1]
-            run = _until(-time[::-1], slow, -flight.start, 60.0)[::-1] & (time < flight.start)
-            codes[run] = PHASE_CODE["take-off"]
-        if flight.landing_seen:
-            codes[_until(time, speed < ROLLING_FAST, flight.end, 60.0)] = PHASE_CODE["landing"]
+    speed = source[cells]
+    if flight.take_off_seen:
+        slow = (speed < ROLLING_FAST / 3.0)[::-1]
+        run = _until(-time[::-1], slow, -flight.start, 60.0)[::-1] & (time < flight.start)
+        codes[run] = PHASE_CODE["take-off"]
+    if flight.landing_seen:
+        codes[_until(time, speed < ROLLING_FAST, flight.end, 60.0)] = PHASE_CODE["landing"]

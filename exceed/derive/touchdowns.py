@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from exceed.core.recording import Array, Recording
+from exceed.core.recording import Recording
 from exceed.derive.evidence import AIRSPEEDS
 
 if TYPE_CHECKING:
@@ -22,7 +22,7 @@ FEWEST_SECONDS = 3.0  # of level rolling that make a touch where only height tel
 
 def rolls_on(signals: Signals, limits: Thresholds | None, touched: float, left: float) -> bool:
     """Did the aeroplane keep rolling between a touchdown and the next lift-off (touch-and-go), or did it stop?"""
-    inside = (signals.coarse.time >= touched) & (signals.coarse.time <= left)
+    inside = signals.coarse.part(touched, left)
     speed, least = signals.rolling, WALKING
     if (speed is None or not np.isfinite(speed[inside]).any()) and limits is not None:
         speed, least = signals.speed, 0.5 * limits.ground
@@ -58,40 +58,33 @@ def touchdown_near(recording: Recording, when: float, within: float) -> float:
     return float(time[low + first]) - 0.5 * channel.interval
 
 
-def _levels(signals: Signals, start: float, end: float) -> Array | None:
-    """(m,) level of the field that each cell is nearer to in time: that of the take-off, or of the landing."""
-    height, time = signals.height, signals.coarse.time
-    if height is None:
-        return None
-    ends = []
-    for when in (start, end):
-        near = height[np.abs(time - when) <= 3.0]
-        near = near[np.isfinite(near)]
-        ends.append(float(np.median(near)) if len(near) else np.nan)
-    return np.where(time < 0.5 * (start + end), ends[0], ends[1])
-
-
 def _low_stretches(signals: Signals, limits: Thresholds | None, start: float, end: float, below: float) -> list[slice]:
-    """Stretches of cells inside a flight (not its ends) that came down near the field and went up again."""
-    levels = _levels(signals, start, end)
-    time = signals.coarse.time
-    if levels is None or signals.height is None or end - start < 120.0:
+    """Stretches of cells inside a flight (not its ends) that came down near the field and went up again.
+
+    The field is that of the take-off in the flight's first half, that of the landing in its second.
+    """
+    coarse = signals.coarse
+    if signals.height is None or end - start < 120.0:
         return []
-    inside = (time >= start) & (time <= end)
-    low = inside & (signals.height <= levels + below)
+    cells = coarse.part(start, end)
+    time, height = coarse.time[cells], signals.height[cells]
+    ends = [coarse.median_near(signals.height, when, 3.0) for when in (start, end)]
+    levels = np.where(time < 0.5 * (start + end), ends[0], ends[1])
+    low = height <= levels + below
     edges = np.flatnonzero(np.diff(np.concatenate([[0], low.astype(np.int8), [0]]))).reshape(-1, 2)
     found = []
     for first, last in edges.tolist():
         if time[first] <= start + 20.0 or time[last - 1] >= end - 20.0:
             continue
         before, after = max(first - 1, 0), min(last, len(time) - 1)
-        if not (np.isfinite(signals.height[before]) and np.isfinite(signals.height[after])):
+        if not (np.isfinite(height[before]) and np.isfinite(height[after])):
             continue
+        part = slice(cells.start + first, cells.start + last)
         if limits is not None and signals.speed is not None and signals.speed_name in AIRSPEEDS[:3]:
-            speed = signals.speed[first:last]
+            speed = signals.speed[part]
             if np.isfinite(speed).any() and np.nanmin(speed) > 1.7 * limits.airborne:
                 continue
-        found.append(slice(first, last))
+        found.append(part)
     return found
 
 
