@@ -28,7 +28,8 @@ FT_MIN = FT / 60.0
 
 def standard_temperature(pressure_altitude: ArrayLike) -> Array:
     """ISA temperature in K at a pressure altitude in m, up to 20 km."""
-    return TEMPERATURE_0 - LAPSE * np.minimum(np.asarray(pressure_altitude, dtype=float), TROPOPAUSE)
+    height = np.asarray(pressure_altitude, dtype=float)
+    return np.asarray(TEMPERATURE_0 - LAPSE * np.minimum(height, TROPOPAUSE))
 
 
 def standard_pressure(pressure_altitude: ArrayLike) -> Array:
@@ -47,7 +48,7 @@ def mach_number(true_airspeed: ArrayLike, static_temperature: ArrayLike) -> Arra
 def calibrated_airspeed(mach: ArrayLike, static_pressure: ArrayLike) -> Array:
     """CAS in m/s from Mach number (below 1) and static pressure in Pa."""
     impact = np.asarray(static_pressure) * ((1.0 + 0.2 * np.asarray(mach, dtype=float) ** 2) ** 3.5 - 1.0)
-    return SOUND_0 * np.sqrt(5.0 * ((impact / PRESSURE_0 + 1.0) ** (2.0 / 7.0) - 1.0))
+    return np.asarray(SOUND_0 * np.sqrt(5.0 * ((impact / PRESSURE_0 + 1.0) ** (2.0 / 7.0) - 1.0)))
 
 
 def true_from_calibrated(calibrated: float, static_pressure: float, static_temperature: float) -> float:
@@ -63,4 +64,4 @@ def indicated_airspeed(calibrated: ArrayLike, position_error: tuple[tuple[float,
     cas = np.asarray(calibrated, dtype=float)
     error = np.interp(cas, table[:, 1], table[:, 1] - table[:, 0])
     # linear between the rows in IAS, so the inverse is linear in CAS as well
-    return np.maximum(cas - error, 0.0)
+    return np.asarray(np.maximum(cas - error, 0.0))

@@ -278,8 +278,10 @@ def recorded(sortie: Sortie, flight: Flight) -> Truth:
         crossing = float(flight.time[int(np.argmax(flight["load_factor"] > sortie.gap_level))])
         begin = crossing + sortie.gap_after_crossing
         gaps = ((begin, begin + sortie.gap_seconds),)
-    facts = {"registration": sortie.airframe.registration, "recorder_serial": SERIALS[sortie.airframe.registration]}
-    start = sortie.start.timestamp() if sortie.start else None
-    names = list(sortie.channels)
-    return truth_from_flight(flight, names, sortie.rate_hz, rates=dict(sortie.rates), sensors=sensors, start=start,
-                             phase_s=phase, seed=seed, gaps=gaps, **{k: facts[k] for k in sortie.facts})  # fmt: skip
+    registration = sortie.airframe.registration
+    return truth_from_flight(
+        flight, list(sortie.channels), sortie.rate_hz, rates=dict(sortie.rates), sensors=sensors,
+        start=sortie.start.timestamp() if sortie.start else None, phase_s=phase, seed=seed, gaps=gaps,
+        registration=registration if "registration" in sortie.facts else None,
+        recorder_serial=SERIALS[registration] if "recorder_serial" in sortie.facts else None,
+    )  # fmt: skip

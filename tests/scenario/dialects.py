@@ -15,6 +15,7 @@ from datetime import UTC, datetime, timedelta, timezone
 from pathlib import Path
 
 import numpy as np
+from numpy.typing import NDArray
 
 from scenario.air import Array
 from scenario.flight import Flight
@@ -306,7 +307,7 @@ def number(value: float, decimals: int, habit: Habit) -> str:
     return text
 
 
-def clock_columns(truth: Truth, habit: Habit, rows: Array) -> tuple[list[str], list[str], list[list[str]]]:
+def clock_columns(truth: Truth, habit: Habit, rows: NDArray[np.int64]) -> tuple[list[str], list[str], list[list[str]]]:
     """Names, units and cells of the time columns."""
     seconds = rows / truth.rate_hz
     start = start_of(truth, habit)
@@ -332,7 +333,7 @@ def clock_columns(truth: Truth, habit: Habit, rows: Array) -> tuple[list[str], l
     return _stamps(clock, micro, whole)
 
 
-def _stamps(clock: str, micro: Array, whole: bool) -> tuple[list[str], list[str], list[list[str]]]:
+def _stamps(clock: str, micro: NDArray[np.int64], whole: bool) -> tuple[list[str], list[str], list[list[str]]]:
     moments = [datetime(1970, 1, 1, tzinfo=UTC) + timedelta(microseconds=t) for t in micro.tolist()]
     if clock.startswith("iso"):
         zone = timezone(timedelta(hours=2)) if clock == "iso_offset" else UTC

@@ -269,7 +269,7 @@ def standard_temperature_fast(pressure_altitude: float) -> float:
 def standard_pressure_fast(pressure_altitude: float) -> float:
     if pressure_altitude > 11000.0:
         return float(standard_pressure(pressure_altitude))
-    return 101325.0 * (standard_temperature_fast(pressure_altitude) / 288.15) ** 5.255879812716677
+    return float(101325.0 * (standard_temperature_fast(pressure_altitude) / 288.15) ** 5.255879812716677)
 
 
 def _ground_normal(sim: Sim, rough: float) -> float:

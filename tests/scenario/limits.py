@@ -14,7 +14,7 @@ from scenario.air import DEG, FT, KT, Array
 from scenario.flight import Flight
 from scenario.sensors import beyond
 
-LOAD_FACTOR = {
+LOAD_FACTOR: dict[str, list[tuple[float, float | None, float, float]]] = {
     "ZZ-NMA": [(0.0, 880.0, 6.0, -3.0), (0.0, 960.0, 4.4, -1.76), (30.0, None, 2.0, 0.0)],
     "ZZ-NMC": [(0.0, None, 3.8, -1.52), (35.0, None, 2.0, 0.0)],
     "ZZ-NMJ": [(0.0, None, 3.4, -1.36), (35.0, None, 2.0, 0.0)],
@@ -61,7 +61,7 @@ def flap_speed(flight: Flight) -> Array:
 
 def maximum_speed(flight: Flight) -> Array:
     table = np.asarray(MAXIMUM_SPEED[flight.airframe.registration])
-    return np.interp(flight["pressure_altitude"] / FT, table[:, 0], table[:, 1]) * KT
+    return np.asarray(np.interp(flight["pressure_altitude"] / FT, table[:, 0], table[:, 1]) * KT)
 
 
 @dataclass(frozen=True, slots=True)

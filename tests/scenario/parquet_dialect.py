@@ -72,8 +72,8 @@ def _array(quantity: str, values: np.ndarray, missing: np.ndarray, habit: Habit,
     if habit.numbers == "float":
         return pa.array(values.astype(np.float32), mask=missing)
     if habit.numbers == "decimal":
-        text = [None if gone else Decimal(f"{value:.{places}f}") for value, gone in zip(values, missing, strict=True)]
-        return pa.array(text, type=pa.decimal128(18, places))
+        exact = [None if gone else Decimal(f"{value:.{places}f}") for value, gone in zip(values, missing, strict=True)]
+        return pa.array(exact, type=pa.decimal128(18, places))
     if habit.numbers == "text":
         text = [None if gone else f"{value:.{places}f}" for value, gone in zip(values, missing, strict=True)]
         return pa.array(text, type=pa.string())
