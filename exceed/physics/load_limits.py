@@ -63,7 +63,8 @@ def _limit(
         table.speed_up_to.tolist(),
         table.airbrakes.tolist(),
     )
-    setting = _setting_in_force(flap_angle, table.flap_angle[rows])
+    setting = _one(_setting_in_force(flap_angle, table.flap_angle[rows]))
+    brakes, mass, speed = _one(brakes), _one(mass), _one(speed)
 
     exact_keys = {}  # flaps and airbrakes
     exact = {}
@@ -92,7 +93,8 @@ def _limit(
         for j in rows:
             if j != i and tighter(j, i):
                 holds = holds & ~exact[j]
-        best = np.where(holds, np.minimum(best, size * values[i]), best)
+        if np.any(holds):
+            best = np.where(holds, np.minimum(best, size * values[i]), best)
 
     # The last mass, and the last speed, of a group of rows go on holding beyond themselves. A row for any mass is then
     # no leave to fly heavier with more than the shrunken limit: the more protective of both holds.
@@ -143,6 +145,11 @@ def _exact_tight(a: float, b: float) -> int:
 def _ordered_tight(a: float, b: float) -> int:
     high, low = (np.inf if np.isnan(x) else x for x in (b, a))
     return int(np.sign(high - low)) if high != low else 0
+
+
+def _one(key: Array) -> Array:
+    """A key that is the same at every sample as a single number: flaps seldom move."""
+    return np.asarray(key.flat[0]) if key.size and key.min() == key.max() else key
 
 
 def _setting_in_force(flap_angle: Array, listed: Array) -> Array:
