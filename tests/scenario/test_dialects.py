@@ -157,3 +157,13 @@ def test_every_quantity_has_a_name_in_every_vocabulary_and_a_unit() -> None:
     for quantity, names in NAMES.items():
         assert len(names) == len(VOCABULARIES)
         assert kind_of(quantity)
+
+
+def test_the_example_in_the_readme_runs(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    text = (Path(__file__).resolve().parent / "README.md").read_text()
+    code = text.split("```python")[1].split("```")[0]
+    monkeypatch.chdir(tmp_path)
+    names: dict[str, object] = {}
+    exec(code, names)
+    assert (tmp_path / "log.csv").stat().st_size > 1000
+    assert set(names["written"].columns) == {"load_factor", "indicated_airspeed"}  # type: ignore[attr-defined]
