@@ -16,11 +16,13 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from exceed.core.phases import Flight
 from exceed.core.recording import Array, Channel, frozen
 from exceed.core.trace import FlightMass, Step, Trace
 from exceed.derive.coarse import Coarse
 from exceed.derive.facts import Facts
 from exceed.derive.first_pass import FirstPass
+from exceed.derive.resolve import base_name
 from exceed.physics.loading import AVGAS_DENSITY, fuel_burnt
 
 if TYPE_CHECKING:
@@ -165,7 +167,10 @@ def _summary(
     arms: Array | None = None,
 ) -> tuple[FlightMass, ...]:
     found = []
-    for place, flight in enumerate(first.track.flights):
+    time = first.coarse.time
+    # where nothing tells flights apart the recording counts as one, without a number
+    whole = [] if first.track.known or not len(time) else [Flight(0, float(time[0]), float(time[-1]))]
+    for place, flight in enumerate(first.track.flights or whole):
         cells = first.coarse.part(flight.start - 1.0, flight.end + 1e-9)
         inside = np.arange(cells.start, cells.stop)[np.isfinite(series[cells])]
         if not len(inside):
@@ -254,16 +259,16 @@ def _fuel_used(first: FirstPass, aircraft: Aircraft | None, facts: Facts, notes:
     for low, high in seams:
         time -= np.clip(coarse.time - low, 0.0, high - low)
     for name in ("fuel_mass", "fuel_volume"):
-        if coarse.has(name):
+        if parts := _parts(coarse, name):
             scale = 1.0 if name == "fuel_mass" else _density(aircraft, facts, notes)
-            left = _smoothed(coarse, coarse.pick(name)) * scale
+            left = np.sum([_smoothed(coarse, coarse.pick(part)) for part in parts], axis=0) * scale
             known = np.flatnonzero(np.isfinite(left))
             gauge: Array = np.interp(time, time[known], left[known])
             return _Used(gauge[0] - gauge, "fuel quantity", 0.05, gauge)
     for name in ("fuel_mass_flow", "fuel_volume_flow"):
-        if coarse.has(name):
+        if parts := _parts(coarse, name):
             scale = 1.0 if name == "fuel_mass_flow" else _density(aircraft, facts, notes)
-            flow = coarse.statistics(name).mean * scale
+            flow = np.sum([coarse.statistics(part).mean for part in parts], axis=0) * scale
             burnt = fuel_burnt(time, flow)
             known = np.flatnonzero(np.isfinite(burnt))
             return _Used(np.interp(time, time[known], burnt[known]), "fuel flow integrated", 0.03)
@@ -277,6 +282,13 @@ def _fuel_used(first: FirstPass, aircraft: Aircraft | None, facts: Facts, notes:
         passed = np.concatenate([[0.0], np.cumsum(np.diff(time) * flown[:-1])])
         return _Used(steady * passed, "fuel consumption of the aircraft file", 0.2)
     return _Used(np.zeros(len(coarse)), "no fuel used", 0.0)
+
+
+def _parts(coarse: Coarse, name: str) -> list[str]:
+    """The channel of a quantity, or those of several tanks or engines (fuel_mass_1, fuel_mass_2)."""
+    if coarse.has(name):
+        return [name]
+    return [part for part in sorted(coarse.recording.channels) if base_name(part) == name and coarse.has(part)]
 
 
 def _density(aircraft: Aircraft | None, facts: Facts, notes: list[str]) -> float:

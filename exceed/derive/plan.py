@@ -14,7 +14,15 @@ from exceed.core.trace import Step, Trace
 from exceed.derive import evidence, mass, phases
 from exceed.derive.facts import Facts, facts_of
 from exceed.derive.first_pass import first_pass, inverted_time
-from exceed.derive.resolve import FOUND_FACTS, LOAD_FACTORS, Resolver, closure, leaves, with_uncertainty
+from exceed.derive.resolve import (
+    FOUND_FACTS,
+    LOAD_FACTORS,
+    Resolver,
+    base_name,
+    closure,
+    leaves,
+    with_uncertainty,
+)
 from exceed.physics.kinematics import lever_arm_uncertainty
 
 if TYPE_CHECKING:
@@ -53,7 +61,7 @@ def needed_channels(
         rests = closure(resolver.steps, wanted) | set(wanted)
         needed |= leaves(resolver.steps, wanted)
         if rests & {"mass", "centre_of_gravity", "zero_fuel_mass", "fuel_mass"}:
-            needed |= set(mass.EVIDENCE)
+            needed |= {name for name in available if base_name(name) in mass.EVIDENCE}
     return (needed | set(evidence.EVIDENCE) | set(phases.EVIDENCE)) & available
 
 
@@ -87,7 +95,11 @@ def build_trace(
     everything = [*TRACE_ORDER, *sorted(set(recording.channels) - set(TRACE_ORDER))]
     for name in everything:
         resolver.resolve(name)
-    wanted = everything if quantities is None else list(dict.fromkeys(quantities))
+    wanted = everything
+    if quantities is not None:
+        # engine_speed asks for engine_speed_1 and _2 as well, where the channels are one an engine
+        indexed = [name for name in everything if base_name(name) in quantities]
+        wanted = list(dict.fromkeys([*quantities, *indexed]))
     for name in wanted:
         resolver.resolve(name)
     resolver.missing.update({name: why for name, why in weight.missing.items() if name in resolver.missing})

@@ -7,6 +7,7 @@ inverse pairs may both stand in the table and nothing goes round in circles.
 from __future__ import annotations
 
 import inspect
+import re
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field, replace
 from functools import lru_cache
@@ -205,6 +206,11 @@ class Resolver:
         row = QUANTITIES.get(name)
         start = "not recorded, and cannot be derived: " if row is None or row.recorded else ""
         return start + "; ".join(dict.fromkeys(fewest))
+
+
+def base_name(name: str) -> str:
+    """The quantity of a channel that is one of several, by index: engine_speed_2 -> engine_speed."""
+    return name if name in QUANTITIES else re.sub(r"(_\d+)+$", "", name)
 
 
 def _words(name: str) -> str:
