@@ -17,6 +17,8 @@ M = TypeVar("M", bound=Model)
 KINDS = ("aircraft", "rules", "channels", "loading", "fleet")
 # each round takes out what was found wrong and looks at the rest again
 _ROUNDS = 12
+# how a fault speaks of what is not there
+_ABSENCE = ("there is none", "is missing", "are missing", "neither", "no level is given")
 
 
 def open_document(origin: Path | str | Document, name: str | None = None) -> Document:
@@ -70,8 +72,10 @@ def build(model: type[M], document: Document, kind: str, context: dict[str, Any]
             for row in error.errors(include_url=False):
                 for path, problem, expected, do in faults_of(row):
                     parents, node, key_node = _walk(root, (*row["loc"], *path))
-                    # of a whole that lost a wrong part nothing more can be said
-                    if not any(node is whole for whole in thinned):
+                    # of a whole that lost a wrong part nothing more can be said, nor that the part is missing
+                    absence = any(words in problem for words in _ABSENCE)
+                    around = [node, *(parent for parent, _ in parents)] if absence else [node]
+                    if not any(one is whole for one in around for whole in thinned):
                         at = key_node if key_node is not None and _at_key(node, row["type"], problem) else node
                         shown = Problem(document.place(at), problem, expected, do)
                         problems.setdefault((at.line, at.column, problem), shown)

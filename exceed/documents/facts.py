@@ -5,8 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
-from exceed.documents.fields import Faults, nearest
-from exceed.documents.values import Value
+from exceed.core.quantities import QUANTITIES
+from exceed.documents.fields import Faults, an, nearest
+from exceed.documents.values import Value, expected_of
 
 if TYPE_CHECKING:
     from exceed.documents.aircraft import Aircraft
@@ -161,6 +162,7 @@ def contradictions(aircraft: Aircraft) -> Faults:
         problem = f"the envelope ends at '{envelope[-1][0]}', below empty mass '{empty}'"
         path = ("loading", "envelope", len(envelope) - 1)
         found.note(path, problem, "an envelope up to maximum take-off mass", "check the figures")
+    _named_limits(aircraft, found)
     settings = [row.flaps for row in aircraft.position_error]
     for index in range(1, len(settings)):
         here, before = settings[index], settings[index - 1]
@@ -225,3 +227,26 @@ def _load_factor_rows(aircraft: Aircraft, found: Faults) -> None:
                 )
                 break
             seen[key] = index
+
+
+# a word in the name of a limit -> the kinds it can have; a bare number is none of them
+_WORDS = {
+    "temperature": ("temperature",),
+    "pressure": ("pressure",),
+    "altitude": ("length",),
+    "mass": ("mass",),
+    "load_factor": ("load factor",),
+    "time": ("time",),
+}
+
+
+def _named_limits(aircraft: Aircraft, found: Faults) -> None:
+    """Limits of one's own whose name says what they are."""
+    for name, value in aircraft.limits.items():
+        base = name.removesuffix("_minimum").removesuffix("_maximum")
+        kinds = (QUANTITIES[base].kind,) if base in QUANTITIES else ()
+        kinds = kinds or next((kinds for word, kinds in _WORDS.items() if word in base), ())
+        if kinds and value.kind not in kinds:
+            what = "has no unit" if value.bare else f"is {an(value.kind)}"
+            expected = expected_of(kinds, bare="ratio" in kinds)
+            found.note(("limits", name), f"'{value}' {what}", expected, "give the limit with its unit")

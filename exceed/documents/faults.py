@@ -18,17 +18,21 @@ class Faults(list[tuple[Path, str, str, str]]):
     """Faults in the order they were found: path, problem, expected, do."""
 
     def note(self, path: Path, problem: str, expected: str = "", do: str = "") -> None:
-        self.append((path, problem, expected, do))
+        self.append((path, _short(problem), expected, _short(do)))
 
 
 def fault(problem: str, expected: str = "", do: str = "") -> PydanticCustomError:
     """The error of one value."""
-    return faults([((), problem, expected, do)])
+    return faults([((), _short(problem), expected, _short(do))])
 
 
 def faults(found: Sequence[tuple[Path, str, str, str]]) -> PydanticCustomError:
     """Several errors at once, each at a path below the value that is being read."""
     return PydanticCustomError("exceed", "{text}", {"text": "; ".join(row[1] for row in found), "faults": list(found)})
+
+
+def _short(text: str) -> str:
+    return text if len(text) <= 240 else text[:200] + "..."
 
 
 def raise_any(found: Sequence[tuple[Path, str, str, str]]) -> None:
@@ -87,7 +91,7 @@ def faults_of(row: Any) -> Sequence[tuple[Path, str, str, str]]:
         return list(row["ctx"]["faults"])
     if kind == "missing":
         key = row["loc"][-1]
-        return [((), f"key '{key}' is missing", f"'{key}'", f"add '{key}: ...' here")]
+        return [((), f"key '{key}' is missing", f"a value for '{key}'", f"add '{key}: ...' here")]
     if kind in ("tuple_type", "list_type", "iterable_type"):
         return [
             (

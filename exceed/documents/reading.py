@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
+import re
 from pathlib import Path
+from typing import Any
 
 import yaml
 
 from exceed.errors import DocumentError, Problem
 
 MAXIMUM_BYTES = 2_000_000
+
+_NOT_TEXT = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x84\x86-\x9f\ud800-\udfff\ufeff\ufffe\uffff]")
 
 
 def read_text(path: Path | str, name: str | None = None) -> tuple[str, bytes]:
@@ -67,21 +71,21 @@ def decode(data: bytes, name: str) -> str:
         raise DocumentError(
             Problem(place, f"byte 0x{data[error.start]:02x} is no UTF-8 text", "UTF-8 text", save)
         ) from None
-    for index, character in enumerate(text):
-        code = ord(character)
-        if (
-            (code < 32 and character not in "\t\n\r")
-            or (127 <= code < 160 and code != 0x85)
-            or code in (0xFEFF, 0xFFFE, 0xFFFF)
-        ):
-            raise DocumentError(
-                Problem(
-                    f"{name}:{_position(text[:index])}",
-                    f"a control character (U+{code:04X}) stands here",
-                    "plain UTF-8 text",
-                    "remove it, or check that this is the right file",
-                )
+    return clean(text, name)
+
+
+def clean(text: str, name: str) -> str:
+    """The text itself. Raises DocumentError with the place of the first character that no YAML text may have."""
+    found = _NOT_TEXT.search(text)
+    if found:
+        raise DocumentError(
+            Problem(
+                f"{name}:{_position(text[: found.start()])}",
+                f"a control character (U+{ord(found.group()):04X}) stands here",
+                "plain UTF-8 text",
+                "remove it, or check that this is the right file",
             )
+        )
     return text
 
 
@@ -126,15 +130,20 @@ _SYNTAX: tuple[tuple[str, str, str], ...] = (
         "text follows after the end of the document",
         "keep one document in a file",
     ),
+    ("exceeded maximum nesting depth", "this is nested too deeply", "check that this is the right file"),
     ("found undefined alias", "an alias has no anchor before it", "write the value out"),
 )
 
 
 def syntax(error: yaml.YAMLError, name: str, text: str) -> Problem:
-    mark = getattr(error, "problem_mark", None) or getattr(error, "context_mark", None)
+    """What the parser complains about, in our words, at the place where it can be mended."""
+    mark: Any = getattr(error, "problem_mark", None)
+    start: Any = getattr(error, "context_mark", None)
     said = str(getattr(error, "problem", "") or "")
     if mark is None:
         return Problem(name, "this is no YAML text", "YAML", "check that this is the right file")
+    if "unexpected end of stream" in said and start is not None:
+        mark = start
     place = f"{name}:{mark.line + 1}:{mark.column + 1}"
     lines = text.splitlines()
     line = lines[mark.line] if mark.line < len(lines) else ""
@@ -147,10 +156,13 @@ def syntax(error: yaml.YAMLError, name: str, text: str) -> Problem:
         return Problem(
             place, "a tab stands where blanks are due", "blanks for indentation", "replace the tab by blanks"
         )
-    for start, ours, do in _SYNTAX:
-        if start in said:
-            shown = f" ('{at}')" if at and "character" in ours else ""
-            return Problem(place, ours + shown, "valid YAML", do)
+    for words, ours, do in _SYNTAX:
+        if words in said:
+            if at and "character" in ours:
+                ours += f" ('{at}')"
+            if ours.startswith("the br") and start is not None:
+                ours = ours.replace("are not closed", f"opened in line {start.line + 1} are not closed")
+            return Problem(place, ours, "valid YAML", do)
     return Problem(
         place, "the text is no valid YAML here", "valid YAML", "check quotes, brackets and indentation near here"
     )

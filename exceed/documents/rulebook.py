@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 from exceed.core.quantities import Quantity
@@ -47,6 +47,8 @@ def load_rules(origin: Path | str | Document, name: str | None = None) -> RuleSe
     declared: dict[str, str] = {}
     if isinstance(own, Mapping):
         declared = {key: node.text for key, node in own.entries.items() if isinstance(node, Scalar)}
+    # twice the same id is told even where the rules themselves have faults
+    document = replace(document, problems=(*document.problems, *_twice(document)))
     made = build(RuleSet, document, "rules", {"declared": declared})
     listed = document.root.entries.get("rules")
     nodes = listed.items if isinstance(listed, Sequence) else []
@@ -62,6 +64,24 @@ def load_rules(origin: Path | str | Document, name: str | None = None) -> RuleSe
     return made.model_copy(
         update={"rules": placed, "name": shown, "path": path, "sha256": document.sha256, "title": made.title or shown}
     )
+
+
+def _twice(document: Document) -> list[Problem]:
+    listed = document.root.entries.get("rules")
+    seen: dict[str, int] = {}
+    found: list[Problem] = []
+    for index, row in enumerate(listed.items if isinstance(listed, Sequence) else []):
+        node = row.entries.get("id") if isinstance(row, Mapping) else None
+        if not isinstance(node, Scalar):
+            continue
+        name = node.text.strip()
+        if name in seen:
+            problem = f"id '{name}' is there twice, first as rule {seen[name] + 1}"
+            found.append(
+                Problem(document.place(node), problem, "each id once in a file", "give one of them another id")
+            )
+        seen.setdefault(name, index)
+    return found
 
 
 def _is_word(text: str) -> bool:

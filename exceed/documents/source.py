@@ -15,7 +15,7 @@ from typing import Any
 
 import yaml
 
-from exceed.documents.reading import read_text, syntax
+from exceed.documents.reading import clean, read_text, syntax
 from exceed.errors import DocumentError, Problem
 
 MAXIMUM_DEPTH = 32
@@ -105,9 +105,9 @@ def load(path: Path | str, name: str | None = None) -> Document:
 def parse(text: str, name: str = "text", sha256: str = "") -> Document:
     """Parse YAML text. Raises DocumentError where nothing can be made of it; lesser faults go along as data."""
     digest = sha256 or hashlib.sha256(text.encode("utf-8", errors="surrogatepass")).hexdigest()
-    builder = _Builder(name, text)
+    builder = _Builder(name, clean(text.removeprefix("\ufeff"), name))
     try:
-        for event in yaml.parse(text, Loader=_Loader):
+        for event in yaml.parse(builder.text, Loader=_Loader):
             builder.take(event)
     except yaml.YAMLError as error:
         raise DocumentError(*builder.problems, syntax(error, name, text)) from error

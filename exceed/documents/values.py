@@ -16,7 +16,8 @@ from exceed.core.units import AIRSPEED_UNITS, AIRSPEED_WORDS, KINDS, UNITS, near
 
 AIRSPEED_SPEED_UNITS = ("km/h", "kt", "m/s", "mph")
 
-_NUMBER = re.compile(r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?")
+# ASCII: other digits look like numbers and are not what an editor or another reader takes for one
+_NUMBER = re.compile(r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?", re.ASCII)
 _NOT_FINITE = re.compile(r"[+-]?\.?(?:nan|inf(?:inity)?)(?![a-z])", re.IGNORECASE)
 _THOUSANDS = re.compile(r"[+-]?\d{1,3}(?:([ '’_,.\u00a0\u202f])\d{3})(?:\1\d{3})*(?![\d.])")
 _DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+")
@@ -183,19 +184,21 @@ def _number(text: str, shown: str, expected: str) -> tuple[float, str]:
     return number, text[found.end() :].strip()
 
 
-def _unknown_unit(name: str, expected: str) -> ValueFault:
+def _unknown_unit(name: str, expected: str, wanted: tuple[str, ...]) -> ValueFault:
     meant = _MEANT.get(name.lower().replace(" ", ""))
     if meant:
         return ValueFault(f"unit '{name}' is not known", expected, f"write '{meant[0]}' if you meant {meant[1]}")
-    near = nearest_unit(name)
+    fitting = [unit for kind in wanted for unit in units_of(kind)]
+    near = next(iter(difflib.get_close_matches(name, fitting, n=1, cutoff=0.5)), None) or nearest_unit(name)
+    right = near is not None and (not wanted or near in fitting or ("speed" in wanted and near in AIRSPEED_UNITS))
     return ValueFault(
         f"unit '{name}' is not known",
         expected,
-        f"write '{near}' if that is meant" if near else "use a unit of the list",
+        f"write '{near}' if that is meant" if right else "use a unit of the list",
     )
 
 
-def _split_unit(text: str, expected: str) -> tuple[str, str | None]:
+def _split_unit(text: str, expected: str, wanted: tuple[str, ...]) -> tuple[str, str | None]:
     """Unit name of the table and the airspeed it says, if any."""
     if text in UNITS:
         return text, None
@@ -218,8 +221,8 @@ def _split_unit(text: str, expected: str) -> tuple[str, str | None]:
             f"write '{first} {near[0]}' if that is meant" if near else "name the kind, or leave it out",
         )
     if word in AIRSPEED_WORDS:
-        raise _unknown_unit(first, expected)
-    raise _unknown_unit(text, expected)
+        raise _unknown_unit(first, expected, wanted)
+    raise _unknown_unit(text, expected, wanted)
 
 
 def parse(
@@ -270,7 +273,7 @@ def parse(
         if airspeed == "required":
             example = "KIAS"
         raise ValueFault(f"{shown} has no unit", expected, f"write the unit after the number, as in '{tidy} {example}'")
-    unit_name, which = _split_unit(rest, expected)
+    unit_name, which = _split_unit(rest, expected, wanted)
     unit = UNITS[unit_name]
     if (wanted and unit.kind not in wanted) or unit.kind == "state" or unit_name == "1":
         article = "an" if unit.kind[0] in "aeiou" else "a"
