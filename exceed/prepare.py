@@ -16,7 +16,7 @@ from exceed.documents.channels import Channels, load_channels
 from exceed.documents.fleet import Fleet, FleetAircraft, load_fleet
 from exceed.documents.loading import LoadingSheet, load_loading
 from exceed.documents.rulebook import BUILT_IN, RuleBook, layer, load_rules
-from exceed.documents.values import ValueProblem, parse
+from exceed.documents.values import ValueFault, parse
 from exceed.errors import DocumentError, ExceedError, Problem, UsageError
 from exceed.settings import Settings
 
@@ -157,7 +157,7 @@ def _mass(settings: Settings, problems: list[Problem]) -> float | None:
         return None
     try:
         value = parse(settings.mass)
-    except ValueProblem as error:
+    except ValueFault as error:
         problems.append(Problem("--mass", error.problem, error.expected, error.do))
         return None
     if value.kind != "mass" or not value > 0.0:

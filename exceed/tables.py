@@ -18,7 +18,7 @@ from exceed import __version__
 from exceed.core.outcome import LogOutcome
 from exceed.core.phases import PHASES
 from exceed.core.trace import Trace
-from exceed.derive.export import blocks, trace_columns
+from exceed.derive.export import trace_blocks, trace_columns
 from exceed.errors import OutputError, Problem
 from exceed.report.write import problem_of
 
@@ -98,7 +98,7 @@ def batches(trace: Trace, schema: pa.Schema) -> Iterator[pa.RecordBatch]:
     """The table in record batches, null where a value could not be had."""
     start = trace.recording.clock.start
     names = pa.array(PHASES)
-    for block in blocks(trace):
+    for block in trace_blocks(trace):
         arrays: list[pa.Array] = []
         for field in schema:
             if field.name == "utc":
@@ -111,7 +111,7 @@ def batches(trace: Trace, schema: pa.Schema) -> Iterator[pa.RecordBatch]:
             elif field.name == "phase":
                 arrays.append(pa.DictionaryArray.from_arrays(pa.array(block.phase, pa.int8()), names))
             else:
-                values = block.columns[field.name]
+                values = block.values[field.name]
                 arrays.append(pa.array(values, pa.float64(), mask=~np.isfinite(values)))
         yield pa.RecordBatch.from_arrays(arrays, schema=schema)
 
