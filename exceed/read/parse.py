@@ -1,0 +1,198 @@
+"""The parser at work: a text log's wanted columns, typed, through pyarrow; and the slow second read that finds a place."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+from exceed.read.cells import missing_spellings
+from exceed.read.container import Digest, Source, Utf8Stream, fail
+from exceed.read.table import Layout, split
+
+BLOCK = 4 << 20
+
+
+@dataclass(slots=True)
+class Parsed:
+    """Arrow columns by their place in the file, the digests, and what was said on the way."""
+
+    columns: dict[int, Any]
+    rows: int
+    sha256: str
+    content_sha256: str
+    uneven: list[str] = field(default_factory=list)
+    uneven_count: int = 0
+    cut: list[str] = field(default_factory=list)
+    texts: set[int] = field(default_factory=set)
+    tail: bytes | None = None
+
+
+def rewriter(layout: Layout) -> Callable[[Iterator[bytes]], Iterator[bytes]] | None:
+    """A change of the lines that the parser needs, or None."""
+    if not layout.squeeze and not layout.uneven:
+        return None
+    ends = re.compile(rb"\r\n|\r|\n")
+    width, mark = layout.width, layout.delimiter.encode()
+
+    def lines(pieces: Iterator[bytes]) -> Iterator[bytes]:
+        rest = b""
+        for piece in pieces:
+            block = rest + piece
+            held = b""
+            if block.endswith(b"\r"):  # its line feed may come with the next piece
+                block, held = block[:-1], b"\r"
+            parts = ends.split(block)
+            rest = parts.pop() + held
+            if parts:
+                yield b"\n".join(mend(part) for part in parts) + b"\n"
+        if rest.strip(b"\r"):
+            # a line without its end may be cut: it is not filled up, so that it shows
+            last = rest.rstrip(b"\r")
+            yield b" ".join(last.split()) if layout.squeeze else last
+
+    def mend(line: bytes) -> bytes:
+        if layout.squeeze:
+            return b" ".join(line.split())
+        missing = width - 1 - line.count(mark)
+        # only lines that left off their empty end are filled up; the rest stays as it is, to be counted
+        return line + mark * missing if 0 < missing and line.count(mark) and b'"' not in line else line
+
+    return lines
+
+
+class Reader:
+    """One text log, read as often as needed. Types: column -> number, text, stamp, stamp_zone or time."""
+
+    def __init__(self, source: Source, layout: Layout, missing: Sequence[str] = (), limit: int | None = None) -> None:
+        self.source, self.layout, self.missing = source, layout, missing
+        self.limit = limit
+
+    def read(self, types: dict[int, str]) -> Parsed:
+        """Read the columns; a column that does not parse as it should is read as text instead."""
+        types = dict(types)
+        texts: set[int] = {place for place, kind in types.items() if kind == "text"}
+        digest = Digest(self.source.location) if self.source.direct else None
+        for attempt in range(8):
+            try:
+                parsed = self._once(types)
+            except _Retry as retry:
+                # one column first; if a third fails, most probably all have the same stray rows
+                failing = [retry.column] if attempt < 2 and retry.column in types else [p for p, k in types.items() if k != "text"]
+                for place in failing:
+                    types[place] = "text"
+                    texts.add(place)
+                continue
+            parsed.texts = texts
+            if digest is not None:
+                parsed.sha256 = parsed.content_sha256 = digest.result()
+            return parsed
+        raise fail(self.source.shown, "its columns cannot be read as numbers or as text", do="export the log as CSV again")
+
+    def _once(self, types: dict[int, str]) -> Parsed:
+        import pyarrow as pa
+        import pyarrow.csv as arrow_csv
+
+        layout = self.layout
+        kinds = {"number": pa.float64(), "text": pa.string(), "stamp": pa.timestamp("ns"), "stamp_zone": pa.timestamp("ns", tz="UTC"),
+                 "time": pa.time64("ns"), "word": pa.dictionary(pa.int32(), pa.string())}  # fmt: skip
+        stray: list[str] = []
+        count = [0]
+
+        def uneven(row: Any) -> str:
+            count[0] += 1
+            if len(stray) < 5:
+                stray.append(row.text)
+            return "skip"
+
+        stream: Any = None
+        handle: Any
+        if self.source.direct and rewriter(layout) is None:
+            handle = pa.memory_map(self.source.location)
+        else:
+            stream = Utf8Stream(self.source, rewriter(layout))
+            handle = pa.PythonFile(stream, mode="r")
+        try:
+            table = arrow_csv.read_csv(
+                handle,
+                arrow_csv.ReadOptions(column_names=[str(k) for k in range(layout.width)], skip_rows=layout.skip, block_size=BLOCK),
+                arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven),
+                arrow_csv.ConvertOptions(
+                    column_types={str(k): kinds[kind] for k, kind in types.items()},
+                    include_columns=[str(k) for k in types],
+                    null_values=missing_spellings(set(self.missing)),
+                    strings_can_be_null=True,
+                    decimal_point=layout.decimal if layout.decimal != layout.delimiter else ".",
+                    check_utf8=False,
+                ),
+            )
+        except pa.ArrowInvalid as error:
+            if stream is not None and stream.error is not None:
+                raise stream.error from error
+            match = re.search(r"CSV column #(\d+)", str(error))
+            if match and types.get(int(match.group(1))) != "text":
+                raise _Retry(int(match.group(1))) from error
+            raise self._refused(error) from error
+        except (pa.ArrowException, OSError) as error:
+            if stream is not None and stream.error is not None:
+                raise stream.error from error
+            raise self._refused(error) from error
+        cut: list[str] = []
+        digests = ("", "")
+        tail = None
+        if stream is not None:
+            digests = stream.digests()
+            cut = stream.cut
+            tail = stream.tail
+        # the table lets go of its columns one by one, so that each can be freed once it is converted
+        columns = {int(name): table.column(name) for name in table.column_names}
+        return Parsed(columns, table.num_rows, digests[0], digests[1], stray, count[0], cut, tail=tail)
+
+    def _refused(self, error: BaseException) -> Exception:
+        text = " ".join(str(error).split())
+        if "straddling" in text or "block" in text:
+            return fail(
+                self.source.shown, f"a line is longer than {BLOCK >> 20} MB", expected="one row a line", do="export the log as CSV again"
+            )
+        return fail(self.source.shown, f"cannot be read as a table: {text[:160]}", do="export the log as CSV again")
+
+    def find(self, texts: Sequence[str], column: int, most: int = 1) -> list[tuple[int, str]]:
+        """(line number, cell) of the first lines in which a column holds one of the texts. Slow: goes line by line."""
+        wanted = {text.strip() for text in texts}
+        needles = [text.strip().encode() for text in wanted if text.strip()]
+        found: list[tuple[int, str]] = []
+        number = 0
+        for line in self._lines():
+            number += 1
+            if number <= self.layout.skip or not any(needle in line for needle in needles):
+                continue
+            cells = split(line.decode("utf-8", "replace"), self.layout.delimiter)
+            if column < len(cells) and cells[column].strip().strip('"').strip() in wanted:
+                found.append((number, cells[column].strip()))
+                if len(found) >= most:
+                    break
+        return found
+
+    def _lines(self) -> Iterator[bytes]:
+        ends = re.compile(rb"\r\n|\r|\n")
+        stream = Utf8Stream(self.source)
+        rest = b""
+        while piece := stream.read(1 << 20):
+            block = rest + piece
+            held = b""
+            if block.endswith(b"\r"):
+                block, held = block[:-1], b"\r"
+            parts = ends.split(block)
+            rest = parts.pop() + held
+            yield from parts
+        if rest:
+            yield rest
+
+
+class _Retry(Exception):  # noqa: N818
+    """A column that does not parse as it should."""
+
+    def __init__(self, column: int) -> None:
+        super().__init__(column)
+        self.column = column
