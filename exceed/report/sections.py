@@ -32,7 +32,7 @@ def extremes(summary: Dict, screen: Screen) -> list[str]:
             for end in ("maximum", "minimum"):
                 found = row[end]
                 cells.append(form.with_unit(found["value"]) if found is not None else "")
-                cells.append(_instant(recording, found["time_s"], screen) if found is not None else "")
+                cells.append(instant(recording, found["time_s"]) if found is not None else "")
             cells.append(share_text(row["closest_to_limit"]))
             rows.append(cells)
         plan.append((recording, flight, len(flight["extremes"])))
@@ -64,14 +64,15 @@ def extremes(summary: Dict, screen: Screen) -> list[str]:
     return lines
 
 
-def _instant(recording: Dict, time: float | None, screen: Screen) -> str:
+def instant(recording: Dict, time: float | None) -> str:
+    """A time on a recording's axis: UTC of day where its clock is absolute, else elapsed."""
     clock = recording["clock"]
     if time is None:
         return ""
     if clock is None or clock["start"] is None:
         return elapsed(time)
     seconds = moment(clock["start"]).timestamp() + time
-    return f"{moment_text(seconds)}"
+    return moment_text(seconds)
 
 
 def moment_text(epoch: float) -> str:
@@ -90,12 +91,13 @@ def _flight_line(summary: Dict, recording: Dict, flight: Dict, screen: Screen) -
         parts.append(f"flight {flight['flight']}, {flight_times(recording, flight, screen)}")
         if flight["landings"] is not None and flight["landings"] != 1:
             parts.append(count(flight["landings"], "landing"))
-    parts.append(_mass(flight["mass"], screen))
+    parts.append(mass_text(flight["mass"], screen))
     parts.append(screen.safe(recording["path"]))
     return ", ".join(part for part in parts if part)
 
 
-def _mass(mass: Dict | None, screen: Screen) -> str:
+def mass_text(mass: Dict | None, screen: Screen) -> str:
+    """A flight's mass and how it was had; empty where nothing is known."""
     if mass is None:
         return ""
     form = shown("mass", mass["unit"], screen.units)
