@@ -49,9 +49,9 @@ def log_plots(
         by_id.setdefault((rule.id, rule.judged), rule)
     plots = []
     for event in (*findings.events, *findings.undecided):
-        rule = by_id.get((event.rule, event.quantity))
-        if rule is not None:
-            plots.append(event_plot(trace, rule, event))
+        found = by_id.get((event.rule, event.quantity))
+        if found is not None:
+            plots.append(event_plot(trace, found, event))
     declared = {rule.judged: rule.quantity.shown for rule in rules}
     return LogPlots(path, tuple(plots), vn_plot(trace, aircraft), spectrum_plot(trace), declared)
 
