@@ -32,30 +32,30 @@ def _between_settings(curves: list[Array], settings: tuple[float, ...], flap_ang
 
 
 def calibrated_from_indicated(
-    indicated_airspeed: Array, position_error: PositionError, flap_angle: Array | None = None
+    indicated_airspeed: Array, position_error: PositionError, error_flap_angle: Array | None = None
 ) -> Array:
     """Calibrated airspeed: indicated plus the table's correction, the last correction held beyond its ends.
 
-    indicated_airspeed : (n,) m/s; flap_angle : (n,) rad, None where not recorded (clean row). Returns (n,) m/s.
+    indicated_airspeed : (n,) m/s; error_flap_angle : (n,) rad, None where not recorded (clean row). Returns (n,) m/s.
     Source: [DEFINITION]; the table is the manual's.
     """
     curves = [
         indicated_airspeed + np.interp(indicated_airspeed, indicated, calibrated - indicated)
         for indicated, calibrated in zip(position_error.indicated, position_error.calibrated, strict=True)
     ]
-    return _between_settings(curves, position_error.flap_angle, flap_angle)
+    return _between_settings(curves, position_error.flap_angle, error_flap_angle)
 
 
 def indicated_from_calibrated(
-    calibrated_airspeed: Array, position_error: PositionError, flap_angle: Array | None = None
+    calibrated_airspeed: Array, position_error: PositionError, error_flap_angle: Array | None = None
 ) -> Array:
     """Indicated airspeed; the inverse of `calibrated_from_indicated` for each row of the table.
 
-    calibrated_airspeed : (n,) m/s; flap_angle : (n,) rad or None. Returns (n,) m/s.
+    calibrated_airspeed : (n,) m/s; error_flap_angle : (n,) rad or None. Returns (n,) m/s.
     Source: [DEFINITION]; the table is the manual's.
     """
     curves = [
         calibrated_airspeed - np.interp(calibrated_airspeed, calibrated, calibrated - indicated)
         for indicated, calibrated in zip(position_error.indicated, position_error.calibrated, strict=True)
     ]
-    return _between_settings(curves, position_error.flap_angle, flap_angle)
+    return _between_settings(curves, position_error.flap_angle, error_flap_angle)

@@ -37,10 +37,10 @@ def gust_velocity(
     with np.errstate(invalid="ignore"):
         if bank_angle is not None:
             bank = np.abs((bank_angle + np.pi) % (2.0 * np.pi) - np.pi)
-            fits &= ~(bank > GUST_BANK)
+            fits &= bank <= GUST_BANK
             undisturbed = np.where(bank <= GUST_BANK, 1.0 / np.cos(np.minimum(bank, GUST_BANK)), undisturbed)
         if flap_angle is not None:
-            fits &= ~(np.abs(flap_angle) > FLAPS_UP)
+            fits &= np.abs(flap_angle) <= FLAPS_UP
     increment = np.where(np.isfinite(load_factor), load_factor - undisturbed, np.nan)
     found = gust.peaks_between_means(time, increment)
     short = gust.is_gust(found.duration)

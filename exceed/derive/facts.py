@@ -68,6 +68,7 @@ def facts_of(aircraft: Aircraft | None) -> Facts:
             tuple(np.array([float(x) for x, _ in row.points]) for row in aircraft.position_error),
             tuple(np.array([float(y) for _, y in row.points]) for row in aircraft.position_error),
         )
+        aliases["error_flap_angle"] = "flap_angle" if len(aircraft.position_error) > 1 else None
     stall = _stall_table(aircraft, values.get("position_error"), heaviest, notes)
     if stall is not None:
         values["stall_table"] = stall

@@ -105,7 +105,7 @@ class Resolver:
                 inputs[name] = target
             elif kind == "fact" and self._has_fact(name):
                 bound[name] = self.facts.values.get(name, self.found.get(name))
-            elif name in row.without and (name != "flap_angle" or self.facts.flaps != "none"):
+            elif name in row.without:
                 assumed.append(row.without[name])
             elif not optional:
                 return False
@@ -130,7 +130,7 @@ class Resolver:
             return "time", name
         if name.startswith(RECORDED):
             return "channel", name.removeprefix(RECORDED)
-        if name.startswith("limit_") or name == "manoeuvring_over":
+        if _aliased(name):
             target = self.facts.aliases.get(name)
             if target is None or (target == "flap_angle" and self.facts.flaps == "none"):
                 return "unneeded", name
@@ -164,8 +164,7 @@ class Resolver:
     @staticmethod
     def _must(row: Derivation, name: str, optional: bool) -> bool:
         """A quantity that a limit's rows ask for is needed, unless the row says what its lack means."""
-        asked = name.startswith("limit_") or name == "manoeuvring_over"
-        return not optional or (asked and name not in row.without)
+        return not optional or (_aliased(name) and name not in row.without)
 
     def _attainable(self, without: frozenset[str]) -> frozenset[str]:
         """Everything that can be had when these quantities cannot: grown until nothing is added."""
@@ -206,6 +205,11 @@ class Resolver:
         row = QUANTITIES.get(name)
         start = "not recorded, and cannot be derived: " if row is None or row.recorded else ""
         return start + "; ".join(dict.fromkeys(fewest))
+
+
+def _aliased(name: str) -> bool:
+    """Does a parameter stand for whatever quantity the aeroplane's tables ask for?"""
+    return name.startswith(("limit_", "error_")) or name == "manoeuvring_over"
 
 
 def base_name(name: str) -> str:

@@ -79,7 +79,7 @@ DERIVATIONS: tuple[Derivation, ...] = (
     # airspeed
     Derivation("calibrated_airspeed", corrections.calibrated_from_indicated, "position error table", "DEFINITION",
                main=("indicated_airspeed",),
-               without={"flap_angle": "flaps not recorded: position error of the clean row"}),
+               without={"error_flap_angle": "flaps not recorded: position error of the clean row"}),
     Derivation("calibrated_airspeed", methods.calibrated_taken_as_indicated, "indicated airspeed", "COMMON-PRACTICE",
                assumes="no position error given: calibrated airspeed taken as indicated", uncertainty=_SYSTEM_ERROR),
     Derivation("calibrated_airspeed", airspeed.calibrated_airspeed_from_impact_pressure, "impact pressure",
@@ -92,7 +92,7 @@ DERIVATIONS: tuple[Derivation, ...] = (
                "PITOT-STATIC"),
     Derivation("indicated_airspeed", corrections.indicated_from_calibrated, "position error table", "DEFINITION",
                main=("calibrated_airspeed",),
-               without={"flap_angle": "flaps not recorded: position error of the clean row"}),
+               without={"error_flap_angle": "flaps not recorded: position error of the clean row"}),
     Derivation("indicated_airspeed", methods.indicated_taken_as_calibrated, "calibrated airspeed", "COMMON-PRACTICE",
                assumes="no position error given: indicated airspeed taken as calibrated", uncertainty=_SYSTEM_ERROR),
     Derivation("mach", methods.mach_from_pressures, "recorded pressures", "PITOT-STATIC"),
