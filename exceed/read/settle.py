@@ -43,7 +43,8 @@ def placed(raw: RawChannel, time: Instants) -> RawChannel:
     rows: Index | None = None
     if time.fold != raw.fold:
         rows = np.arange(0, len(time.time), time.fold // raw.fold, dtype=np.int64)
-    filled = np.isfinite(values)
+    # an infinite figure is no blank: it is rejected with its reason later
+    filled = ~np.isnan(values)
     missing = len(values) - int(np.count_nonzero(filled))
     if missing:
         keep = np.flatnonzero(filled)
