@@ -53,7 +53,10 @@ def cap_at_possible(probability: float) -> float:
 def shortest_sized(interval: float) -> float:
     """The shortest excursion, s from base to base, whose peak a channel of this sampling interval (s) can size.
 
-    Four intervals. On simulated raised cosines and half sines SHORTEST_TABLE
+    Four intervals. On simulated raised cosines and half sines sampled at 8 Hz, 2, 3, 4 and 6 intervals long, the sample
+    under-reads by 20, 9, 5 and 2 % of the height (rms), the estimate errs by 16, 4, 1 and 0.4 %, and the interval's
+    half-width is 61, 36, 13 and 4 %: from four on a peak is sized, below it is bounded at best (`shortest_table` in
+    tests/judge/yardstick.py).
     """
     return INTERVALS_TO_SIZE * interval
 
@@ -143,12 +146,13 @@ def highest(peaks: Sequence[Peak]) -> Peak:
     if not peaks or len({p.side for p in peaks}) != 1:
         raise ValueError("one or more peaks of one side are needed")
     side = peaks[0].side
-    first = max(peaks, key=lambda p: side * p.recorded)
+    place = max(range(len(peaks)), key=lambda i: side * peaks[i].recorded)
+    first = peaks[place]
     is_open = [p for p in peaks if p.low is None or p.high is None]
     if is_open:
         return max(is_open, key=lambda p: side * p.recorded)
     first_ends = _ends(first, False)
-    rivals = [e for p in peaks if p is not first and (e := _ends(p, False))[-1] > first_ends[1]]
+    rivals = [e for i, p in enumerate(peaks) if i != place and (e := _ends(p, False))[-1] > first_ends[1]]
     if not rivals:
         return first
     every = [first_ends, *rivals]

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from exceed.judge import peaks
-from exceed.judge.peaks import Peak, size_peak
+from exceed.judge.certainty import Peak, is_undecided, probability_beyond, size_peak, upward_room, white_noise
 
 FINE = 200.0  # Hz, rate of the truth
 
@@ -334,3 +334,169 @@ def fit_factors(cases: int = 400, rates: tuple[float, ...] = (8.0, 4.0, 2.0, 1.0
         needed = [np.quantile(p[3] / np.maximum(p[0] @ factors[name], 1e-12), quantile) for p in parts]
         factors[name] = factors[name] * float(np.median(needed))
     return factors
+
+
+# --- what the tests and the documentation measure ---------------------------------------------------------------------
+
+
+def inside(peak: Peak, true: float) -> bool:
+    """Whether the interval holds the truth; an open end holds everything on its side."""
+    return (peak.low is None or peak.low <= true) and (peak.high is None or true <= peak.high)
+
+
+def half_width(peak: Peak) -> float:
+    return float("nan") if peak.low is None or peak.high is None else 0.5 * (peak.high - peak.low)
+
+
+@dataclass(frozen=True)
+class Coverage:
+    family: str
+    rate: float
+    cases: int
+    sized: float
+    covered: float  # of all; an open end covers
+    covered_sized: float  # of those sized
+    beyond: float  # of those sized: the truth lay outside on the far side
+    event_covered: float  # of those sized: the truth of the whole excursion
+    width: float  # median half-width of those sized, g
+    raw: float  # rms error of the sample, g
+    estimate: float  # rms error of the estimate, g
+
+
+def coverage(family: str, rate: float, cases: int, *, noise_known: bool = True, seeds: int = CHECK_SEEDS) -> Coverage:
+    every = [record(family, rate, seeds + k) for k in range(cases)]
+    sizes = [size(c, noise_known=noise_known) for c in every]
+    pairs = list(zip(sizes, every, strict=True))
+    sized = [(p, c) for p, c in pairs if p.sized]
+
+    def share(of: list[tuple[Peak, Case]], test: Callable[[Peak, Case], bool]) -> float:
+        return sum(test(p, c) for p, c in of) / max(len(of), 1)
+
+    def beyond(p: Peak, c: Case) -> bool:
+        return c.true_peak > (p.high or 0.0) if c.side > 0 else c.true_peak < (p.low or 0.0)
+
+    # the sensor's common error is no error of the estimate, so it is taken out of both
+    raw = [c.values[c.index] - c.bias - c.true_peak for _, c in sized]
+    error = [p.estimate - c.bias - c.true_peak for p, c in sized]
+    return Coverage(
+        family,
+        rate,
+        cases,
+        len(sized) / cases,
+        share(pairs, lambda p, c: inside(p, c.true_peak)),
+        share(sized, lambda p, c: inside(p, c.true_peak)),
+        share(sized, beyond),
+        share(sized, lambda p, c: inside(p, c.true_event)),
+        float(np.median([half_width(p) for p, _ in sized])) if sized else float("nan"),
+        float(np.sqrt(np.mean(np.square(raw)))) if raw else float("nan"),
+        float(np.sqrt(np.mean(np.square(error)))) if error else float("nan"),
+    )
+
+
+def calibration(rates: tuple[float, ...], cases: int, *, families: tuple[str, ...] = CHECK) -> np.ndarray:
+    """(10, 4): for each tenth of stated probability the number of levels, their mean probability, how often the truth
+    was beyond, and how far apart these are. Levels lie at random in the interval of each sized peak."""
+    stated, seen = [], []
+    for family in families:
+        for rate in rates:
+            for k in range(cases):
+                c = record(family, rate, CHECK_SEEDS + k)
+                p = size(c)
+                if not p.sized:
+                    continue
+                for shift in np.random.default_rng([k, int(rate)]).uniform(-1, 1, size=3):
+                    level = p.estimate + shift * half_width(p)
+                    stated.append(probability_beyond(p, level))
+                    seen.append(c.side * (c.true_peak - level) > 0)
+    p_all, o_all = np.array(stated), np.array(seen)
+    tenth = np.minimum((p_all * 10).astype(int), 9)
+    rows = []
+    for k in range(10):
+        m = tenth == k
+        rows.append(
+            (m.sum(), p_all[m].mean(), o_all[m].mean(), o_all[m].mean() - p_all[m].mean()) if m.any() else (0, 0, 0, 0)
+        )
+    return np.array(rows)
+
+
+def calm_stretch(seconds: float, rng: np.random.Generator, gusts: float = 0.0) -> tuple[np.ndarray, np.ndarray]:
+    """Time and true load factor of touring flight: a turn every two minutes, mostly moderate, every third one to
+    between 3.3 and 3.7 g, in air that gusts with the given standard deviation (g)."""
+    t = np.arange(0.0, seconds, 1 / FINE)
+    x = 1.0 + 0.02 * np.sin(2 * np.pi * t / 40.0)
+    if gusts:
+        x = x + gusts * _coloured(t.size, lambda f: (1 + (f / 0.3) ** 2) ** -1.3 / (1 + (f / 6) ** 2), rng)
+    for start in np.arange(10.0, seconds - 110.0, 115.0):
+        ramp = rng.uniform(1.5, 4.0)
+        length = rng.uniform(2 * ramp, 40.0)
+        rise = rng.uniform(2.3, 2.7) if rng.random() < 1 / 3 else rng.uniform(0.2, 2.3)
+        middle = start + 25.0 + rng.uniform(0, 40)
+        s = np.clip((length / 2 - np.abs(t - middle)) / ramp, 0, 1)
+        x = x + rise * s * s * (3 - 2 * s)
+    return t, x
+
+
+def undecided_per_hour(
+    rate: float, gusts: float, hours: float, *, limit: float = 3.8, seed: int = 3
+) -> tuple[float, float]:
+    """Undecided stretches and calls of `size_peak` per flight hour of calm flight, for a sensor of 0.05 g."""
+    rng = np.random.default_rng([seed, int(rate * 100), int(gusts * 1000)])
+    interval, uncertainty, noise, resolution = 1 / rate, 0.05 / 1.96, 0.008, 0.01
+    found, calls, piece = 0, 0, 600.0
+    for _ in range(round(hours * 3600 / piece)):
+        t, x = calm_stretch(piece, rng, gusts)
+        time = np.arange(rng.random() * interval, piece - 1.0, interval)
+        seen = np.interp(time, t, x) + rng.normal() * uncertainty + noise * rng.normal(size=time.size)
+        seen = np.round(seen / resolution) * resolution
+        measured = min(white_noise(seen), uncertainty)
+        room = upward_room(
+            time, seen, 1, interval=interval, noise=measured, resolution=resolution, standard_uncertainty=uncertainty
+        )
+        top = np.r_[False, (seen[1:-1] >= seen[:-2]) & (seen[1:-1] > seen[2:]), False]
+        beyond, last = time[seen > limit], -np.inf
+        for i in np.flatnonzero(top & (seen <= limit) & (seen + room > limit)):
+            a, b = max(0, i - peaks.HALO), min(time.size, i + peaks.HALO + 1)
+            calls += 1
+            p = size_peak(
+                time[a:b], seen[a:b], 1, int(i - a), standard_uncertainty=uncertainty, interval=interval,
+                resolution=resolution, noise=measured,
+            )  # fmt: skip
+            # within a second of a sample beyond the limit it belongs to that event
+            if is_undecided(p, limit) and not np.any(np.abs(beyond - time[i]) < 1.0):
+                found += time[i] - last > 1.0
+                last = time[i]
+    return float(found / hours), calls / hours
+
+
+def shortest_table(rate: float = 8.0, cases: int = 200) -> dict[float, tuple[float, float, float]]:
+    """For excursions of so many intervals from base to base (raised cosine and half sine): rms under-read of the
+    sample, rms error of the estimate, and median half-width, all in parts of the height."""
+    rows = {}
+    for intervals in (1.5, 2.0, 3.0, 4.0, 6.0, 8.0):
+        raw, error, width = [], [], []
+        for k in range(cases):
+            rng = np.random.default_rng([k, int(intervals * 10)])
+            t = np.arange(-5.0, 5.0, 1 / 2000)
+            shape = (raised_cosine, half_sine)[k % 2]
+            x = 1.0 + 3.0 * shape(t, intervals / rate, rng)
+            time = np.arange(-4.0 + rng.random() / rate, 4.0, 1 / rate)
+            seen = np.interp(time, t, x) + 0.005 * rng.normal(size=time.size)
+            i = int(np.argmax(seen))
+            p = size_peak(
+                time[i - 8 : i + 9],
+                seen[i - 8 : i + 9],
+                1,
+                8,
+                standard_uncertainty=0.0025,
+                interval=1 / rate,
+                noise=0.005,
+            )
+            raw.append((seen[i] - x.max()) / 3.0)
+            error.append((p.estimate - x.max()) / 3.0)
+            width.append(half_width(p) / 3.0)
+        rows[intervals] = (
+            float(np.sqrt(np.mean(np.square(raw)))),
+            float(np.sqrt(np.mean(np.square(error)))),
+            float(np.nanmedian(width)),
+        )
+    return rows
