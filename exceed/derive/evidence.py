@@ -140,9 +140,11 @@ def contradicted(stretches: list[Stretch], signals: Signals, limits: Thresholds 
     if signals.height is not None and signals.climb is not None:
         still &= np.abs(np.nan_to_num(signals.climb, nan=99.0)) < 0.3
     step = coarse.step
-    wrong = float(np.sum(step[fast & ~air]) + np.sum(step[still & air]))
-    right = float(np.sum(step[fast & air]) + np.sum(step[still & ~air]))
-    return wrong > 60.0 and wrong > right
+    for says, truly in ((fast, air), (still, ~air)):
+        wrong, right = float(np.sum(step[says & ~truly])), float(np.sum(step[says & truly]))
+        if wrong > 60.0 and wrong > right:
+            return True
+    return False
 
 
 def air_by_speed(signals: Signals, limits: Thresholds, notes: list[str]) -> list[Stretch]:

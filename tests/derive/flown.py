@@ -38,7 +38,8 @@ recorder:
   accelerometer: {position: [0.35 m, 0 m, -0.1 m]}
   accuracy: {load_factor: 0.05 g, indicated_airspeed: 2 kt}
 loading:
-  stations: {pilot: {arm: 1.12 m}, passenger: {arm: 1.12 m}, baggage: {arm: 1.8 m}, main_fuel: {arm: 0.9 m, density: 0.72 kg/L}}
+  stations:
+    {pilot: {arm: 1.12 m}, passenger: {arm: 1.12 m}, baggage: {arm: 1.8 m}, main_fuel: {arm: 0.9 m, density: 0.72 kg/L}}
   empty_arm: 0.98 m
   envelope: [[640 kg, 0.90 m, 1.10 m], [960 kg, 0.96 m, 1.10 m]]
 fuel_consumption: 40 L/h

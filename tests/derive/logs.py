@@ -46,8 +46,8 @@ def channel_of(name: str, values, rows=None, axis=None, **more) -> Channel:
     values = np.asarray(values, dtype=np.float64)
     time = np.arange(len(values), dtype=float) if axis is None else (axis if rows is None else axis[rows])
     row = QUANTITIES.get(name)
-    return Channel(name, name.upper(), frozen(values.copy()), rows, median_interval(time), unit=row.shown if row else "",
-                   discrete=name in STATES, **more)  # fmt: skip
+    about = {"unit": row.shown if row else "", "discrete": name in STATES} | more
+    return Channel(name, name.upper(), frozen(values.copy()), rows, median_interval(time), **about)
 
 
 def make(time, channels: Mapping[str, Channel], clock: float | None = None, path: str = "log.csv", **more) -> Recording:
