@@ -7,6 +7,7 @@ from typing import Annotated, Any, ClassVar, Literal
 from pydantic import Field, model_validator
 
 from exceed.core.quantities import QUANTITIES, nearest_quantity
+from exceed.documents.facts import flaps_in_order
 from exceed.documents.fields import (
     Airspeed,
     Angle,
@@ -195,7 +196,7 @@ class SpeedLimit(Model):
     @model_validator(mode="after")
     def _one_form(self) -> SpeedLimit:
         found = Faults()
-        if self.value is None and not self.points:
+        if self.value is None and not self.points and self.over is None:
             found.note((), "neither a value nor points are given", "a speed, or 'over' and 'points'", "add them")
         if self.value is not None and self.points:
             found.note(("points",), "both a value and points are given", "one of them", "remove one")
@@ -299,14 +300,9 @@ class Speeds(Model):
         rows = self.flaps_extended
         for index in range(1, len(rows)):
             here, before = rows[index], rows[index - 1]
-            if here.flaps is None or before.flaps is None or not here.flaps > before.flaps:
-                found.note(
-                    ("flaps_extended", index),
-                    f"flaps '{here.flaps}' are not above '{before.flaps}' before them",
-                    "rows in ascending order of flaps",
-                    "put the rows in order, each setting once",
-                )
-            elif here.maximum > before.maximum and here.maximum.airspeed == before.maximum.airspeed:
+            flaps_in_order(here.flaps, before.flaps, found, ("flaps_extended", index))
+            ordered = here.flaps is not None and before.flaps is not None and here.flaps > before.flaps
+            if ordered and here.maximum > before.maximum and here.maximum.airspeed == before.maximum.airspeed:
                 found.note(
                     ("flaps_extended", index, "maximum"),
                     f"'{here.maximum}' with more flaps is above '{before.maximum}' with fewer",

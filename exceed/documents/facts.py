@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from exceed.core.quantities import QUANTITIES
-from exceed.documents.fields import Faults, an, nearest
+from exceed.documents.fields import Faults, Path, an, nearest
 from exceed.documents.values import Value, expected_of
 
 if TYPE_CHECKING:
@@ -122,6 +122,27 @@ def look_up(aircraft: Aircraft, name: str) -> Fact:
     return Fact(full, kind, value, getattr(value, "airspeed", None), **about)
 
 
+_UP = Value(0.0, "angle", "deg", "flaps up")
+
+
+def flaps_in_order(here: Value | None, before: Value | None, found: Faults, path: Path) -> None:
+    """Note a row whose flap setting does not come after that of the row before."""
+    if here is None or before is None:
+        found.note(
+            path,
+            "a row for all flap settings stands beside another row",
+            "one row, or 'flaps' in each row",
+            "say which setting each row is for",
+        )
+    elif not here > before:
+        found.note(
+            path,
+            f"flaps '{here}' are not above '{before}' before them",
+            "rows in ascending order of flaps",
+            "put the rows in order, each setting once",
+        )
+
+
 def contradictions(aircraft: Aircraft) -> Faults:
     """What cannot be true together; each at its path in the file."""
     found = Faults()
@@ -165,14 +186,7 @@ def contradictions(aircraft: Aircraft) -> Faults:
     _named_limits(aircraft, found)
     settings = [row.flaps for row in aircraft.position_error]
     for index in range(1, len(settings)):
-        here, before = settings[index], settings[index - 1]
-        if here is None or before is None or not here > before:
-            found.note(
-                ("position_error", index),
-                f"flaps '{here}' are not above '{before}' before them",
-                "rows in ascending order of flaps",
-                "put the rows in order, each setting once",
-            )
+        flaps_in_order(settings[index], settings[index - 1], found, ("position_error", index))
     return found
 
 
@@ -181,13 +195,7 @@ def _stall_rows(aircraft: Aircraft, found: Faults) -> None:
     for index in range(1, len(rows)):
         here, before = rows[index], rows[index - 1]
         flaps, flaps_before = here.flaps or 0.0, before.flaps or 0.0
-        if flaps < flaps_before or (flaps == flaps_before and here.mass == before.mass):
-            found.note(
-                ("stall_speed", index),
-                f"flaps '{here.flaps}' are not above '{before.flaps}' before them",
-                "rows in ascending order of flaps",
-                "put the rows in order, each setting once",
-            )
+        flaps_in_order(here.flaps, before.flaps or _UP, found, ("stall_speed", index))
         same = here.upright.airspeed == before.upright.airspeed and here.mass == before.mass
         if flaps > flaps_before and same and here.upright > before.upright:
             found.note(
