@@ -143,7 +143,8 @@ def _ready(
         count=None if rule.count is None else (rule.count.at_least, *_span(rule.count.within)),
         total=None if rule.total is None else (float(rule.total.above), *_span(rule.total.within)),
         must_see=None if rule.must_see is None else float(rule.must_see),
-        judge_on=rule.judge_on,
+        # a difference of two samples has no smooth curve between them to estimate a peak from
+        judge_on="sample" if rule.rate else rule.judge_on,
         magnitude=magnitude,
         discrete=side == "is" or row.discrete,
         task=_task(rule),
