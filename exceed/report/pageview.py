@@ -293,7 +293,8 @@ class View:
         """The day in two or three sentences."""
         totals = self.summary["totals"]
         events = totals["events"]
-        said = [f"{events[severity]} {severity}" for severity in ("warning", "caution", "advisory") if events[severity]]
+        names = (("warning", None), ("caution", None), ("advisory", "advisories"))
+        said = [count(events[one], one, more) for one, more in names if events[one]]
         read = totals["recordings"] - totals["failed"]
         if not read:
             return ["No log could be read, so nothing was assessed."]

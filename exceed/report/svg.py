@@ -127,9 +127,10 @@ def samples(
     parts = _axes(x_of, y_of, (left, right, top, bottom), form)
     levels.sort(key=lambda level: -level[1])
     spots = _spread([y_of(value) - 3.0 for _, value in levels], 12.0, top, bottom)
-    for (severity, value), spot in zip(levels, spots, strict=True):
+    for severity, value in levels:
         y = y_of(value)
         parts.append(f'<line class="level {severity}" x1="{left}" x2="{right}" y1="{y:.1f}" y2="{y:.1f}"/>')
+    for (severity, _), spot in zip(levels, spots, strict=True):
         parts.append(f'<text class="small halo" x="{right}" y="{spot:.1f}" text-anchor="end">{severity}</text>')
     if limit is not None:
         parts.append(_path("limit-line", limit[0], _convert(form, limit[1]), x_of, y_of))

@@ -2,6 +2,8 @@
   "use strict";
   var figures = JSON.parse(document.getElementById("plot-data").textContent);
   var scheme = window.matchMedia("(prefers-color-scheme: dark)");
+  // what an A4 sheet has between its margins, in CSS pixels
+  var PAPER = 660;
   var names = ["ink", "soft", "rule", "paper", "line", "density0", "density1", "series0", "series1", "series2", "series3"];
 
   function palette() {
@@ -24,14 +26,15 @@
     return node;
   }
 
-  function draw(place) {
+  function draw(place, paper) {
     var figure = figures[place.dataset.plot];
     if (!figure || typeof Plotly === "undefined") { return; }
     var colours = palette(), copy = inked(figure, colours), layout = copy.layout;
     layout.paper_bgcolor = "rgba(0,0,0,0)";
     layout.plot_bgcolor = "rgba(0,0,0,0)";
     layout.font = { color: colours.ink, family: getComputedStyle(document.body).fontFamily, size: 12 };
-    layout.autosize = true;
+    layout.autosize = !paper;
+    if (paper) { layout.width = PAPER; }
     Object.keys(layout).forEach(function (key) {
       if (/^[xy]axis/.test(key)) {
         layout[key] = Object.assign({ gridcolor: colours.rule, zerolinecolor: colours.soft, linecolor: colours.soft, automargin: true }, layout[key]);
@@ -46,19 +49,19 @@
   if ("IntersectionObserver" in window) {
     var watcher = new IntersectionObserver(function (entries) {
       entries.forEach(function (entry) {
-        if (entry.isIntersecting) { watcher.unobserve(entry.target); draw(entry.target); }
+        if (entry.isIntersecting) { watcher.unobserve(entry.target); draw(entry.target, false); }
       });
     }, { rootMargin: "300px" });
     places.forEach(function (place) { watcher.observe(place); });
   } else {
-    places.forEach(draw);
+    places.forEach(function (place) { draw(place, false); });
   }
 
-  function again() { places.forEach(function (place) { if (place.dataset.drawn) { draw(place); } }); }
+  function again() { places.forEach(function (place) { if (place.dataset.drawn) { draw(place, false); } }); }
   if (scheme.addEventListener) { scheme.addEventListener("change", again); }
   // figures that were not yet in sight are printed too; those folded away are not
   window.addEventListener("beforeprint", function () {
-    places.forEach(function (place) { if (!place.closest("details")) { draw(place); } });
+    places.forEach(function (place) { if (!place.closest("details")) { draw(place, true); } });
   });
   window.addEventListener("afterprint", again);
 })();
