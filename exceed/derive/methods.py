@@ -10,7 +10,7 @@ import numpy as np
 
 from exceed.core.constants import EARTH_RADIUS, STANDARD_GRAVITY
 from exceed.core.recording import Array
-from exceed.physics import airspeed, atmosphere, kinematics, smoothing
+from exceed.physics import airspeed, atmosphere, kinematics, smoothing, turning
 
 
 def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
@@ -195,7 +195,7 @@ def load_factor_from_path_and_turn(
     time: Array,
     true_airspeed: Array,
     vertical_speed: Array,
-    bank_angle: Array,
+    recorded_bank_angle: Array,
     turn_rate: Array,
     width: float,
     max_gap: float,
@@ -206,27 +206,43 @@ def load_factor_from_path_and_turn(
     """
     up, level = _path(time, true_airspeed, vertical_speed, width, max_gap)
     side = true_airspeed * turn_rate * level / STANDARD_GRAVITY
-    return up * np.cos(bank_angle) + side * np.sin(bank_angle)
+    return up * np.cos(recorded_bank_angle) + side * np.sin(recorded_bank_angle)
 
 
 def load_factor_from_path_and_bank(
-    time: Array, true_airspeed: Array, vertical_speed: Array, bank_angle: Array, width: float, max_gap: float
+    time: Array, true_airspeed: Array, vertical_speed: Array, recorded_bank_angle: Array, width: float, max_gap: float
 ) -> Array:
-    """As `kinematics.load_factor_from_flight_path`: n = (V dγ/g + cos γ) / cos Φ, NaN near a knife edge."""
+    """n = (V dγ/g + cos γ) / cos Φ; NaN within 15 degrees of a knife edge, where the vertical says little.
+
+    Source: [FLIGHT-PATH].
+    """
     up, _ = _path(time, true_airspeed, vertical_speed, width, max_gap)
-    cosine = np.cos(bank_angle)
+    cosine = np.cos(recorded_bank_angle)
     with np.errstate(invalid="ignore", divide="ignore"):
-        return np.where(np.abs(cosine) >= np.cos(np.radians(85.0)), up / cosine, np.nan)
+        return np.where(np.abs(cosine) >= np.sin(np.radians(15.0)), up / cosine, np.nan)
 
 
 def load_factor_from_path(
     time: Array, true_airspeed: Array, vertical_speed: Array, turn_rate: Array, width: float, max_gap: float
 ) -> Array:
-    """Size from the path alone, with the sign of its upward part. Source: [FLIGHT-PATH]."""
+    """Size from the path alone, with the sign of its upward part; NaN where the path is steeper than 60 degrees, since
+    heading swings round at the vertical. Source: [FLIGHT-PATH].
+    """
     up, level = _path(time, true_airspeed, vertical_speed, width, max_gap)
     side = true_airspeed * turn_rate * level / STANDARD_GRAVITY
     # near weightlessness the side part is all noise of the turn rate, which no lift could have made
-    return np.sign(up) * np.hypot(up, np.where(np.abs(up) > 0.5, side, 0.0))
+    size = np.sign(up) * np.hypot(up, np.where(np.abs(up) > 0.5, side, 0.0))
+    return np.where(level >= 0.5, size, np.nan)
+
+
+def load_factor_level_turn(time: Array, bank_angle: Array, width: float, max_gap: float) -> Array:
+    """1 / cos Φ while the bank is held; NaN while rolling faster than 10 deg/s, for a roll is no level turn.
+
+    Source: [LEVEL-TURN].
+    """
+    with np.errstate(invalid="ignore"):
+        held = np.abs(angle_slope(time, bank_angle, width, max_gap)) <= np.radians(10.0)
+    return np.where(held, turning.load_factor_level_turn(bank_angle), np.nan)
 
 
 def load_factor_wings_level(time: Array, vertical_speed: Array, width: float, max_gap: float) -> Array:

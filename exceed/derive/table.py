@@ -38,6 +38,12 @@ def _quick(*names: str) -> Callable[[Mapping[str, float]], str | None]:
     return check
 
 
+def _turning(intervals: Mapping[str, float]) -> str | None:
+    """The rows' condition that the turn is seen, not worked out from the bank."""
+    seen = {"turn_rate", "heading", "track_angle"} & set(intervals) or {"latitude", "longitude"} <= set(intervals)
+    return None if seen else "no heading and no track"
+
+
 @dataclass(frozen=True, slots=True)
 class Derivation:
     """One way to one quantity.
@@ -159,16 +165,15 @@ DERIVATIONS: tuple[Derivation, ...] = (
     # load factor
     Derivation("load_factor", methods.load_factor_moved, "accelerometer moved to the centre of gravity", "RIGID-BODY",
                corrects=True, when=_quick("load_factor", *_RATES), main=("recorded_load_factor",)),
+    # their own uncertainties: root mean square against the flight model in aerobatics, at one sample a second
     Derivation("load_factor", methods.load_factor_from_path_and_turn, "attitude and flight path", "FLIGHT-PATH",
-               width=1.0,
-               assumes="coordinated flight in still air", uncertainty=0.1),
-    Derivation("load_factor", methods.load_factor_from_path, "flight path", "FLIGHT-PATH", width=1.0,
-               assumes="upright coordinated flight in still air", uncertainty=0.15),
+               width=1.0, assumes="coordinated flight in still air", uncertainty=0.2, when=_turning),
     Derivation("load_factor", methods.load_factor_from_path_and_bank, "flight path and bank", "FLIGHT-PATH", width=1.0,
-               assumes="coordinated flight in still air", uncertainty=0.15),
-    Derivation("load_factor", turning.load_factor_level_turn, "level turn", "LEVEL-TURN",
-               assumes="level coordinated turn",
-               uncertainty=0.05, one_sided=True, cap=POSSIBLE),
+               assumes="coordinated flight in still air", uncertainty=0.25),
+    Derivation("load_factor", methods.load_factor_from_path, "flight path", "FLIGHT-PATH", width=1.0,
+               assumes="upright coordinated flight in still air", uncertainty=0.35, when=_turning, cap=POSSIBLE),
+    Derivation("load_factor", methods.load_factor_level_turn, "level turn", "LEVEL-TURN", width=0.5,
+               assumes="level coordinated turn", uncertainty=0.05, one_sided=True, cap=POSSIBLE),
     Derivation("load_factor", methods.load_factor_wings_level, "vertical acceleration", "FLIGHT-PATH", width=1.0,
                assumes="wings level: turns are not seen", uncertainty=0.15, one_sided=True, cap=POSSIBLE),
     # mass
