@@ -17,7 +17,7 @@ from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Recording
 from exceed.core.trace import Trace
 from exceed.derive.plan import build_trace, needed_channels
-from exceed.documents.aircraft import same_registration
+from exceed.documents.aircraft import Aircraft, same_registration
 from exceed.documents.fleet import belongs
 from exceed.errors import ExceedError, LogError, Problem
 from exceed.judge.compile import compile_rule
@@ -141,7 +141,7 @@ def assign(log: LogPath, run: Run) -> Assigned:
     settings = run.settings
     loaded = run.fleet_of(log.location)
     member = run.default
-    first = survey(log.location, shown=log.shown, channels=member.channels, declared=dict(member.book.quantities))
+    first = survey(log, channels=member.channels, declared=member.book.quantities)
     written = first.registration
     notes: list[str] = []
     if settings.registration and written and not same_registration(settings.registration, written):
@@ -183,7 +183,7 @@ def assign(log: LogPath, run: Run) -> Assigned:
             )
         registration = registration or own.registration
     if member is not run.default and (member.channels or member.book.quantities):
-        first = survey(log.location, shown=log.shown, channels=member.channels, declared=dict(member.book.quantities))
+        first = survey(log, channels=member.channels, declared=member.book.quantities)
     if registration is None:
         notes.append("no registration: neither the log nor its recorder's serial nor the fleet file says whose it is")
     return Assigned(member, registration, first, tuple(notes))
@@ -213,11 +213,21 @@ def read(assigned: Assigned, names: Iterable[str] | None) -> Recording:
     """The recording, with no more columns than these quantities need (None: all)."""
     found = assigned.survey
     aircraft = assigned.member.aircraft
+    ranges = sensor_ranges(aircraft)
     if names is None:
-        return load(found, None, aircraft=aircraft)
+        return load(found, None, ranges=ranges)
     available = set(found.quantities)
     needed = needed_channels(_indexed(names, available), available, aircraft)
-    return load(found, needed, aircraft=aircraft)
+    return load(found, needed, ranges=ranges)
+
+
+def sensor_ranges(aircraft: Aircraft | None) -> dict[str, tuple[float, float]]:
+    """The ends of the sensors' ranges that the aircraft file states, SI: at them a reading means at least."""
+    sensor = aircraft.recorder.accelerometer if aircraft is not None else None
+    if sensor is None or not sensor.range:
+        return {}
+    low, high = sensor.range
+    return {"load_factor": (float(low), float(high))}
 
 
 def _indexed(names: Iterable[str], available: set[str]) -> list[str]:
