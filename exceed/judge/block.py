@@ -129,6 +129,35 @@ class Block:
         return self._keep("flight", find)  # type: ignore[no-any-return]
 
     @property
+    def flight_edges(self) -> Mask:
+        """(n,) the first sample of a flight, and the first after one."""
+
+        def find() -> Mask:
+            edges = np.zeros(len(self.time), dtype=bool)
+            flight = self.flight
+            edges[1:] = flight[1:] != flight[:-1]
+            return edges
+
+        return self._keep("flight edges", find)  # type: ignore[no-any-return]
+
+    @property
+    def flight_parts(self) -> list[tuple[int, slice]]:
+        """(number, part of the core) for each flight that has a sample in the core."""
+
+        def find() -> list[tuple[int, slice]]:
+            time = self.time[self.core]
+            parts = []
+            for flight in self.trace.track.flights:
+                if len(time) and flight.end >= time[0] and flight.start <= time[-1]:
+                    low = int(np.searchsorted(time, flight.start, side="left"))
+                    high = int(np.searchsorted(time, flight.end, side="right"))
+                    if high > low:
+                        parts.append((flight.number, slice(low, high)))
+            return parts
+
+        return self._keep("flight parts", find)  # type: ignore[no-any-return]
+
+    @property
     def shares(self) -> Array:
         """(n, ) seconds that each sample of the block owns: half the interval to each neighbour, none of a gap."""
 

@@ -263,13 +263,8 @@ def _count_seconds(
             seconds[RATE] += float(np.sum(slow[part]))
 
     add(0, slice(0, len(shares)))
-    time = block.time[core]
-    for flight in block.trace.track.flights:
-        if len(time) and flight.end >= time[0] and flight.start <= time[-1]:
-            low = int(np.searchsorted(time, flight.start, side="left"))
-            high = int(np.searchsorted(time, flight.end, side="right"))
-            if high > low:
-                add(flight.number, slice(low, high))
+    for number, part in block.flight_parts:
+        add(number, part)
 
 
 def _why_lost(rule: Compiled, block: Block) -> tuple[Mask, Mask]:
@@ -296,23 +291,16 @@ def _find_breaks(scan: RuleScan, rule: Compiled, block: Block, known: Mask, live
     """Places that joining must not span. Only needed near stretches, so blocks without any are left out."""
     if rule.joining <= 0.0 and rule.release <= 0.0 and rule.release_share is None:
         return
-    core = block.core
-    index = np.flatnonzero(known)
-    time = block.time[index]
-    apart = np.zeros(len(index), dtype=bool)
-    apart[1:] = np.diff(time) > block.gap
-    at = index[apart]
-    false = np.flatnonzero(known & ~live)
-    flight = block.flight
-    change = np.flatnonzero(flight[1:] != flight[:-1]) + 1
-    places = np.unique(np.concatenate([at, false, change]))
-    places = places[(places >= core.start) & (places < core.stop)]
-    if len(places) > 2:
-        # of a long run of places only the first and the last part anything
-        inner = np.zeros(len(places), dtype=bool)
-        inner[1:-1] = (places[1:-1] - places[:-2] == 1) & (places[2:] - places[1:-1] == 1)
-        places = places[~inner]
-    scan.breaks.append(places + block.offset)
+    parts = block.flight_edges.copy()
+    false = known & ~live
+    parts[1:] |= false[1:] & ~false[:-1]
+    if known.all():
+        parts[1:] |= ~block.linked
+    else:
+        # a lost sample is stepped over, as far as that makes no gap
+        index = np.flatnonzero(known)
+        parts[index[1:][np.diff(block.time[index]) > block.gap]] = True
+    scan.breaks.append(np.flatnonzero(parts[block.core]) + block.core.start + block.offset)
 
 
 def _find_candidates(scan: RuleScan, rule: Compiled, block: Block, live: Mask, value: Array, deciding: Array) -> None:
@@ -380,12 +368,8 @@ def _find_closest(scan: RuleScan, rule: Compiled, block: Block, live: Mask, valu
     if not block.trace.track.flights:
         scan.closest[0] = float(np.max(share))
         return
-    time = block.time[core]
-    for flight in block.trace.track.flights:
-        low = int(np.searchsorted(time, flight.start, side="left"))
-        high = int(np.searchsorted(time, flight.end, side="right"))
-        if high > low:
-            scan.closest[flight.number] = float(np.max(share[low:high]))
+    for number, part in block.flight_parts:
+        scan.closest[number] = float(np.max(share[part]))
 
 
 def scan_extremes(block: Block, names: list[str]) -> ExtremeScan:
@@ -393,21 +377,14 @@ def scan_extremes(block: Block, names: list[str]) -> ExtremeScan:
     found = ExtremeScan()
     core = block.core
     time = block.time[core]
-    flights = block.trace.track.flights
-    spans = [(flight.number, flight.start, flight.end) for flight in flights]
-    if not block.trace.track.known:
-        spans = [(0, -np.inf, np.inf)]
-    for number, start, end in spans:
-        low = int(np.searchsorted(time, start, side="left"))
-        high = int(np.searchsorted(time, end, side="right"))
-        if high <= low:
-            continue
+    parts = block.flight_parts if block.trace.track.known else [(0, slice(0, len(time)))]
+    for number, part in parts:
         for name in names:
-            values = block.values[name][core][low:high]
+            values = block.values[name][core][part]
             most = np.fmax.reduce(values)
             if not np.isfinite(most):
                 continue
             least = np.fmin.reduce(values)
-            found.maxima[number, name] = (float(most), float(time[low + int(np.argmax(values == most))]))
-            found.minima[number, name] = (float(least), float(time[low + int(np.argmax(values == least))]))
+            found.maxima[number, name] = (float(most), float(time[part][int(np.argmax(values == most))]))
+            found.minima[number, name] = (float(least), float(time[part][int(np.argmax(values == least))]))
     return found
