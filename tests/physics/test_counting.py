@@ -33,6 +33,12 @@ def test_rainflow_agrees_with_an_independent_library(history: list[float]) -> No
         assert table(counting.rainflow(history)) == theirs
 
 
+def test_an_equal_range_closes_the_cycle_at_once() -> None:
+    """[ASTM-E1049] counts when X >= Y: 1-4 closes on the way down to 1, as one whole cycle and not as two halves."""
+    cycles = counting.rainflow([0.0, 5.0, 1.0, 4.0, 1.0])
+    assert list(zip(cycles.range.tolist(), cycles.count.tolist(), strict=True)) == [(3, 1), (5, 0.5), (4, 0.5)]
+
+
 def test_two_samples_are_half_a_cycle() -> None:
     assert table(counting.rainflow([0.0, 1.0])) == {1.0: 0.5}
 

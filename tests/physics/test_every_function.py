@@ -22,6 +22,7 @@ MODULES = (
     "atmosphere",
     "airspeed",
     "turning",
+    "axes",
     "kinematics",
     "smoothing",
     "stall",

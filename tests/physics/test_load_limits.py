@@ -107,6 +107,22 @@ def test_a_lighter_rows_speed_does_not_reach_into_the_heavier_row() -> None:
     assert limits(facts, mass=1200, speed=40)[0] == pytest.approx(4.4 * 0.8)
 
 
+def test_a_row_that_lists_the_mass_is_the_manuals_word_on_it() -> None:
+    facts = table({"flaps": 0, "mass": 880, "maximum": 3}, {"mass": 960, "maximum": 4.4})
+    assert limits(facts, mass=850)[0] == 3
+    assert limits(facts, mass=900)[0] == 4.4, "not the lighter row's 3, shrunken"
+    assert limits(facts, mass=1200)[0] == pytest.approx(3 * 880 / 1200), "nobody lists it: the more protective"
+
+
+def test_beyond_the_last_mass_and_speed_it_is_the_last_row_that_holds_not_an_earlier_one() -> None:
+    by_mass = table({"mass": 880, "speed": 50, "maximum": 3}, {"mass": 960, "maximum": 4.4})
+    assert limits(by_mass, mass=1200, speed=40)[0] == pytest.approx(4.4 * 0.8)
+    by_speed = table({"speed": 45, "maximum": 3}, {"speed": 70, "maximum": 4})
+    assert limits(by_speed, speed=90)[0] == 4
+    for_any = table({"speed": 45, "maximum": 3}, {"maximum": 4})
+    assert limits(for_any, speed=90)[0] == 4, "the row for any speed, not the slower row's"
+
+
 @given(st.floats(300, 3000), st.floats(0, 500), st.sampled_from([0.0, 15.0, 30.0, 45.0]))
 def test_more_mass_never_raises_a_limit(mass: float, more: float, flaps: float) -> None:
     light, heavy = limits(AEROBATIC, flaps, mass), limits(AEROBATIC, flaps, mass + more)
