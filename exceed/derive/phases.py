@@ -9,7 +9,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from exceed.core.constants import FOOT
+from exceed.core.constants import FOOT, STANDARD_GRAVITY
 from exceed.core.intervals import Intervals, joined, lasting, normal
 from exceed.core.phases import PHASE_CODE, Flight, PhaseTrack
 from exceed.core.recording import Array
@@ -29,6 +29,7 @@ LEAST_LEG = 15.0  # s: a shorter climb, cruise or descent joins its neighbour
 STEEP_BANK = np.radians(55.0)
 STEEP_PITCH = np.radians(30.0)
 PULLED, PUSHED = 1.8, 0.4  # mean load factor of a second
+PATH_BENT = 0.5 * STANDARD_GRAVITY  # m/s2 of change of vertical speed
 MANOEUVRE_LEAST, MANOEUVRE_JOIN, MANOEUVRE_PAD = 1.5, 30.0, 5.0  # s
 MOVING = 1.0  # m/s over the ground
 AROUND = 120.0  # s before and after a flight that belong to its runs on the ground
@@ -50,7 +51,7 @@ def phases_of(coarse: Coarse, signals: Signals, found: Found) -> tuple[PhaseTrac
         climb = coarse.pick("vertical_speed")
     if climb is None and found.flights:
         notes.append("no height and no vertical speed: phases of the flight cannot be told")
-    manoeuvring, told = _manoeuvring(coarse)
+    manoeuvring, told = _manoeuvring(coarse, climb)
     if not told:
         notes.append("no bank, pitch or load factor: manoeuvring cannot be told")
     for flight in found.flights:
@@ -105,8 +106,8 @@ def _stretches(coarse: Coarse, mask: Mask) -> Intervals:
     return normal(coarse.time[mask], (coarse.time + step)[mask])
 
 
-def _manoeuvring(coarse: Coarse) -> tuple[Mask, bool]:
-    """Aerobatic or steep flying: bank, pitch, or a second's mean load factor beyond what transport takes."""
+def _manoeuvring(coarse: Coarse, climb: Array | None) -> tuple[Mask, bool]:
+    """Aerobatic or steep flying: bank, pitch, a second's mean load factor, or the path's bending over six seconds."""
     marks = np.zeros(len(coarse), dtype=bool)
     told = False
     with np.errstate(invalid="ignore"):
@@ -121,6 +122,8 @@ def _manoeuvring(coarse: Coarse) -> tuple[Mask, bool]:
             mean = coarse.statistics("load_factor").mean
             told |= bool(np.isfinite(mean).any())
             marks |= (mean > PULLED) | (mean < PUSHED)
+        if climb is not None:
+            marks |= np.abs(coarse.slope(climb, 3.0)) > PATH_BENT
     found = lasting(joined(_stretches(coarse, marks), 3.0), MANOEUVRE_LEAST)
     padded = normal(found.start - MANOEUVRE_PAD, found.end + MANOEUVRE_PAD)
     return joined(padded, MANOEUVRE_JOIN).contains(coarse.time), told
