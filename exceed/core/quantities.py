@@ -17,7 +17,8 @@ class Quantity:
 
     `shown` and `metric` are the units of tables and pages, `plausible` its physically possible range in `shown` units,
     `decimals` the digits of tables (JSON adds two). `sort`: continuous, angle (wraps), state (held between samples).
-    `sided`: it has a left and a right, so that a limit without a sign is meant for both.
+    `sided`: it has a left and a right, so that a limit without a sign is meant for both. `momentary`: it exists only at
+    moments (a touchdown, a gust); none elsewhere is no lack.
     """
 
     name: str
@@ -31,6 +32,7 @@ class Quantity:
     sort: str = "continuous"
     sided: bool = False
     recorded: bool = True
+    momentary: bool = False
 
     @property
     def unit(self) -> Unit:
@@ -113,9 +115,9 @@ _ROWS: tuple[Quantity, ...] = (
     Quantity("manoeuvring_speed", "V_A", "speed", "kt", 1, (0.0, 1000.0), "", "km/h", recorded=False),
     Quantity("turn_radius", "r", "length", "m", 0, (0.0, 1e7), recorded=False),
     Quantity("turn_rate", "dχ/dt", "angular rate", "deg/s", 2, (-120.0, 120.0), "to the right", sided=True),
-    Quantity("gust_velocity", "U_de", "speed", "ft/s", 1, (-300.0, 300.0), "up", "m/s", recorded=False),
-    Quantity("touchdown_sink_rate", "", "speed", "ft/min", 0, (-6000.0, 6000.0), "down", "m/s", recorded=False),
-    Quantity("touchdown_load_factor", "", "load factor", "g", 2, (-15.0, 20.0), "up", recorded=False),
+    Quantity("gust_velocity", "U_de", "speed", "ft/s", 1, (-300.0, 300.0), "up", "m/s", recorded=False, momentary=True),
+    Quantity("touchdown_sink_rate", "", "speed", "ft/min", 0, (-6000.0, 6000.0), "down", "m/s", recorded=False, momentary=True),
+    Quantity("touchdown_load_factor", "", "load factor", "g", 2, (-15.0, 20.0), "up", recorded=False, momentary=True),
     Quantity("latitude", "", "angle", "deg", 5, (-90.0, 90.0), "north"),
     Quantity("longitude", "", "angle", "deg", 5, (-360.0, 360.0), "east", sort="angle"),
     Quantity("engine_speed", "", "rotation", "rpm", 0, (0.0, 100000.0)),

@@ -78,7 +78,7 @@ def build_events(
     breaks = np.unique(np.concatenate(scan.breaks)) if scan.breaks else np.empty(0, np.int64)
     whole = joined(released(runs[0], scan.release_band()), rule.joining, breaks)
     places = np.unique(np.concatenate(scan.candidates)) if scan.candidates else np.empty(0, np.int64)
-    stretches = [_stretch(whole, index) for index in range(len(whole))] + _hidden(places, whole, grid)
+    stretches = [_stretch(rule, whole, index) for index in range(len(whole))] + _hidden(places, whole, grid)
     if not stretches:
         return [], []
     events: list[Event] = []
@@ -99,8 +99,8 @@ def build_events(
     return _one_a_place(events, 0.0), _one_a_place(undecided, max(rule.joining, ONE_QUESTION))
 
 
-def _stretch(runs: Runs, index: int) -> Stretch:
-    cuts = [int(runs.cut_start[index]), int(runs.cut_end[index])]
+def _stretch(rule: Compiled, runs: Runs, index: int) -> Stretch:
+    cuts = [] if rule.quantity.momentary else [int(runs.cut_start[index]), int(runs.cut_end[index])]
     cut = CUTS[min((code for code in cuts if code), default=0)]
     start, end = float(runs.start[index]), float(runs.end[index])
     return Stretch(start, end, int(runs.first[index]), int(runs.last[index]), cut)

@@ -153,7 +153,9 @@ def scan_rule(rule: Compiled, block: Block, uncertainty: float = 0.0) -> RuleSca
         known = known & holds_known
     live = known if holds is None else known & holds
 
-    _count_seconds(scan, rule, block, has_value, known, holds, holds_known)
+    # of what exists only at moments, none elsewhere is nothing that was missed
+    lacking = known | ~has_value if rule.quantity.momentary else known
+    _count_seconds(scan, rule, block, has_value, lacking, holds, holds_known)
 
     lowest = rule.excess(value, rule.threshold(rule.levels[0], limit))
     passed = live & (lowest > 0.0)

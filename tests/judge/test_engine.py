@@ -308,6 +308,16 @@ def test_unknown_mass_gives_both_verdicts_and_is_at_most_possible():
     assert "the verdict depends on what is not known: at mass 960 kg: caution; at mass 600 kg: none" in event.notes
 
 
+def test_what_exists_only_at_moments_is_neither_cut_nor_unassessed_elsewhere():
+    time = np.arange(0.0, 60.0, 0.125)
+    sink = np.where((time >= 30) & (time < 30.5), 3.5, np.nan)
+    text = "rules:\n  - id: sink\n    quantity: touchdown_sink_rate\n    limit: 500 ft/min\n    above: {caution: 100 %}\n"
+    found = judge_one(make_trace(time, {"touchdown_sink_rate": sink}), text)
+    (event,) = found.events
+    assert event.cut_by is None
+    assert found.coverage[0].assessed == pytest.approx(59.875)
+
+
 def test_saturation_is_at_least():
     time = np.arange(0.0, 20.0, 0.125)
     n = np.minimum(1 + 6 * np.exp(-(((time - 10) / 1.5) ** 2)), 5.0)
