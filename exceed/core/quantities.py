@@ -57,6 +57,19 @@ def _speed(name: str, symbol: str, **more: object) -> Quantity:
     return Quantity(name, symbol, "speed", "kt", 1, (-5.0, 1500.0), "forward", "km/h", **more)  # type: ignore[arg-type]
 
 
+def _momentary(
+    name: str,
+    symbol: str,
+    kind: str,
+    shown: str,
+    decimals: int,
+    plausible: tuple[float, float],
+    positive: str,
+    metric: str = "",
+) -> Quantity:
+    return Quantity(name, symbol, kind, shown, decimals, plausible, positive, metric, recorded=False, momentary=True)
+
+
 _ROWS: tuple[Quantity, ...] = (
     Quantity("load_factor", "n_z", "load factor", "g", 2, (-15.0, 20.0), "up; +1 in steady level flight"),
     Quantity("longitudinal_load_factor", "n_x", "load factor", "g", 2, (-10.0, 10.0), "forward"),
@@ -115,9 +128,9 @@ _ROWS: tuple[Quantity, ...] = (
     Quantity("manoeuvring_speed", "V_A", "speed", "kt", 1, (0.0, 1000.0), "", "km/h", recorded=False),
     Quantity("turn_radius", "r", "length", "m", 0, (0.0, 1e7), recorded=False),
     Quantity("turn_rate", "dχ/dt", "angular rate", "deg/s", 2, (-120.0, 120.0), "to the right", sided=True),
-    Quantity("gust_velocity", "U_de", "speed", "ft/s", 1, (-300.0, 300.0), "up", "m/s", recorded=False, momentary=True),
-    Quantity("touchdown_sink_rate", "", "speed", "ft/min", 0, (-6000.0, 6000.0), "down", "m/s", recorded=False, momentary=True),
-    Quantity("touchdown_load_factor", "", "load factor", "g", 2, (-15.0, 20.0), "up", recorded=False, momentary=True),
+    _momentary("gust_velocity", "U_de", "speed", "ft/s", 1, (-300.0, 300.0), "up", "m/s"),
+    _momentary("touchdown_sink_rate", "", "speed", "ft/min", 0, (-6000.0, 6000.0), "down", "m/s"),
+    _momentary("touchdown_load_factor", "", "load factor", "g", 2, (-15.0, 20.0), "up"),
     Quantity("latitude", "", "angle", "deg", 5, (-90.0, 90.0), "north"),
     Quantity("longitude", "", "angle", "deg", 5, (-360.0, 360.0), "east", sort="angle"),
     Quantity("engine_speed", "", "rotation", "rpm", 0, (0.0, 100000.0)),
