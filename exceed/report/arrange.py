@@ -53,6 +53,12 @@ def aeroplane(summary: Dict, recording: Dict, screen: Screen) -> str:
     return screen.safe(registration) + kind
 
 
+def limit_source(summary: Dict, recording: Dict) -> str:
+    """Where the limits of a recording's aeroplane come from, as its file has it; empty where none are known."""
+    row = next((row for row in summary["aircraft"] if row["registration"] == recording["registration"]), None)
+    return str(row["source"]) if row is not None and row["source"] and row["limits"] != "none" else ""
+
+
 def flight_times(recording: Dict, flight: Dict, screen: Screen) -> str:
     """Take-off to landing: UTC (and local time), else elapsed."""
     begin, end = flight["take_off"], flight["landing"]

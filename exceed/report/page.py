@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from exceed.core.outcome import EventPlot, LogPlots, SpectrumPlot, VnPlot
+from exceed.errors import OutputError, Problem
 from exceed.report import figures, svg
 from exceed.report.arrange import severity_order
 from exceed.report.pageview import View
@@ -203,7 +204,11 @@ def _file(name: str) -> str:
 @lru_cache(maxsize=1)
 def plotly_js() -> str:
     """plotly.js as the Python package ships it, safe inside a script element."""
-    text = (importlib.resources.files("plotly") / "package_data" / "plotly.min.js").read_text(encoding="utf-8")
+    try:
+        text = (importlib.resources.files("plotly") / "package_data" / "plotly.min.js").read_text(encoding="utf-8")
+    except (ModuleNotFoundError, FileNotFoundError) as error:
+        problem = "plotly is not installed, or without its script"
+        raise OutputError(Problem("page", problem, "the plotly package", "python -m pip install plotly")) from error
     return text.replace("</script", "<\\/script").replace("<!--", "<\\!--")
 
 

@@ -7,7 +7,7 @@ from typing import Any
 
 from exceed.core.findings import SEVERITIES
 from exceed.report import sections
-from exceed.report.arrange import flight_order, flight_times, grouped, share_text, titles
+from exceed.report.arrange import flight_order, flight_times, grouped, limit_source, share_text, titles
 from exceed.report.layout import Screen
 from exceed.report.show import (
     STATES,
@@ -179,6 +179,8 @@ class View:
         rows.append(("corrected", form.with_unit(peak["value"], form.decimals + 1)))
         rows.append(("estimated true extreme", self.estimate(event)))
         rows.append(("limit in force", self.limit_text(event)))
+        if source := limit_source(self.summary, recording):
+            rows.append(("source of the limit", source))
         rows += [
             (f"beyond {level['severity']}, {form.with_unit(level['limit'])}", self.beyond(level))
             for level in event["levels"]

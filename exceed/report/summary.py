@@ -147,7 +147,7 @@ def _recording(log: LogOutcome) -> Dict:
         ],
         "assessment": [_coverage(row, recorded) for row in findings.coverage],
         "rule_sets": list(log.rule_sets),
-        "notes": [*log.notes, *findings.notes],
+        "notes": list(dict.fromkeys((*log.notes, *findings.notes))),
     }
 
 

@@ -10,7 +10,7 @@ from collections.abc import Callable
 from typing import Any
 
 from exceed.report import sections
-from exceed.report.arrange import aeroplane, flight_times, grouped
+from exceed.report.arrange import aeroplane, flight_times, grouped, limit_source
 from exceed.report.layout import Column, Screen, columns, on_point
 from exceed.report.show import (
     MARKS,
@@ -159,6 +159,7 @@ def _table(summary: Dict, screen: Screen, groups: list[Group], heading: Heading)
         Column("limit", right=not roomy),
         Column("for", right=True, drop=4),
         Column("phase", drop=3),
+        Column("limit from" if piped else ""),
         Column("file" if piped else ""),
     ]
     rows, place = [], 0
@@ -182,6 +183,7 @@ def _table(summary: Dict, screen: Screen, groups: list[Group], heading: Heading)
                     duration(event["duration_s"])
                     + (f", cut by {event['cut_by']}" if event["cut_by"] and piped else ""),
                     event["phase"],
+                    screen.safe(event["limit"]["source"]) if piped else "",
                     screen.safe(recording["path"]) if piped else "",
                 ]
             )
@@ -227,7 +229,11 @@ def _group_heading(summary: Dict, screen: Screen, recording: Dict, flight: int |
     parts.append(screen.safe(recording["path"]))
     if any(event["limit"]["assumed"] for event in found):
         parts.append("limits assumed")
-    return [screen.heading(line) for line in screen.wrap(", ".join(part for part in parts if part), " ", "   ")]
+    lines = [screen.heading(line) for line in screen.wrap(", ".join(part for part in parts if part), " ", "   ")]
+    source = limit_source(summary, recording)
+    if source:
+        lines += [screen.paint(line, "faint") for line in screen.wrap(f"limits: {screen.safe(source)}", "   ", "     ")]
+    return lines
 
 
 def _short_heading(summary: Dict, screen: Screen, recording: Dict, flight: int | None, found: list[Dict]) -> list[str]:

@@ -13,6 +13,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from exceed.core.findings import Extreme
 from exceed.core.outcome import DayOutcome, FlightRow
 from exceed.core.phases import Flight
 from exceed.report.model import Summary, schema_summary
@@ -190,3 +191,21 @@ def test_a_flight_row_is_made_from_a_flight() -> None:
 def test_outcomes_survive_pickling() -> None:
     day = pickle.loads(pickle.dumps(examples.day()))
     assert to_json(summarise(day)) == to_json(summarise(examples.day()))
+
+
+def test_an_inspection_stays_one_row_and_is_due_when_a_later_log_decides_it() -> None:
+    log = examples.aerobatic()
+    early = replace(log, path="a.csv", findings=replace(log.findings, events=()))
+    late = replace(log, path="b.csv", content_sha256="b", findings=replace(log.findings, undecided=()))
+    rows = summarise(DayOutcome((early, late), ""))["inspections"]
+    high = [row for row in rows if row["rule"] == "load-factor-high"]
+    assert [(row["status"], row["certainty"], len(row["events"])) for row in high] == [("due", "established", 3)]
+
+
+def test_a_temperature_is_shown_from_its_own_zero() -> None:
+    # 0 degC is 273.15 K (ISO 80000-5)
+    log = examples.touring()
+    found = Extreme("static_air_temperature", 1, (288.15, 10.0), (233.15, 20.0))
+    log = replace(log, findings=replace(log.findings, extremes=(found,)))
+    row = summarise(DayOutcome((log,), ""))["recordings"][0]["flights"][0]["extremes"][0]
+    assert (row["maximum"]["value"], row["minimum"]["value"], row["unit"]) == (15.0, -40.0, "degC")
