@@ -18,7 +18,7 @@ KINDS = ("aircraft", "rules", "channels", "loading", "fleet")
 # each round takes out what was found wrong and looks at the rest again
 _ROUNDS = 12
 # how a fault speaks of what is not there
-_ABSENCE = ("there is none", "is missing", "are missing", "neither", "no level is given")
+_ABSENCE = ("there is none", "is missing", "are missing", "neither", "no level is given", "needs one of")
 
 
 def open_document(origin: Path | str | Document, name: str | None = None) -> Document:
@@ -60,6 +60,7 @@ def build(model: type[M], document: Document, kind: str, context: dict[str, Any]
     context = dict(context or {})
     root = _copy(document.root)
     thinned: list[Node] = []  # what lost a part that was found wrong; kept, so that identities stay unique
+    loosened: list[Node] = []  # what lost only a key that is not known
     problems: dict[tuple[int, int, str], Problem] = {}
     for problem_of_text in document.problems:
         line, column = problem_of_text.place.rsplit(":", 2)[1:]
@@ -74,14 +75,15 @@ def build(model: type[M], document: Document, kind: str, context: dict[str, Any]
                     parents, node, key_node = _walk(root, (*row["loc"], *path))
                     # of a whole that lost a wrong part nothing more can be said, nor that the part is missing
                     absence = any(words in problem for words in _ABSENCE)
-                    around = [node, *(parent for parent, _ in parents)] if absence else [node]
-                    if not any(one is whole for one in around for whole in thinned):
+                    around = [node, *(parent for parent, _ in parents), *_children(node)] if absence else [node]
+                    gone = [*thinned, *loosened] if absence else thinned
+                    if not any(one is whole for one in around for whole in gone):
                         at = key_node if key_node is not None and _at_key(node, row["type"], problem) else node
                         shown = Problem(document.place(at), problem, expected, do)
                         problems.setdefault((at.line, at.column, problem), shown)
                     if parents:
                         cut.append((*parents[-1], "is not known here" not in problem))
-            if not _cut(cut, thinned):
+            if not _cut(cut, thinned, loosened):
                 break
             continue
         if not problems:
@@ -100,7 +102,7 @@ def _copy(node: Node, depth: int = 0) -> Any:
     return node
 
 
-def _cut(parts: list[tuple[Node, str | int, bool]], thinned: list[Node]) -> bool:
+def _cut(parts: list[tuple[Node, str | int, bool]], thinned: list[Node], loosened: list[Node]) -> bool:
     """Take wrong parts out of the tree; True if anything was there to be taken."""
     progress = False
     once = {(id(parent), key): (parent, key, counts) for parent, key, counts in parts}
@@ -115,9 +117,12 @@ def _cut(parts: list[tuple[Node, str | int, bool]], thinned: list[Node]) -> bool
         else:
             continue
         progress = True
-        if counts:
-            thinned.append(parent)
+        (thinned if counts else loosened).append(parent)
     return progress
+
+
+def _children(node: Node) -> list[Node]:
+    return list(node.entries.values()) if isinstance(node, Mapping) else []
 
 
 def _walk(root: Mapping, loc: tuple[Any, ...]) -> tuple[list[tuple[Node, str | int]], Node, Node | None]:

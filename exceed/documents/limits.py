@@ -24,6 +24,7 @@ from exceed.documents.fields import (
     fault,
     kind_of,
     make,
+    nearest,
     raise_any,
 )
 from exceed.documents.values import Value
@@ -190,6 +191,12 @@ class LevelKey(Model):
         return self
 
 
+def unknown_severity(found: Faults, name: str) -> None:
+    near = nearest(name, SEVERITIES)
+    do = f"write '{near}' if that is meant" if near else "use one of these"
+    found.note((name,), f"key '{name}' is not a severity", f"one of {', '.join(sorted(SEVERITIES))}", do)
+
+
 class LevelsMark(Marker):
     """`above` and `below`: a mapping of severities to levels, made into a tuple, least severe first."""
 
@@ -205,7 +212,7 @@ class LevelsMark(Marker):
         made: list[LevelKey] = []
         for name, level in value.items():
             if name not in SEVERITIES:
-                collect(found, (name,), Choice(SEVERITIES, "a severity").read, name)
+                unknown_severity(found, name)
                 continue
             key = make(found, (name,), LevelKey, level)
             if key is not None:

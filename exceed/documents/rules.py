@@ -38,7 +38,6 @@ from exceed.documents.fields import (
     Number,
     Words,
     an,
-    collect,
     fault,
     kind_of,
     nearest,
@@ -58,6 +57,7 @@ from exceed.documents.limits import (
     RelativeLimit,
     TableLimit,
     Total,
+    unknown_severity,
 )
 from exceed.documents.values import Value
 
@@ -121,7 +121,8 @@ class StatesMark(Marker):
         found = Faults()
         made: dict[str, str] = {}
         for name, word in value.items():
-            collect(found, (name,), Choice(SEVERITIES, "a severity").read, name)
+            if name not in SEVERITIES:
+                unknown_severity(found, name)
             if not isinstance(word, str) or not word.strip():
                 found.note(
                     (name,), f"{kind_of(word)} stands where a state is due", "a word, as in 'up'", "write the state"

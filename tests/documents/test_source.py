@@ -158,7 +158,7 @@ def test_a_file_that_is_not_there_or_a_folder_is_said(tmp_path: Path) -> None:
         f"{missing}: there is no such file\n  expected: a YAML file\n  do: check the path"
     ]
     assert [row.problem for row in lint(tmp_path)] == ["this is a folder"]
-    assert [row.problem for row in lint(tmp_path / ("x" * 5000))][0].startswith("the file cannot be read: ")
+    assert next(row.problem for row in lint(tmp_path / ("x" * 5000))).startswith("the file cannot be read: ")
     big = tmp_path / "big.yaml"
     big.write_bytes(b"#" * (MAXIMUM_BYTES + 1))
     assert [row.problem for row in lint(big)] == [
