@@ -311,7 +311,10 @@ def test_unknown_mass_gives_both_verdicts_and_is_at_most_possible():
 def test_what_exists_only_at_moments_is_neither_cut_nor_unassessed_elsewhere():
     time = np.arange(0.0, 60.0, 0.125)
     sink = np.where((time >= 30) & (time < 30.5), 3.5, np.nan)
-    text = "rules:\n  - id: sink\n    quantity: touchdown_sink_rate\n    limit: 500 ft/min\n    above: {caution: 100 %}\n"
+    text = (
+        "rules:\n  - id: sink\n    quantity: touchdown_sink_rate\n    limit: 500 ft/min\n"
+        "    above: {caution: 100 %}\n"
+    )
     found = judge_one(make_trace(time, {"touchdown_sink_rate": sink}), text)
     (event,) = found.events
     assert event.cut_by is None
