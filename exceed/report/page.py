@@ -47,6 +47,7 @@ def render_page(
     """
     view = View(summary, units, find_zone(time_zone or summary.get("time_zone")), certainty_floor)
     by_path = {log.path: log for log in plots}
+    drawn = {path: _by_event(log) for path, log in by_path.items()}
     events, undecided = view.groups("events"), view.groups("undecided")
     data: dict[str, Dict] = {}
     rows = [row for group in events for row in group["rows"]]
@@ -54,7 +55,9 @@ def render_page(
     order = sorted(rows, key=_worst_first)
     carded = [*order[:MOST_CARDS], *open_rows[: max(MOST_CARDS - len(order), 50)]]
     for row in carded:
-        _card(view, row, by_path.get(row["recording"]["path"]), data)
+        path, event = row["recording"]["path"], row["event"]
+        plot = drawn.get(path, {}).get((event["rule"], event["row"], event["quantity"]))
+        _card(view, row, plot, by_path[path].declared if plot is not None else {}, data)
     shown_rows = _cut(events, _MOST_ROWS)
     vn = _vn(view, by_path, data)
     spectra = [
@@ -105,7 +108,7 @@ def _cut(groups: Sequence[Dict], most: int) -> list[Dict]:
     return kept
 
 
-def _card(view: View, row: Dict, plots: LogPlots | None, data: dict[str, Dict]) -> None:
+def _card(view: View, row: Dict, plot: EventPlot | None, declared: Mapping[str, str], data: dict[str, Dict]) -> None:
     from markupsafe import Markup
 
     event, recording = row["event"], row["recording"]
@@ -117,10 +120,9 @@ def _card(view: View, row: Dict, plots: LogPlots | None, data: dict[str, Dict]) 
         "samples": "",
         "more": [],
     }
-    plot = _plot_of(plots, event)
-    if plots is not None and plot is not None:
+    if plot is not None:
         zero = event["peak"]["time_s"]
-        scale, _ = figures.form_of(event["quantity"], plots.declared, "trade")
+        scale, _ = figures.form_of(event["quantity"], declared, "trade")
 
         def stretch(series: Any) -> Any:
             if series is None or len(series.time) == 0:
@@ -132,16 +134,13 @@ def _card(view: View, row: Dict, plots: LogPlots | None, data: dict[str, Dict]) 
         if points is not None:
             drawn = svg.samples(event, points, stretch(plot.estimate), stretch(plot.limit), view.system)
             card["samples"] = Markup(drawn)
-            data[row["anchor"]] = figures.channels(plot, zero, plots.declared, view.system)
+            data[row["anchor"]] = figures.channels(plot, zero, declared, view.system)
             card["more"] = [series.quantity for series in plot.more]
     row["card"] = card
 
 
-def _plot_of(plots: LogPlots | None, event: Dict) -> EventPlot | None:
-    if plots is None:
-        return None
-    found = (plot for plot in plots.events if plot.rule == event["rule"] and plot.row == event["row"])
-    return next(found, None)
+def _by_event(log: LogPlots) -> dict[tuple[str, int, str], EventPlot]:
+    return {(plot.rule, plot.row, plot.samples.quantity): plot for plot in log.events}
 
 
 def _vn(view: View, plots: Mapping[str, LogPlots], data: dict[str, Dict]) -> list[Dict]:
