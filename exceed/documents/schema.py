@@ -1,4 +1,4 @@
-"""JSON Schemas (draft 2020-12) of our files, made from the models, for editors; and the starter files.
+"""JSON Schemas (draft 2020-12) of our files, made from the models, for editors.
 
 An editor reads YAML by its own rules, so a bare 17 or an unquoted date may reach the schema as a number: free text
 accepts both. What a schema cannot say (order of rows, kinds that must agree) `exceed lint` says.
@@ -6,12 +6,12 @@ accepts both. What a schema cannot say (order of rows, kinds that must agree) `e
 
 from __future__ import annotations
 
-from importlib import resources
 from typing import Any
 
-from exceed.documents.build import KINDS
-from exceed.documents.fields import Model, nearest
-from exceed.errors import Problem, UsageError
+from exceed.documents.fields import Model
+from exceed.documents.templates import check_kind, template
+
+__all__ = ["schema", "template"]
 
 
 def _models() -> dict[str, type[Model]]:
@@ -27,26 +27,13 @@ def _models() -> dict[str, type[Model]]:
 def schema(kind: str) -> dict[str, Any]:
     """The JSON Schema of one kind of file. Raises UsageError for a kind that is not known."""
     models = _models()
-    _known(kind, models)
+    check_kind(kind, models)
     made = models[kind].model_json_schema(by_alias=True, mode="validation")
     cleaned: dict[str, Any] = _clean(made)
     cleaned["properties"]["format"] = {"const": f"exceed-{kind}/1", "description": "first key of the file"}
     cleaned["required"] = ["format", *(name for name in cleaned.get("required", []) if name != "format")]
     head = {"$schema": "https://json-schema.org/draft/2020-12/schema", "title": f"exceed-{kind}/1"}
     return {**head, **{key: value for key, value in cleaned.items() if key not in head}}
-
-
-def template(kind: str) -> str:
-    """A complete, commented starter file. Raises UsageError for a kind that is not known."""
-    _known(kind, KINDS)
-    return resources.files("exceed.documents").joinpath("templates", f"{kind}.yaml").read_text(encoding="utf-8")
-
-
-def _known(kind: str, kinds: Any) -> None:
-    if kind not in kinds:
-        near = nearest(kind, kinds)
-        do = f"write '{near}' if that is meant" if near else "use one of these"
-        raise UsageError(Problem("", f"'{kind}' is not a kind of file", f"one of {', '.join(sorted(kinds))}", do))
 
 
 def _clean(node: Any) -> Any:
