@@ -156,13 +156,13 @@ def _mass(settings: Settings, problems: list[Problem]) -> float | None:
     if settings.mass is None:
         return None
     try:
-        value = parse(settings.mass)
+        value = parse(settings.mass, "mass")
     except ValueFault as error:
         problems.append(Problem("--mass", error.problem, error.expected, error.do))
         return None
-    if value.kind != "mass" or not value > 0.0:
+    if not value > 0.0:
         problems.append(
-            Problem("--mass", f"'{settings.mass}' is not a mass", "a mass in kg or lb", "write it as '900 kg'")
+            Problem("--mass", f"'{settings.mass}' is not above zero", "a mass in kg or lb", "write it as '900 kg'")
         )
         return None
     return float(value)
