@@ -136,7 +136,7 @@ def vn(plot: VnPlot, declared: Mapping[str, str] | None = None, system: str = "t
         )
     layout = {
         "height": 440,
-        "margin": {"l": 56, "r": 12, "t": 12, "b": 48},
+        "margin": {"l": 56, "r": 12, "t": 12, "b": 60},
         "xaxis": {"title": {"text": f"{words(plot.speed_kind)}, {speed_form.unit}"}, "rangemode": "tozero"},
         "yaxis": {"title": {"text": "load factor, g"}},
         "legend": {"orientation": "h", "y": 1.02, "yanchor": "bottom"},
@@ -188,7 +188,7 @@ def spectrum(plots: Sequence[tuple[str, SpectrumPlot]]) -> Dict:
         )
     layout = {
         "height": 400,
-        "margin": {"l": 64, "r": 12, "t": 12, "b": 48},
+        "margin": {"l": 64, "r": 12, "t": 12, "b": 60},
         "xaxis": {"title": {"text": "load factor, g"}},
         "yaxis": {"title": {"text": "crossings per flight hour"}, "type": "log"},
         "legend": {"orientation": "h", "y": 1.02, "yanchor": "bottom"},

@@ -40,7 +40,7 @@
         layout[key] = Object.assign({ gridcolor: colours.rule, zerolinecolor: colours.soft, linecolor: colours.soft, automargin: true }, layout[key]);
       }
     });
-    place.style.height = layout.height + "px";
+    place.style.height = layout.height + 4 + "px";
     place.dataset.drawn = "yes";
     Plotly.react(place, copy.data, layout, { displayModeBar: false, responsive: true });
   }
