@@ -153,6 +153,9 @@ def _discrete(rule: Rule, found: Faults) -> None:
                 f"one of {', '.join(sorted(words))}",
                 f"write '{near}' if that is meant" if near else "use one of these",
             )
+    if len({words.get(word) for word in rule.is_state.values()}) > 1:
+        text = "two states in one rule cannot be told apart"
+        found.note(("is",), text, "one state in a rule", "make a rule of each state")
     for name in ("release", "allowed"):
         if getattr(rule, name):
             found.note(

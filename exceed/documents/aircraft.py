@@ -27,21 +27,15 @@ from exceed.core.units import UNITS
 from exceed.documents import facts
 from exceed.documents.aircraft_parts import (
     Accelerometer,
-    FlapSpeedRow,
     LoadFactorRow,
     Loading,
-    MachLimit,
-    MachLimits,
     Masses,
     PositionErrorRow,
     Recorder,
     Rolling,
-    SpeedLimit,
-    Speeds,
     StallRow,
     Station,
     Wing,
-    pairs,
 )
 from exceed.documents.build import build, open_document
 from exceed.documents.facts import Fact
@@ -57,6 +51,7 @@ from exceed.documents.fields import (
     raise_any,
 )
 from exceed.documents.source import Document
+from exceed.documents.speeds import FlapSpeedRow, MachLimit, MachLimits, SpeedLimit, Speeds, pairs
 from exceed.documents.values import Value
 from exceed.errors import Problem, UsageError
 

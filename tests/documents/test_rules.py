@@ -341,6 +341,7 @@ WRONG = [
     ("quantity: gear_down, above: ^{caution: 1 g}", "gear_down is a state, so it is neither above nor below a level"),
     ("quantity: gear_down, is: {caution: ^upp}", "'upp' is no state of gear_down"),
     ("quantity: gear_down, is: ^up", "'up' stands where states are due"),
+    ("quantity: gear_down, is: ^{advisory: up, caution: down}", "two states in one rule cannot be told apart"),
     ("quantity: gear_down, is: {caution: up}, limit: ^1 g", "gear_down is a state and has no limit"),
     ("quantity: load_factor, is: ^{caution: up}", "load_factor is no state"),
     (
@@ -470,7 +471,7 @@ FILES = [
     ("format: exceed-rules/1\nrules: {a: 1}\n", [("2:8", "a mapping stands where a list is due")]),
     (
         "format: exceed-rules/1\nquantities: {Oil: degC, mach: kt, oil_t: degc, x: [1]}\nrules: [{id: a, quantity: mach, above: {caution: 0.8}}]\n",  # noqa: E501
-        [("2:14", "key 'Oil' is no name for a quantity"), ("2:25", "key 'mach' is a quantity that is known already"),
+        [("2:14", "key 'Oil' is no name for a quantity"), ("2:31", "'mach' is known already as a ratio, and kt is no unit of it"),  # noqa: E501
          ("2:42", "unit 'degc' is not known"), ("2:51", "unit a list is not known")],
     ),
     (
@@ -508,6 +509,11 @@ def test_all_mistakes_of_all_rules_are_listed_at_once() -> None:
         "'cruize' is not a phase",
         "key 'joning' is not known here",
     ]
+
+
+def test_a_known_quantity_may_be_declared_again_in_a_unit_of_its_kind() -> None:
+    text = "format: exceed-rules/1\nquantities: {engine_speed: rpm}\nrules: [{id: a, quantity: engine_speed, above: {caution: 2700 rpm}}]\n"  # noqa: E501
+    assert load_rules(text).rules[0].kind == "rotation"
 
 
 def test_the_nearest_quantity_is_suggested_or_how_to_declare_one() -> None:
