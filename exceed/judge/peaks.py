@@ -132,7 +132,8 @@ def size_peak(
 
     Raises
     ------
-    ValueError : shapes differ, no sample, index outside the window, side not +1 or -1, interval not positive.
+    ValueError : shapes differ, no sample, index outside the window, side not +1 or -1, interval not positive, values
+        not finite or times not ascending.
 
     Source
     ------
@@ -147,6 +148,8 @@ def size_peak(
         raise ValueError(f"side is +1 or -1 and interval positive, got {side}, {interval}")
     a, b = max(0, index - HALO), min(t.size, index + HALO + 1)
     u, v, place = (t[a:b] - t[index]) / interval, v[a:b], index - a
+    if not (np.isfinite(v).all() and np.all(np.diff(u) > 0)):
+        raise ValueError("a window of finite values at ascending times is needed")
     seen, step = float(v[place]), resolution / math.sqrt(12.0)
     known_noise = math.hypot(noise, step) if noise is not None else None
     clipped = saturation is not None and seen >= side * saturation - max(0.5 * resolution, 1e-9 * abs(saturation))

@@ -251,6 +251,14 @@ def test_wrong_arguments_are_refused(bad: dict[str, float]) -> None:
         )  # type: ignore[arg-type]
 
 
+@pytest.mark.parametrize(
+    ("time", "values"), [([0, 1, 1, 2, 3], [1, 2, 3, 2, 1]), ([0, 1, 2, 3, 4], [1, 2, 3, np.nan, 1])]
+)
+def test_a_window_with_holes_or_doubled_times_is_refused(time: list[float], values: list[float]) -> None:
+    with pytest.raises(ValueError, match="finite values at ascending times"):
+        size_peak(np.array(time, float), np.array(values, float), 1, 2, standard_uncertainty=0.1, interval=1.0)
+
+
 # --- several humps ----------------------------------------------------------------------------------------------------
 
 
