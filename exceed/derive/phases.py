@@ -122,6 +122,8 @@ def _manoeuvring(coarse: Coarse, climb: Array | None) -> tuple[Mask, bool]:
             mean = coarse.statistics("load_factor").mean
             told |= bool(np.isfinite(mean).any())
             marks |= (mean > PULLED) | (mean < PUSHED)
+        if coarse.has("vertical_speed"):
+            climb = coarse.pick("vertical_speed")
         if climb is not None:
             marks |= np.abs(coarse.slope(climb, 3.0)) > PATH_BENT
     found = lasting(joined(_stretches(coarse, marks), 3.0), MANOEUVRE_LEAST)

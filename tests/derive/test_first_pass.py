@@ -52,7 +52,8 @@ def test_the_cell_as_written_comes_back_after_the_correction() -> None:
 def test_the_sensors_range_moves_with_the_datum() -> None:
     recording = recording_of(aerobatics(), SENSORS)
     ranged = replace(recording.channels["load_factor"], saturation=(-6.0, 9.0))
-    channel = first_pass(replace(recording, channels={**recording.channels, "load_factor": ranged})).channels["load_factor"]
+    changed = replace(recording, channels={**recording.channels, "load_factor": ranged})
+    channel = first_pass(changed).channels["load_factor"]
     assert channel.bias is not None
     assert channel.saturation == pytest.approx((-6.0 - channel.bias.value, 9.0 - channel.bias.value))
 
@@ -128,7 +129,8 @@ def test_inverted_time_counts_from_the_roll_past_ninety_degrees() -> None:
 
 def test_the_first_pass_does_not_depend_on_unrelated_channels() -> None:
     recording = recording_of(aerobatics(), SENSORS)
-    more = {**recording.channels, "oil_temperature": channel_of("oil_temperature", np.full(len(recording.time), 350.0), None, recording.time)}
+    oil = channel_of("oil_temperature", np.full(len(recording.time), 350.0), None, recording.time)
+    more = {**recording.channels, "oil_temperature": oil}
     one_, other = first_pass(recording), first_pass(replace(recording, channels=more))
     assert one_.track.flights == other.track.flights
     assert one_.channels["load_factor"].bias == other.channels["load_factor"].bias

@@ -52,7 +52,8 @@ def test_fuel_used_comes_from_the_best_that_tells_it(extra: dict[str, Sensor], m
     recording = recording_of(flown, {**BARE, **extra})
     if "fuel_flow" in recording.channels:
         flow = recording.channels["fuel_flow"]
-        channels = {**recording.channels, "fuel_mass_flow": channel_of("fuel_mass_flow", flow.values, flow.rows, recording.time)}
+        renamed = channel_of("fuel_mass_flow", flow.values, flow.rows, recording.time)
+        channels = {**recording.channels, "fuel_mass_flow": renamed}
         recording = without(make(recording.time, channels), "fuel_flow")
     trace = build_trace(recording, larkspur(), mass=at_take_off())
     assert method in trace.steps["mass"].method
