@@ -190,7 +190,7 @@ def _numeric(
     if best is not None:
         return best[1]
     for index in frames:
-        period = _period(facts)
+        period = stated_period(facts)
         if period is None:
             continue
         values = _numbers(cells[index], decimal)
@@ -228,7 +228,7 @@ def _unit_by_steps(values: Sequence[float], steps: Sequence[float]) -> tuple[flo
     return 1.0, f"no unit of time is written: the step of {step:g} is taken as seconds"
 
 
-def _period(facts: Sequence[tuple[str, str]]) -> float | None:
+def stated_period(facts: Sequence[tuple[str, str]]) -> float | None:
     """Seconds a frame, as the preamble states it."""
     for key, value in facts:
         text = f"{value}".strip()
@@ -268,7 +268,7 @@ def _first_rising(columns: Sequence[Column], cells: Sequence[Sequence[str]], dec
 
 
 def _rows_as_clock(facts: Sequence[tuple[str, str]], notes: list[str]) -> ClockPlan:
-    period = _period(facts)
+    period = stated_period(facts)
     if period is not None:
         note = f"no clock column: rows are counted, {1.0 / period:g} a second as the preamble says"
         return ClockPlan("frame", (), unit=period, roles=("row",), notes=(*notes, note))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -236,6 +237,8 @@ def _ordered(read: Stamps, bad: NDArray[np.bool_], plan: ClockPlan, notes: list[
     order, why = (plan.order or None), "the channels file"
     if order is None:
         order, why = date_order(first, second), "numbers above 12 or the step at midnight"
+    if order is None and all(re.search(r"\d{1,2}\.\d{1,2}\.\d", form) for form in read.forms):
+        order, why = "dmy", "being written with points"
     if order is None and plan.day is not None:
         both = {"dmy": days_of(year, second, first), "mdy": days_of(year, first, second)}
         fits = [name for name, days in both.items() if abs(int(days[0]) - plan.day) <= 1 and days[0] != UNKNOWN]

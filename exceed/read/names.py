@@ -30,6 +30,11 @@ def words_of(name: str) -> list[str]:
     return [word for word in re.split(r"[^A-Za-z0-9]+", text.lower()) if word]
 
 
+def _is_side(word: str) -> bool:
+    """A word that only says which of several sensors it is."""
+    return word in SIDE or word.isdigit()
+
+
 def _reduced(words: list[str]) -> tuple[str, ...]:
     return tuple(WORDS.get(word, word) for word in words)
 
@@ -67,15 +72,15 @@ def meanings(name: str) -> tuple[tuple[Meaning, ...], str]:
     if refused:
         return (), f"'{refused[0]}' makes it something else than the flown value"
     # without the words that only name a sensor
-    bare = [word for word in words if word not in SIDE]
-    side = tuple(word for word in words if word in SIDE)
+    bare = [word for word in words if not _is_side(word)]
+    side = tuple(word for word in words if _is_side(word))
     if bare and side:
         found = _exact(bare, "".join(bare))
         if found:
             return tuple(Meaning(m.quantity, m.score * 0.95, m.reason, side) for m in found), ""
     # a phrase within a longer name: weaker for every word that was not understood
     best: list[Meaning] = []
-    reduced = [word for word in _reduced(words) if word not in SIDE] or list(_reduced(words))
+    reduced = [word for word in _reduced(words) if not _is_side(word)] or list(_reduced(words))
     for size in range(min(_LONGEST, len(reduced) - 1), 0, -1):
         for start in range(len(reduced) - size + 1):
             key = frozenset(reduced[start : start + size])

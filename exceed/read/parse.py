@@ -50,11 +50,11 @@ def rewriter(layout: Layout) -> Callable[[Iterator[bytes]], Iterator[bytes]] | N
         if rest.strip(b"\r"):
             # a line without its end may be cut: it is not filled up, so that it shows
             last = rest.rstrip(b"\r")
-            yield b" ".join(last.split()) if layout.squeeze else last
+            yield b" ".join(cell for cell in last.split(b" ") if cell) if layout.squeeze else last
 
     def mend(line: bytes) -> bytes:
         if layout.squeeze:
-            return b" ".join(line.split())
+            return b" ".join(cell for cell in line.split(b" ") if cell)
         missing = width - 1 - line.count(mark)
         # only lines that left off their empty end are filled up; the rest stays as it is, to be counted
         return line + mark * missing if 0 < missing and line.count(mark) and b'"' not in line else line

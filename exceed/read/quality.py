@@ -1,28 +1,405 @@
-"""What cannot be flight."""
+"""What cannot be flight: rejected with its place and reason. What merely looks odd is kept and noted.
+
+Real peaks look like spikes. A lone sample is rejected only if its neighbours agree with each other against it, if no
+aeroplane moves so, and if the other channels show nothing; a touchdown's jolt, a short pull and a gust all stay.
+"""
 
 from __future__ import annotations
 
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
 
+from exceed.core.constants import STANDARD_GRAVITY
+from exceed.core.intervals import runs
+from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array
 
-COMPANIONS: dict[str, tuple[str, ...]] = {}
+BLOCK = 1 << 16
+_DEG = np.pi / 180.0
+_MOST_ROWS = 500
+
+# how far a value can jump and come back within two sample intervals: constant + rate * interval, SI; and the longest
+# interval at which that can be judged at all, s (common practice, no source: wide of what aerobatic aeroplanes do)
+PHYSICS: dict[str, tuple[float, float, float]] = {
+    "load_factor": (0.8, 0.0, 0.3),
+    "longitudinal_load_factor": (0.8, 0.0, 0.3),
+    "lateral_load_factor": (0.8, 0.0, 0.3),
+    "bank_angle": (12.0 * _DEG, 200.0 * _DEG, 0.6),
+    "pitch_angle": (8.0 * _DEG, 100.0 * _DEG, 0.6),
+    "heading": (10.0 * _DEG, 150.0 * _DEG, 0.6),
+    "track_angle": (20.0 * _DEG, 150.0 * _DEG, 0.6),
+    "roll_rate": (60.0 * _DEG, 1500.0 * _DEG, 0.3),
+    "pitch_rate": (40.0 * _DEG, 800.0 * _DEG, 0.3),
+    "yaw_rate": (40.0 * _DEG, 800.0 * _DEG, 0.3),
+    "angle_of_attack": (10.0 * _DEG, 200.0 * _DEG, 0.6),
+    "indicated_airspeed": (12.0, 25.0, 1.1),
+    "calibrated_airspeed": (12.0, 25.0, 1.1),
+    "equivalent_airspeed": (12.0, 25.0, 1.1),
+    "true_airspeed": (12.0, 25.0, 1.1),
+    "ground_speed": (12.0, 25.0, 1.1),
+    "mach": (0.05, 0.08, 1.1),
+    "pressure_altitude": (40.0, 120.0, 1.1),
+    "geometric_altitude": (60.0, 120.0, 1.1),
+    "static_air_temperature": (6.0, 3.0, 2.1),
+    "total_air_temperature": (6.0, 3.0, 2.1),
+    "static_pressure": (500.0, 1500.0, 1.1),
+    "flap_angle": (6.0 * _DEG, 15.0 * _DEG, 1.1),
+}
+_WRAPS = frozenset({"heading", "track_angle", "bank_angle", "longitude"})
+_LIVELY = frozenset({"load_factor", "longitudinal_load_factor", "lateral_load_factor", "roll_rate", "pitch_rate", "yaw_rate", "bank_angle",
+                     "pitch_angle", "indicated_airspeed", "calibrated_airspeed", "true_airspeed", "angle_of_attack"})  # fmt: skip
+_CLIPS = frozenset({"load_factor", "longitudinal_load_factor", "lateral_load_factor", "roll_rate", "pitch_rate", "yaw_rate",
+                    "angle_of_attack", "indicated_airspeed"})  # fmt: skip
+# what a companion must move through for a stretch to count as flown, SI
+_MOVED = {"bank_angle": 12.0 * _DEG, "pitch_angle": 6.0 * _DEG, "indicated_airspeed": 6.0, "calibrated_airspeed": 6.0, "true_airspeed": 6.0,
+          "pressure_altitude": 60.0, "heading": 20.0 * _DEG, "load_factor": 0.4, "roll_rate": 10.0 * _DEG, "pitch_rate": 6.0 * _DEG}  # fmt: skip
+
+Found = tuple[int, int, int, str, float | None]
+
+
+@dataclass(slots=True, eq=False)
+class Series:
+    """A channel in SI on its own instants. `at` gives the instants (a function, so that none is made unasked)."""
+
+    quantity: str
+    values: Array
+    at: Callable[[], Array]
+    interval: float
+    step: float
+    discrete: bool = False
+
+    def near(self, moment: float, reach: float) -> Array:
+        """Finite values within `reach` of a moment."""
+        when = self.at()
+        first, last = np.searchsorted(when, (moment - reach, moment + reach))
+        some = self.values[max(0, first - 1) : last + 1]
+        return some[np.isfinite(some)]
 
 
 @dataclass(slots=True)
 class Checked:
-    rejected: list[tuple[int, int, int, str, float | None]] = field(default_factory=list)
+    """rejected: (first, last, samples, reason, extreme), places among the channel's own samples."""
+
+    rejected: list[Found] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
     lost: int = 0
     noise: float | None = None
     saturation: tuple[float, float] = (-np.inf, np.inf)
 
 
+def _pieces(values: Array, most: int) -> list[Array]:
+    """A few blocks spread over a long array."""
+    if len(values) <= most:
+        return [values]
+    size = most // 8
+    starts = np.linspace(0, len(values) - size, 8).astype(int)
+    return [values[start : start + size] for start in starts]
+
+
 def resolution(values: Array) -> float:
-    return 0.0
+    """Step of quantisation in the figures as written, 0 where there is none to see."""
+    some = np.concatenate(_pieces(values, 16384))
+    some = some[np.isfinite(some)]
+    levels = np.unique(some)
+    if len(levels) < 3:
+        return 0.0
+    steps = np.diff(levels)
+    largest = float(np.max(np.abs(levels)))
+    steps = steps[steps > 1e-9 * max(largest, 1e-30)]
+    if not len(steps):
+        return 0.0
+    least = float(np.percentile(steps, 1)) if len(steps) > 200 else float(np.min(steps))
+    counts = steps / least
+    # decimals written as doubles differ in the last digits only
+    whole = np.abs(counts - np.round(counts)) < 0.02 * np.maximum(1.0, np.round(counts)) ** 0.5
+    return least if np.mean(whole) > 0.97 else 0.0
 
 
-def check(values, at, quantity, interval, discrete, step, sensor, others) -> Checked:
-    return Checked()
+def noise_of(values: Array) -> float | None:
+    """Robust standard deviation of the sample-to-sample noise, from second differences; None for a short channel."""
+    found = []
+    for piece in _pieces(values, 32768):
+        if len(piece) < 16:
+            continue
+        second = piece[1:-1] - 0.5 * (piece[:-2] + piece[2:])
+        second = second[np.isfinite(second)]
+        if len(second):
+            found.append(1.4826 * float(np.median(np.abs(second))) / np.sqrt(1.5))
+    return float(np.median(found)) if found else None
+
+
+def check(series: Series, sensor: tuple[float, float] | None, others: Mapping[str, Series]) -> Checked:
+    """Judge one channel; its rejected samples become NaN in `series.values`.
+
+    Parameters
+    ----------
+    series : the channel; its values must be writeable
+    sensor : (low, high) of the sensor in SI where the aircraft file states it
+    others : all channels of the log, to see what else moved
+    """
+    out = Checked()
+    values = series.values
+    if len(values) == 0 or series.discrete:
+        return out
+    _out_of_range(series, sensor, out)
+    out.noise = noise_of(values)
+    if sensor is not None:
+        out.saturation = sensor
+    if series.quantity in _CLIPS:
+        _clipped(series, out)
+    if series.quantity in PHYSICS:
+        _spikes(series, others, out)
+    if series.quantity in _LIVELY:
+        _stuck(series, others, out)
+    if series.quantity == "load_factor" and series.interval > 0.26:
+        out.notes.append(f"recorded every {series.interval:.3g} s: peaks shorter than about {4 * series.interval:.2g} s are not sized")
+    out.lost = sum(samples for _, _, samples, _, _ in out.rejected)
+    return out
+
+
+def _reject(values: Array, mask_rows: NDArray[np.int64], reason: str, out: Checked, joined: bool = True) -> None:
+    """Rows become NaN, listed run by run; beyond a few hundred runs the rest is one entry."""
+    if len(mask_rows) == 0:
+        return
+    breaks = np.flatnonzero(np.diff(mask_rows) > 1) + 1 if joined else np.arange(1, len(mask_rows))
+    groups = np.split(mask_rows, breaks)
+    if len(groups) > _MOST_ROWS:
+        groups = [*groups[: _MOST_ROWS - 1], np.concatenate(groups[_MOST_ROWS - 1 :])]
+    for group in groups:
+        figures = values[group]
+        finite = figures[np.isfinite(figures)]
+        extreme = float(finite[np.argmax(np.abs(finite))]) if len(finite) else None
+        out.rejected.append((int(group[0]), int(group[-1]), len(group), reason, extreme))
+    values[mask_rows] = np.nan
+
+
+def _out_of_range(series: Series, sensor: tuple[float, float] | None, out: Checked) -> None:
+    values = series.values
+    low, high = float(np.min(values)), float(np.max(values))
+    if not (np.isfinite(low) and np.isfinite(high)):
+        _reject(values, np.flatnonzero(~np.isfinite(values)), "not_a_number", out)
+        if not np.isfinite(values).any():
+            return
+        low, high = float(np.nanmin(values)), float(np.nanmax(values))
+    row = QUANTITIES.get(series.quantity)
+    bounds = sorted((row.unit.to_si(row.plausible[0]), row.unit.to_si(row.plausible[1]))) if row is not None else [-np.inf, np.inf]
+    if sensor is not None:
+        # a sample at the end of the range, a step or a hundredth of it beyond, is clipped and stays
+        slack = max(2 * series.step, 0.01 * (sensor[1] - sensor[0]))
+        bounds = [max(bounds[0], sensor[0] - slack), min(bounds[1], sensor[1] + slack)]
+    if low >= bounds[0] and high <= bounds[1]:
+        return
+    with np.errstate(invalid="ignore"):
+        _reject(values, np.flatnonzero((values < bounds[0]) | (values > bounds[1])), "out_of_range", out)
+
+
+def _clipped(series: Series, out: Checked) -> None:
+    """A plateau at the very extreme that the signal enters and leaves steeply: the sensor's end."""
+    values = series.values
+    if not np.isfinite(values).any():
+        return
+    unit = max(series.step, (out.noise or 0.0), 1e-12)
+    low, high = out.saturation
+    for side, extreme in ((1, float(np.nanmax(values))), (-1, float(np.nanmin(values)))):
+        at = np.flatnonzero(values == extreme)
+        if not 2 <= len(at) <= 0.05 * len(values):
+            continue
+        groups = np.split(at, np.flatnonzero(np.diff(at) > 1) + 1)
+        longest = max(len(group) for group in groups)
+        steep = 0
+        for group in groups[:200]:
+            before = values[group[0] - 1] if group[0] > 0 else extreme
+            after = values[group[-1] + 1] if group[-1] + 1 < len(values) else extreme
+            steep += len(group) >= 2 and min(abs(extreme - before), abs(extreme - after)) > 6 * unit
+        if (longest >= 3 and steep >= 1) or steep >= 2:
+            if side > 0:
+                high = min(high, extreme)
+            else:
+                low = max(low, extreme)
+    out.saturation = (low, high)
+
+
+def _difference(values: Array, wraps: bool) -> Array:
+    steps = values[1:] - values[:-1]
+    if wraps:
+        steps = (steps + np.pi) % (2 * np.pi) - np.pi
+    return steps
+
+
+def _spikes(series: Series, others: Mapping[str, Series], out: Checked) -> None:
+    constant, rate, longest = PHYSICS[series.quantity]
+    if series.interval > longest or len(series.values) < 7:
+        return
+    values, wraps = series.values, series.quantity in _WRAPS
+    least = max(constant + rate * series.interval, 10.0 * (out.noise or 0.0), 3 * series.step)
+    candidates: list[int] = []
+    for start in range(0, len(values) - 2, BLOCK):
+        piece = values[max(0, start - 1) : start + BLOCK + 2]
+        steps = _difference(piece, wraps)
+        large = np.abs(steps) > least
+        if not large.any():
+            continue
+        both = large[:-1] & large[1:] & (np.sign(steps[:-1]) != np.sign(steps[1:]))
+        candidates += (np.flatnonzero(both) + max(0, start - 1) + 1).tolist()
+    if not candidates:
+        return
+    found, doubtful = [], 0
+    when = series.at()
+    for place in sorted(set(candidates)):
+        verdict = _verdict(series, place, when, others, wraps)
+        if verdict == "spike":
+            found.append(place)
+        elif verdict == "doubt":
+            doubtful += 1
+    _reject(values, np.array(found, np.int64), "spike", out, joined=False)
+    if doubtful:
+        out.notes.append(
+            f"{doubtful} lone sample{'s' * (doubtful != 1)} far from {'their' if doubtful != 1 else 'its'} neighbours "
+            f"{'are' if doubtful != 1 else 'is'} kept: nothing else shows that {'they were' if doubtful != 1 else 'it was'} not flown"
+        )
+
+
+def _verdict(series: Series, place: int, when: Array, others: Mapping[str, Series], wraps: bool) -> str:
+    """spike, doubt (kept, noted) or flown."""
+    values = series.values
+    if place < 2 or place + 2 >= len(values):
+        return "doubt"
+    # the neighbours must be neighbours in time as well
+    if when[place + 1] - when[place - 1] > 3.0 * series.interval:
+        return "doubt"
+    around = values[max(0, place - 4) : place + 5] - values[place - 1]
+    if wraps:
+        around = (around + np.pi) % (2 * np.pi) - np.pi
+    middle = min(4, place)
+    lone = around[middle]
+    near = np.delete(around, middle)
+    near = near[np.isfinite(near)]
+    if len(near) < 4:
+        return "doubt"
+    base = float(np.median(near))
+    size = float(lone - base)
+    # a flown peak, however short, lifts at least one neighbour; a spike leaves both where the rest is
+    left, right = float(around[middle - 1] - base), float(around[middle + 1] - base)
+    if max(abs(left), abs(right)) > 0.1 * abs(size):
+        return "flown"
+    # in rough air the rest is scattered as well
+    scatter = 1.4826 * float(np.median(np.abs(near - base)))
+    if abs(size) < 8.0 * scatter:
+        return "flown"
+    if series.quantity.endswith("load_factor"):
+        return _load_verdict(series, float(when[place]), size, others)
+    return "spike"
+
+
+def _load_verdict(series: Series, moment: float, size: float, others: Mapping[str, Series]) -> str:
+    """A jolt of the accelerometer: an impact on the ground is real, and so is what the attitude confirms."""
+    if _near_ground(moment, others, abs(size)):
+        return "doubt"
+    if series.quantity != "load_factor":
+        return "spike" if series.interval <= 0.15 and abs(size) > 2.0 else "doubt"
+    speed = next((others[name] for name in ("true_airspeed", "calibrated_airspeed", "indicated_airspeed") if name in others), None)
+    fast = 60.0
+    if speed is not None:
+        there = speed.near(moment, 2 * speed.interval + 0.5)
+        if len(there):
+            fast = max(25.0, float(np.median(there)))
+    # the pitch rate that so much load factor takes at this speed
+    expected = STANDARD_GRAVITY * abs(size) / fast
+    seen = False
+    rate = others.get("pitch_rate")
+    if rate is not None and rate.interval <= 2.1 * series.interval:
+        there = rate.near(moment, 2 * rate.interval)
+        if len(there) >= 3:
+            seen = True
+            if float(np.ptp(there)) > 0.25 * expected:
+                return "flown"
+    pitch = others.get("pitch_angle")
+    if pitch is not None and pitch.interval <= 2.1 * series.interval:
+        there = pitch.near(moment, 2 * pitch.interval)
+        if len(there) >= 3:
+            seen = True
+            if float(np.ptp(there)) > 0.25 * expected * 2 * series.interval + 0.3 * _DEG:
+                return "flown"
+    if seen:
+        return "spike"
+    # alone, only a jump that no aeroplane can make within two intervals of an eighth of a second
+    return "spike" if series.interval <= 0.15 and abs(size) > 2.5 else "doubt"
+
+
+def _near_ground(moment: float, others: Mapping[str, Series], size: float) -> bool:
+    """Could it be a landing's impact?"""
+    wheels = others.get("weight_on_wheels")
+    if wheels is not None:
+        return bool(np.any(wheels.near(moment, 4.0) > 0.5))
+    radio = others.get("height_above_ground")
+    if radio is not None:
+        there = radio.near(moment, 4.0)
+        return len(there) == 0 or bool(np.min(there) < 30.0)
+    height = others.get("pressure_altitude") or others.get("geometric_altitude")
+    if height is not None:
+        there = height.near(moment, 4.0)
+        if len(there):
+            # aerodromes differ in height: the lowest of the log, and ten minutes around, with 100 m to spare
+            around = height.near(moment, 600.0)
+            return bool(np.min(there) < min(float(np.nanmin(height.values)) + 100.0, float(np.min(around)) + 100.0))
+    speed = others.get("indicated_airspeed") or others.get("ground_speed")
+    if speed is not None:
+        there = speed.near(moment, 4.0)
+        return len(there) == 0 or bool(np.median(there) < 0.6 * float(np.nanpercentile(speed.values[:: max(1, len(speed.values) // 5000)], 90)))
+    return size < 6.0
+
+
+def _stuck(series: Series, others: Mapping[str, Series], out: Checked) -> None:
+    """The very same figure for long, from a channel that is never still, while others move."""
+    values = series.values
+    lasting = 5.0 if series.quantity.endswith("load_factor") or series.quantity.endswith("rate") else 30.0
+    long = int(max(lasting / max(series.interval, 1e-6), 20))
+    if len(values) < 3 * long:
+        return
+    # a stretch longer than twice the spacing of these probes shows equal figures at two of them
+    probes = values[:: max(1, long // 2)]
+    same = np.flatnonzero(probes[1:] == probes[:-1])
+    if len(same) == 0:
+        return
+    step = max(1, long // 2)
+    spans = []
+    for place in same.tolist():
+        first, last = place * step, min((place + 1) * step, len(values) - 1)
+        if spans and first <= spans[-1]:
+            continue
+        if not np.all(values[first : last + 1] == values[first]):
+            continue
+        while first > 0 and values[first - 1] == values[first]:
+            first -= 1
+        while last + 1 < len(values) and values[last + 1] == values[last]:
+            last += 1
+        spans += [first, last]
+    usual = _usual_run(values)
+    when = series.at()
+    for first, last in zip(spans[0::2], spans[1::2], strict=True):
+        if last - first < max(long, 20 * usual):
+            continue
+        begin, end = float(when[first]), float(when[last])
+        moved = 0
+        for name, other in others.items():
+            if name == series.quantity or name not in _MOVED:
+                continue
+            a, b = np.searchsorted(other.at(), (begin, end))
+            there = other.values[a:b]
+            there = there[np.isfinite(there)]
+            moved += len(there) > 3 and float(np.ptp(there)) > _MOVED[name]
+        if moved >= 2:
+            _reject(values, np.arange(first + 1, last + 1), "stuck", out)
+        elif moved == 1:
+            out.notes.append(f"the same figure for {end - begin:.0f} s while one other channel moved: kept")
+
+
+def _usual_run(values: Array) -> float:
+    """How many samples in a row are usually equal (99 of 100 runs are shorter)."""
+    some = values[: 1 << 16]
+    equal = some[1:] == some[:-1]
+    lengths = np.diff(runs(equal), axis=1).ravel() + 1
+    return float(np.percentile(lengths, 99)) if len(lengths) else 1.0

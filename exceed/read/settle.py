@@ -96,15 +96,19 @@ def finish(
                 result.unresolved.append(Unresolved(other.raw.column.name, reason))
         ready.append((best, quantity))
         result.used += [best.raw.column.index, *best.raw.column.group]
-    companions = {quantity: one for one, quantity in ready}
+    series: dict[str, quality.Series] = {}
     for one, quantity in ready:
-        channel, rejected = _channel(one, quantity, time, ranges.get(quantity), companions)
-        if channel is None:
+        if len(one.raw.values) == 0:
             result.unresolved.append(Unresolved(one.raw.column.name, "holds no value"))
             continue
-        result.channels[quantity] = channel
-        result.rejected += rejected
-        one.raw.values = np.empty(0)
+        series[quantity] = _series(one, quantity, time)
+    for one, quantity in ready:
+        if quantity in series:
+            channel, rejected = _channel(one, series[quantity], time, ranges.get(quantity), series)
+            result.channels[quantity] = channel
+            result.rejected += rejected
+    for channel in result.channels.values():
+        frozen(channel.values)
     for column, places, texts, name in cells:
         if column.quantity in result.channels:
             result.rejected.append(_not_numbers(column, places, texts, name, time))
@@ -138,58 +142,60 @@ def _why(best: evidence.Settled, other: evidence.Settled, total: int) -> str:
     return "it stands first"
 
 
-def _channel(
-    one: evidence.Settled, quantity: str, time: Instants, sensor: tuple[float, float] | None, companions: Mapping[str, evidence.Settled]
-) -> tuple[Channel | None, list[Rejected]]:
-    raw, column = one.raw, one.raw.column
-    if len(raw.values) == 0:
-        return None, []
+def _series(one: evidence.Settled, quantity: str, time: Instants) -> quality.Series:
+    """The figures as written become SI, in place where they may."""
+    raw = one.raw
     values = raw.values
-    step = quality.resolution(values)
+    step = abs(one.scale) * quality.resolution(values)
     if not values.flags.writeable:
         values = values.copy()
     if one.scale != 1.0:
         values *= one.scale
     if one.offset != 0.0:
         values += one.offset
-    at = time.time if raw.rows is None else time.time[raw.rows]
-    interval = median_interval(at)
     row = QUANTITIES.get(quantity)
     discrete = row.discrete if row is not None else one.unit == "state"
-    notes = [*raw.notes, *one.notes]
-    checked = quality.check(values, at, quantity, interval, discrete, abs(one.scale) * step, sensor, _others(companions, quantity, time))
-    rejected = [
-        Rejected(quantity, column.name, float(at[first]), float(at[last]), samples, reason, extreme,
-                 (int(first if raw.rows is None else raw.rows[first]), int(last if raw.rows is None else raw.rows[last])))
-        for first, last, samples, reason, extreme in checked.rejected
-    ]  # fmt: skip
-    notes += checked.notes
-    expected = len(time.time) / max(1, round(interval / median_interval(time.time))) if len(time.time) > 1 else 1.0
-    share = min(1.0, (len(values) - checked.lost) / max(1.0, expected))
+    rows = raw.rows
+    made: list[Array] = []
+
+    def at() -> Array:
+        if rows is None:
+            return time.time
+        if not made:
+            made.append(time.time[rows])
+        return made[0]
+
+    interval = median_interval(time.time if rows is None else time.time[rows])
+    return quality.Series(quantity, values, at, interval, step, discrete)
+
+
+def _channel(
+    one: evidence.Settled, series: quality.Series, time: Instants, sensor: tuple[float, float] | None, others: Mapping[str, quality.Series]
+) -> tuple[Channel, list[Rejected]]:
+    raw, column = one.raw, one.raw.column
+    checked = quality.check(series, sensor, others)
+    rejected = []
+    if checked.rejected:
+        at = series.at()
+        for first, last, samples, reason, extreme in checked.rejected:
+            rows = (first, last) if raw.rows is None else (int(raw.rows[first]), int(raw.rows[last]))
+            rejected.append(Rejected(series.quantity, column.name, float(at[first]), float(at[last]), samples, reason, extreme, rows))
+    expected = len(time.time) / max(1, round(series.interval / median_interval(time.time))) if len(time.time) > 1 else 1.0
+    share = min(1.0, (len(series.values) - checked.lost) / max(1.0, expected))
     return Channel(
-        quantity=quantity, column=column.name if not column.group else f"{column.name} (+{len(column.group) - 1})",
-        values=frozen(values), rows=None if raw.rows is None else frozen(raw.rows),
-        interval=interval, unit=one.unit, scale=one.scale, offset=one.offset, discrete=discrete, found_by=one.found_by, reason=one.reason,
-        sign=one.sign, datum=one.datum, standard_uncertainty=_accuracy(column),
+        quantity=series.quantity, column=column.name if not column.group else f"{column.name} (+{len(column.group) - 1})",
+        values=series.values, rows=None if raw.rows is None else frozen(raw.rows),
+        interval=series.interval, unit=one.unit, scale=one.scale, offset=one.offset, discrete=series.discrete, found_by=one.found_by,
+        reason=one.reason, sign=one.sign, datum=one.datum, standard_uncertainty=_accuracy(column),
         uncertainty_source="channels file" if column.accuracy is not None else "",
-        resolution=abs(one.scale) * step, noise=checked.noise, saturation=checked.saturation, valid_share=round(share, 6), notes=tuple(notes),
+        resolution=series.step, noise=checked.noise, saturation=checked.saturation, valid_share=round(share, 6),
+        notes=(*raw.notes, *one.notes, *checked.notes),
     ), rejected  # fmt: skip
 
 
 def _accuracy(column: Column) -> float | None:
     """Standard uncertainty from the channels file's accuracy, a 95 % half-width already in SI."""
     return None if column.accuracy is None else column.accuracy / 1.96
-
-
-def _others(companions: Mapping[str, evidence.Settled], quantity: str, time: Instants) -> list[tuple[str, Array, Array]]:
-    """Raw companions that would show it if a jump were flown: (quantity, instants, values)."""
-    found = []
-    for name in quality.COMPANIONS.get(quantity, ()):
-        one = companions.get(name)
-        if one is not None and len(one.raw.values) > 8:
-            at = time.time if one.raw.rows is None else time.time[one.raw.rows]
-            found.append((name, at, one.raw.values))
-    return found
 
 
 def _not_numbers(column: Column, places: Any, texts: list[str], name: str, time: Instants) -> Rejected:
@@ -211,8 +217,8 @@ def faulty(survey: Survey, time: Instants) -> list[tuple[str, float, float, str]
         if column is None or not column.quantity:
             continue
         first, last = float(time.time[0]), float(time.time[-1])
-        start = _moment(getattr(entry, "from_", None), time, first)
-        end = _moment(getattr(entry, "to", None), time, last)
+        start = _moment(getattr(entry, "start", None), time, first)
+        end = _moment(getattr(entry, "end", None), time, last)
         if end > first - 1e-9 and start < last + 1e-9:
             out.append((column.quantity, max(start, first), min(end, last), str(getattr(entry, "reason", "") or "faulty")))
     return out

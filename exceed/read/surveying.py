@@ -5,8 +5,8 @@ from __future__ import annotations
 import os
 from collections.abc import Mapping, Sequence
 
-from exceed.core.units import UNITS
-from exceed.read.clock import find_clock
+from exceed.core.units import AIRSPEED_UNITS
+from exceed.read.clock import find_clock, stated_period
 from exceed.read.container import Source, open_source
 from exceed.read.rates import groups
 from exceed.read.recognise import columns_of, is_clock
@@ -62,6 +62,7 @@ def _declare(entry: object, known: dict[str, str]) -> None:
     from exceed.core.quantities import QUANTITIES
 
     quantity, unit = getattr(entry, "quantity", None), getattr(entry, "unit", None)
+    unit = AIRSPEED_UNITS[unit][0] if unit in AIRSPEED_UNITS else unit
     if quantity and quantity not in QUANTITIES and quantity not in known and unit:
         known[str(quantity)] = str(unit)
 
@@ -78,7 +79,7 @@ def assemble(
     more: list[str] = []
     if channels is not None:
         columns, more = apply_channels(columns, channels, declared, source.shown)
-    plan = (told_clock(columns, channels, cells, decimal, source.shown) if channels is not None else None) or clock or find_clock(
+    plan = (told_clock(columns, channels, cells, decimal, source.shown, stated_period(facts)) if channels is not None else None) or clock or find_clock(
         columns, facts, decimal, cells
     )
     columns = [c.with_(quantity=None, problem="") if c.index in plan.columns or c.index == plan.anchor else c for c in columns]
@@ -109,4 +110,4 @@ def _in_column(columns: Sequence[Column], cells: Sequence[Sequence[str]]) -> str
     return None
 
 
-__all__ = ["UNITS", "survey"]
+__all__ = ["survey"]

@@ -150,7 +150,7 @@ PHRASES: list[Phrase] = [
     *_rows("angle_of_attack", "aoa, angle of attack, alpha, incidence, alfa, aoal, aoar, incidence angle, aoa angle, alpha vane, aoa vane, "
            "local angle of attack, body angle of attack", 1.0),
     *_rows("sideslip_angle", "sideslip, sideslip angle, aos, angle of sideslip, slip angle, yaw sideslip, slipangle", 1.0),
-    *_rows("indicated_airspeed", "ias, indicated airspeed, indicated air speed, airspeed indicated, kias, vias, vi, iaskt, indicated speed, "
+    *_rows("indicated_airspeed", "ias, indicated airspeed, indicated air speed, airspeed indicated, kias, vias, vi, indicated speed, "
            "airspeed ias, speed indicated", 1.0),
     *_rows("indicated_airspeed", "airspeed, air speed, asi", 0.8),
     *_rows("calibrated_airspeed", "cas, calibrated airspeed, calibrated air speed, kcas, airspeed calibrated, vcas, vc, airspeed cas, "
@@ -187,7 +187,7 @@ PHRASES: list[Phrase] = [
            "delta p, dp, pdiff, diff pressure", 0.9),
     *_rows("altimeter_setting", "altimeter setting, qnh, baro setting, barometric setting, baro set, altimeter set, baro correction, baro", 0.9),
     *_rows("flap_angle", "flap, flap angle, flap position, flap deflection, trailing edge flap, te flap, flap surface, flapang, te flap angle, "
-           "trailing edge flap position, flap deg, te flap position, wing flap, wing flap angle, flap extended, flap setting, fl pos", 1.0),
+           "trailing edge flap position, te flap position, wing flap, wing flap angle, flap extended, flap setting, fl pos", 1.0),
     *_rows("gear_down", "gear, landing gear, gear down, gear position, landing gear down, gear down locked, landing gear position, ldg, lg, "
            "gear extended, gear dn lk, gear locked, gear down and locked, gear dnlk, gear down lock, landing gear extended, "
            "gear up, gear retracted, landing gear up, landing gear selection, gear downlock", 1.0),
@@ -208,7 +208,7 @@ PHRASES: list[Phrase] = [
     *_rows("mass", "mass, gross mass, gross weight, gw, weight, aircraft mass, aircraft weight, total mass, auw, all up weight, "
            "total weight, aircraft gross weight, airplane weight, aeroplane mass", 0.9),
     *_rows("centre_of_gravity", "centre of gravity, cg position, xcg, centre gravity, cg arm, x cg, centre of gravity position, cg", 0.9),
-    *_rows("latitude", "latitude, lat, latp, present position latitude, gps latitude, position latitude, geometric latitude, lat deg, "
+    *_rows("latitude", "latitude, lat, latp, present position latitude, gps latitude, position latitude, geometric latitude, "
            "position lat, gps lat, geometric lat", 0.95),
     *_rows("longitude", "longitude, lon, lonp, long, lng, present position longitude, gps longitude, position longitude, geometric longitude, "
            "position lon, gps lon, gps long, geometric lon, geometric long", 0.95),

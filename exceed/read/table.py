@@ -45,7 +45,7 @@ class Layout:
 def split(line: str, delimiter: str) -> list[str]:
     """Cells of one line; a blank as delimiter means any run of blanks."""
     if delimiter == " ":
-        return line.split()
+        return [cell for cell in line.split(" ") if cell]
     if '"' not in line:
         return line.split(delimiter)
     return next(csv.reader([line], delimiter=delimiter), [])

@@ -7,7 +7,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from exceed.core.quantities import QUANTITIES
-from exceed.core.units import UNITS
+from exceed.core.units import AIRSPEED_UNITS, UNITS
 from exceed.errors import LogError, Problem
 from exceed.read.cells import is_missing
 from exceed.read.clock import _numbers
@@ -48,6 +48,7 @@ def apply_channels(
             continue
         column = found[0]
         unit = getattr(entry, "unit", None) or None
+        unit = AIRSPEED_UNITS[unit][0] if unit in AIRSPEED_UNITS else unit
         quantity = str(entry.quantity)
         row = QUANTITIES.get(quantity)
         if unit is None and row is not None and row.discrete:
@@ -82,7 +83,7 @@ def _si(accuracy: Any) -> float | None:
 
 
 def told_clock(
-    columns: Sequence[Column], channels: Any, cells: Sequence[Sequence[str]], decimal: str, shown: str
+    columns: Sequence[Column], channels: Any, cells: Sequence[Sequence[str]], decimal: str, shown: str, period: float | None = None
 ) -> ClockPlan | None:
     """The clock that the channels file names."""
     clock = getattr(channels, "clock", None)
@@ -105,13 +106,15 @@ def told_clock(
     offset = _si(getattr(clock, "offset", None)) or 0.0
     unit = getattr(clock, "unit", None)
     factor = UNITS[str(unit)].factor if unit else 1.0
-    rate = getattr(clock, "rate", None)
+    interval = getattr(clock, "interval", None)
     if kind in ("elapsed", "epoch", "frame"):
         if kind == "epoch" and not unit:
             top = max(_numbers(cells[places[0]], decimal), default=0.0)
             factor = next((s for s in (1.0, 1e-3, 1e-6, 1e-9) if 6.3e8 <= top * s <= 4.1e9), 1.0)
-        if kind == "frame" and rate:
-            factor = 1.0 / (_si(rate) or 1.0)
+        if kind == "frame" and interval is not None:
+            factor = _si(interval) or 1.0
+        elif kind == "frame" and period is not None:
+            factor = period
         role = "frame" if kind == "frame" else "number"
         return ClockPlan(kind, (places[0],), unit=factor, zone=zone or ("UTC" if kind == "epoch" else ""), offset=offset, typed="number",
                          roles=(role,), notes=("the clock is the channels file's",))  # fmt: skip
