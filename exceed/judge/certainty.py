@@ -136,23 +136,43 @@ def is_undecided(peak: Peak, level: float) -> bool:
     return peak.sized and probability_beyond(peak, level) >= POSSIBLE and hidden_beyond(peak, level) >= POSSIBLE
 
 
+def _opened(peak: Peak) -> Peak:
+    spread = peak.down if peak.side > 0 else peak.up
+    return replace(
+        peak,
+        estimate=peak.recorded,
+        low=peak.recorded - _Z95 * spread if peak.side > 0 else None,
+        high=peak.recorded + _Z95 * spread if peak.side < 0 else None,
+        down=spread,
+        up=spread,
+        outward=_SCORES[4] * spread,
+        sized=False,
+    )
+
+
 def highest(peaks: Sequence[Peak]) -> Peak:
     """The true extreme of an excursion that has several competing peaks, all of one side.
 
     An excursion in rough air has many humps, and the highest sample need not stand on the highest one. The sampling
-    errors of humps are taken as independent and the sensor's error as common. An open one decides alone.
-    Time and recorded value are those of the highest recorded peak; so is the rest where it has no rival.
+    errors of humps are taken as independent and the sensor's error as common. Time and recorded value are those of the
+    highest recorded peak, and so is the rest where no other comes near it. An open hump that does leaves it open too.
     """
     if not peaks or len({p.side for p in peaks}) != 1:
         raise ValueError("one or more peaks of one side are needed")
     side = peaks[0].side
     place = max(range(len(peaks)), key=lambda i: side * peaks[i].recorded)
     first = peaks[place]
-    is_open = [p for p in peaks if p.low is None or p.high is None]
-    if is_open:
-        return max(is_open, key=lambda p: side * p.recorded)
+    if first.low is None or first.high is None:
+        return first
     first_ends = _ends(first, False)
-    rivals = [e for i, p in enumerate(peaks) if i != place and (e := _ends(p, False))[-1] > first_ends[1]]
+    rivals = []
+    for p in (p for i, p in enumerate(peaks) if i != place):
+        ends = _ends(p, False)
+        if p.low is None or p.high is None:
+            if ends[2] > first_ends[0]:
+                return _opened(first)
+        elif ends[3] > first_ends[2]:
+            rivals.append(ends)
     if not rivals:
         return first
     every = [first_ends, *rivals]
