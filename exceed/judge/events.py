@@ -46,6 +46,8 @@ CONTEXT: tuple[str, ...] = (
     "static_air_temperature",
     "stall_margin",
 )
+# a sample so few intervals from an event is its shoulder
+SHOULDER = 2.5
 # undecided ones closer together than this are one question, s
 ONE_QUESTION = 1.0
 
@@ -78,7 +80,7 @@ def build_events(
     breaks = np.unique(np.concatenate(scan.breaks)) if scan.breaks else np.empty(0, np.int64)
     whole = joined(released(runs[0], scan.release_band()), rule.joining, breaks)
     places = np.unique(np.concatenate(scan.candidates)) if scan.candidates else np.empty(0, np.int64)
-    stretches = [_stretch(rule, whole, index) for index in range(len(whole))] + _hidden(places, whole, grid)
+    stretches = [_stretch(rule, whole, index) for index in range(len(whole))] + _hidden(places, whole, grid, rule.joining)
     if not stretches:
         return [], []
     events: list[Event] = []
@@ -106,13 +108,15 @@ def _stretch(rule: Compiled, runs: Runs, index: int) -> Stretch:
     return Stretch(start, end, int(runs.first[index]), int(runs.last[index]), cut)
 
 
-def _hidden(places: Index, whole: Runs, grid: Grid) -> list[Stretch]:
-    """Candidates that lie in no stretch of the lowest level, nor at the shoulder of one."""
+def _hidden(places: Index, whole: Runs, grid: Grid, joining: float) -> list[Stretch]:
+    """Candidates that lie in no stretch of the lowest level, nor so near to one that they would be joined to it."""
     if len(places) and len(whole):
+        near = max(joining, SHOULDER * grid.interval)
+        time = grid.time[places]
         home = np.searchsorted(whole.first, places, side="right") - 1
-        before = (home >= 0) & (places <= whole.last[np.maximum(home, 0)] + 2)
+        before = (home >= 0) & (time - whole.end[np.maximum(home, 0)] <= near)
         following = np.minimum(home + 1, len(whole) - 1)
-        after = (home + 1 < len(whole)) & (places >= whole.first[following] - 2)
+        after = (home + 1 < len(whole)) & (whole.start[following] - time <= near)
         places = places[~before & ~after]
     return [
         Stretch(float(grid.time[place]), float(grid.time[place]), int(place), int(place), None, sampled=False)
