@@ -307,16 +307,24 @@ def _root(spread: Array) -> Array:
 _LOG_PRIOR = np.array([_PRIOR[kind] for kind, _ in _CANDIDATES])
 
 
+def _noises(step: float, known: float | None, uncertainty: float) -> list[float]:
+    """Standard deviations of white noise to try, the largest last.
+
+    A noise measured above the sensor's own uncertainty is likely rough air or a slow channel's own signal: the samples
+    about the peak may speak for less.
+    """
+    if known is None:
+        return [step, math.hypot(step, 0.35 * uncertainty), math.hypot(step, uncertainty)]
+    floor = math.hypot(step, uncertainty)
+    return [known] if known <= floor else [floor, math.sqrt(floor * known), known]
+
+
 def _spread(u: Array, v: Array, place: int, step: float, known_noise: float | None, uncertainty: float) -> _Spread:
     a, b = max(0, place - NEAR), min(v.size, place + NEAR + 1)
     u, v = u[a:b], v[a:b]
     before, after = place - a, b - 1 - place
     scale = float(np.ptp(v))
-    noises = (
-        [known_noise]
-        if known_noise is not None
-        else [step, math.hypot(step, 0.35 * uncertainty), math.hypot(step, uncertainty)]
-    )
+    noises = _noises(step, known_noise, uncertainty)
     if scale <= 1e-12 * float(np.abs(v).max()) or scale == 0.0:
         return _Spread(float(v[0]) - noises[0], float(v[0]), float(v[0]) + noises[0], 0.0, noises[0])
     base = float(v.mean())

@@ -62,6 +62,25 @@ def test_an_unmeasured_noise_within_the_stated_accuracy_costs_no_coverage() -> N
     assert np.mean([c.covered for c in every]) >= 0.95
 
 
+def test_a_noise_measured_in_rough_air_widens_the_interval_little() -> None:
+    """Rough air passes for noise where it is measured from the whole log: eight times too much here."""
+    found = []
+    for family in yardstick.CHECK:
+        for k in range(CASES // 3):
+            c = yardstick.record(family, 8.0, 700_000 + k, noise=0.005, resolution=0.004, accuracy=0.01)
+            sized = [
+                peaks.size_peak(
+                    c.time, c.values, c.side, c.index, standard_uncertainty=c.standard_uncertainty, interval=0.125,
+                    resolution=c.resolution, noise=noise,
+                )
+                for noise in (0.005, 0.04)
+            ]  # fmt: skip
+            found.append((yardstick.inside(sized[1], c.true_peak), *(yardstick.half_width(p) for p in sized)))
+    held, right, wrong = np.array(found).T
+    assert held.mean() >= 0.95
+    assert np.median(wrong) < 1.6 * np.median(right)
+
+
 @pytest.mark.parametrize("noise_known", [True, False])
 def test_at_8_hz_the_interval_of_a_manoeuvre_is_narrow(noise_known: bool) -> None:
     """Pulls and pushes of 0.3 to 6 s, a sensor of 0.005 g: half-width at most 0.05 g in the middle."""
