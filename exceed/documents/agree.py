@@ -7,13 +7,12 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from exceed.core.quantities import QUANTITIES, Quantity
-from exceed.core.units import units_of
 from exceed.documents import facts
 from exceed.documents.conditions import AIRBORNE, Condition, never, state_words
 from exceed.documents.fields import Faults, Path, an, nearest
 from exceed.documents.limits import ConstantLimit, FactLimit, RelativeLimit, TableLimit
 from exceed.documents.order import levels_in_order
-from exceed.documents.values import Value, expected_of
+from exceed.documents.values import Value, expected_of, usual_unit
 
 if TYPE_CHECKING:
     from exceed.documents.rules import Rule
@@ -123,7 +122,7 @@ def _right(value: Value, kind: str, quantity: str, found: Faults, path: Path, *,
 
 def _example(quantity: str, kind: str) -> str:
     row = QUANTITIES.get(quantity)
-    return row.shown if row is not None and row.kind == kind else units_of(kind)[0]
+    return row.shown if row is not None and row.kind == kind else usual_unit(kind)
 
 
 def _discrete(rule: Rule, found: Faults) -> None:

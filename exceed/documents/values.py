@@ -80,6 +80,11 @@ _USUAL = {
 }
 
 
+def usual_unit(kind: str) -> str:
+    """The unit in which an example of a kind is given."""
+    return _USUAL.get(kind) or next(name for name in units_of(kind) if name != "1")
+
+
 class ValueFault(ValueError):  # noqa: N818
     """One value that cannot be read; the text is composed where its place is known."""
 
@@ -269,7 +274,7 @@ def parse(
     if not rest:
         if bare:
             return Value(number, "ratio", "1", tidy)
-        example = next((_USUAL.get(kind) or units_of(kind)[0] for kind in wanted), "kt")
+        example = usual_unit(wanted[0]) if wanted else "kt"
         if airspeed == "required":
             example = "KIAS"
         raise ValueFault(f"{shown} has no unit", expected, f"write the unit after the number, as in '{tidy} {example}'")

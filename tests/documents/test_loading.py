@@ -53,7 +53,7 @@ def test_a_station_that_is_not_there_or_has_no_density_is_said() -> None:
 
 
 def test_an_overloaded_station_is_noted() -> None:
-    made = load_loading(HEAD + "stations: {baggage: 30 kg}\n")
+    made = load_loading(HEAD + "stations: {baggage: 30 kg, pilot: 300 kg, passenger: 110 kg}\n")
     assert overloaded(made, load_aircraft(template("aircraft"))) == (
         "station baggage carries 30.0 kg, more than its maximum of 25 kg",
     )

@@ -422,6 +422,11 @@ WRONG = [
         "'100 %' leaves nothing beyond the limit",
     ),
     (
+        "quantity: load_factor, limit: 6 g, above: {caution: 100 %}, "
+        "allowed: [{up_to: 110 %, for: 5 s}, {up_to: ^110 %, for: 4 s}]",
+        "'110 %' is not beyond '110 %' before it",
+    ),
+    (
         "quantity: load_factor, limit: 6 g, above: {caution: 100 %}, allowed: [{up_to: 110 %, for: 5 s}, {up_to: ^105 %, for: 4 s}]",  # noqa: E501
         "'105 %' is not beyond '110 %' before it",
     ),
@@ -509,6 +514,21 @@ def test_all_mistakes_of_all_rules_are_listed_at_once() -> None:
         "'cruize' is not a phase",
         "key 'joning' is not known here",
     ]
+
+
+@pytest.mark.parametrize(
+    ("body", "do"),
+    [
+        ("quantity: load_factor, above: {caution: 6}", "write the unit, as in '6 g'"),
+        ("quantity: vertical_speed, above: {caution: 600}", "write the unit, as in '600 ft/min'"),
+        ("quantity: oil_temperature, above: {caution: 118}", "write the unit, as in '118 degC'"),
+        ("quantity: {rate_of: load_factor}, above: {caution: 3}", "write the unit, as in '3 g/s'"),
+    ],
+)
+def test_a_bare_number_is_answered_with_the_unit_of_the_quantity(body: str, do: str) -> None:
+    with pytest.raises(DocumentError) as caught:
+        one(body)
+    assert [row.do for row in caught.value.problems] == [do]
 
 
 def test_a_known_quantity_may_be_declared_again_in_a_unit_of_its_kind() -> None:

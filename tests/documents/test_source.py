@@ -175,6 +175,14 @@ def test_an_unquoted_date_is_read_and_lint_says_to_quote_it() -> None:
     assert lint(text.replace("2031-01-10", '"2031-01-10"')) == []
 
 
+def test_a_format_that_is_not_the_first_key_is_read_and_lint_says_so() -> None:
+    text = "type: Larkspur\n" + HEAD
+    assert [(row.place, row.problem) for row in lint(text)] == [("text:2:1", "'format' is not the first key")]
+    assert lint(HEAD + "type: Larkspur\n") == []
+    # without the key there is nothing to move
+    assert [row.problem for row in lint("type: Larkspur\n")] == ["key 'format' is missing"]
+
+
 def test_the_digest_is_that_of_the_bytes(tmp_path: Path) -> None:
     import hashlib
 
