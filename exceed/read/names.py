@@ -27,6 +27,8 @@ def words_of(name: str) -> list[str]:
     """Words of a heading, lower case: `NormAcc_2` -> norm, acc, 2."""
     text = re.sub(r"[''`\"]", "", name).replace("&", " and ")
     text = _CAMEL.sub(" ", text)
+    # a body rate's letter and the number of its sub-frame or sensor; N1, T1, V1 are names of their own
+    text = re.sub(r"(?<![A-Za-z0-9])([PQRpqr])(?=\d{1,2}(?![A-Za-z0-9]))", r"\1 ", text)
     return [word for word in re.split(r"[^A-Za-z0-9]+", text.lower()) if word]
 
 

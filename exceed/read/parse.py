@@ -29,12 +29,13 @@ class Parsed:
     tail: bytes | None = None
 
 
-def rewriter(layout: Layout) -> Callable[[Iterator[bytes]], Iterator[bytes]] | None:
-    """A change of the lines that the parser needs, or None."""
-    if not layout.squeeze and not layout.uneven:
+def rewriter(layout: Layout, mend: bool = False) -> Callable[[Iterator[bytes]], Iterator[bytes]] | None:
+    """A change of the lines that the parser needs, or None. `mend`: rows that lack or exceed empty cells are evened."""
+    even = mend or layout.uneven
+    if not layout.squeeze and not even:
         return None
     ends = re.compile(rb"\r\n|\r|\n")
-    width, mark = layout.width, layout.delimiter.encode()
+    width, mark, delimiter = layout.width, layout.delimiter.encode(), layout.delimiter
 
     def lines(pieces: Iterator[bytes]) -> Iterator[bytes]:
         rest = b""
@@ -46,20 +47,46 @@ def rewriter(layout: Layout) -> Callable[[Iterator[bytes]], Iterator[bytes]] | N
             parts = ends.split(block)
             rest = parts.pop() + held
             if parts:
-                yield b"\n".join(mend(part) for part in parts) + b"\n"
-        if rest.strip(b"\r"):
+                yield b"\n".join(changed(part) for part in parts) + b"\n"
+        if rest.endswith(b"\r"):
+            yield changed(rest[:-1]) + b"\n"
+        elif rest:
             # a line without its end may be cut: it is not filled up, so that it shows
-            last = rest.rstrip(b"\r")
-            yield b" ".join(cell for cell in last.split(b" ") if cell) if layout.squeeze else last
+            yield squeezed(rest) if layout.squeeze else rest
 
-    def mend(line: bytes) -> bytes:
+    def squeezed(line: bytes) -> bytes:
+        return b" ".join(cell for cell in line.split(b" ") if cell)
+
+    def changed(line: bytes) -> bytes:
         if layout.squeeze:
-            return b" ".join(cell for cell in line.split(b" ") if cell)
-        missing = width - 1 - line.count(mark)
-        # only lines that left off their empty end are filled up; the rest stays as it is, to be counted
-        return line + mark * missing if 0 < missing and line.count(mark) and b'"' not in line else line
+            return squeezed(line)
+        if b'"' in line:
+            return quoted(line)
+        count = line.count(mark) + 1
+        if count == width or count == 1:
+            return line
+        if count < width:
+            return line + mark * (width - count)
+        cells = line.split(mark)
+        return mark.join(cells[:width]) if not any(cell.strip() for cell in cells[width:]) else line
+
+    def quoted(line: bytes) -> bytes:
+        cells = split(line.decode("utf-8", "replace"), delimiter)
+        if len(cells) == width or len(cells) == 1 or any(cell.strip() for cell in cells[width:]):
+            return line
+        cells = [*cells[:width], *[""] * (width - len(cells))]
+        return delimiter.join('"' + cell.replace('"', '""') + '"' for cell in cells).encode()
 
     return lines
+
+
+def mendable(stray: Sequence[str], layout: Layout) -> bool:
+    """Is a line that was left out only longer by empty cells?"""
+    for text in stray:
+        cells = split(text, layout.delimiter)
+        if len(cells) > layout.width and not any(cell.strip() for cell in cells[layout.width :]):
+            return True
+    return False
 
 
 class Reader:
@@ -74,9 +101,10 @@ class Reader:
         types = dict(types)
         texts: set[int] = {place for place, kind in types.items() if kind == "text"}
         digest = Digest(self.source.location) if self.source.direct else None
+        mend = False
         for attempt in range(8):
             try:
-                parsed = self._once(types)
+                parsed = self._once(types, mend)
             except _Retry as retry:
                 # one column first; if a third fails, most probably all have the same stray rows
                 failing = [retry.column] if attempt < 2 and retry.column in types else [p for p, k in types.items() if k != "text"]
@@ -84,13 +112,16 @@ class Reader:
                     types[place] = "text"
                     texts.add(place)
                 continue
+            if parsed.uneven_count and not mend and mendable(parsed.uneven, self.layout):
+                mend = True
+                continue
             parsed.texts = texts
             if digest is not None:
                 parsed.sha256 = parsed.content_sha256 = digest.result()
             return parsed
         raise fail(self.source.shown, "its columns cannot be read as numbers or as text", do="export the log as CSV again")
 
-    def _once(self, types: dict[int, str]) -> Parsed:
+    def _once(self, types: dict[int, str], mend: bool) -> Parsed:
         import pyarrow as pa
         import pyarrow.csv as arrow_csv
 
@@ -102,16 +133,16 @@ class Reader:
 
         def uneven(row: Any) -> str:
             count[0] += 1
-            if len(stray) < 5:
+            if len(stray) < 50:
                 stray.append(row.text)
             return "skip"
 
         stream: Any = None
         handle: Any
-        if self.source.direct and rewriter(layout) is None:
+        if self.source.direct and rewriter(layout, mend) is None:
             handle = pa.memory_map(self.source.location)
         else:
-            stream = Utf8Stream(self.source, rewriter(layout))
+            stream = Utf8Stream(self.source, rewriter(layout, mend))
             handle = pa.PythonFile(stream, mode="r")
         try:
             table = arrow_csv.read_csv(

@@ -12,8 +12,9 @@ from exceed.core.recording import Array
 from exceed.read.look import Column
 
 _SUFFIX = re.compile(r"^(.*?)[\s_\-.]*[\[(]?(\d{1,3})[\])]?$")
-# a repeat has to show this often, and this purely, before a column is taken for a slower one
-_LEAST_CHANGES = 20
+# so many changes, all on one phase of the period, that chance would do it once in a million times
+_LEAST_CHANGES = 8
+_LEAST_BITS = 20.0
 _HELD_AT_MOST = 64
 
 
@@ -50,7 +51,7 @@ def held(values: Array) -> tuple[int, int] | None:
     a hundred, where rows were lost), and often enough that a steady value cannot look the same.
     """
     count = len(values)
-    if count < 4 * _LEAST_CHANGES:
+    if count < 8 * _LEAST_CHANGES:
         return None
     block = values[: 1 << 16]
     # most columns change at neighbouring rows: that settles it at once
@@ -65,10 +66,7 @@ def held(values: Array) -> tuple[int, int] | None:
         if np.mean(spacing % period == 0) > 0.97:
             every = period
             break
-    if not every:
-        return None
-    # chance: a slow channel that changes rarely falls on a phase by luck; the value must use most of its turns
-    if np.count_nonzero(spacing == every) < 0.25 * len(spacing):
+    if not every or len(spacing) * np.log2(every) < _LEAST_BITS:
         return None
     phases = np.bincount(changed % every, minlength=every)
     phase = int(np.argmax(phases))

@@ -148,7 +148,13 @@ def _redundant(pieces: list[Array]) -> bool:
     good = np.isfinite(own) & np.isfinite(following)
     if np.count_nonzero(good) < 8:
         return False
-    here, there = float(np.mean(own[good])), float(np.mean(following[good]))
+    # where something moves, and without the jumps of an angle that wraps
+    moving = good & ((own > 0) | (following > 0))
+    if np.count_nonzero(moving) < 8:
+        return False
+    own, following = own[moving], following[moving]
+    here = float(np.mean(np.minimum(own, np.percentile(own, 95))))
+    there = float(np.mean(np.minimum(following, np.percentile(following, 95))))
     if here == 0.0 and there == 0.0:
         return False
     return here < 0.6 * there

@@ -93,9 +93,9 @@ WORDS: dict[str, str] = {
 
 # words that only say which sensor, side or system it is
 SIDE = frozenset(
-    "1 2 3 4 l r left right lh rh capt captain fo pilot copilot main aux primary secondary prim sec adc adc1 adc2 adiru irs ahrs ads "
+    "l r left right lh rh capt captain fo pilot copilot main aux primary secondary prim sec adc adc1 adc2 adiru irs ahrs ads "
     "air_data efis dfdr fdr qar body axis cg c g sensor sns system sys aircraft ac plane a recorded rec value val measured meas "
-    "data actual act current cur raw std qne corrected corr filtered filt filtd smoothed of the in on at no nr number p1 p2 lo hi "
+    "data actual act current cur raw std qne corrected corr filtered filt filtd smoothed of the in on at no nr number lo hi "
     "channel chan ch signal sig mean_sea_level msl indicator disc discrete state status flag input fine coarse "
     "inertial calibrated".split()
 )

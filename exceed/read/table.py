@@ -117,8 +117,6 @@ def _delimiter(source: Source, lines: list[str]) -> tuple[str, int]:
         common = [count for count, times in counts.items() if times >= max(1, 0.05 * len(tail))]
         width = max(common) if common else counts.most_common(1)[0][0]
         modal = counts.most_common(1)[0][0]
-        if width > 2 * modal:
-            width = modal
         if width < 2:
             continue
         even = [row for row in split_rows if len(row) in (width, modal)]
