@@ -101,12 +101,10 @@ class Model(BaseModel):
         for key in value:
             if key not in known_keys:
                 near = nearest(str(key), cls.keys())
-                found.note(
-                    (key,),
-                    f"key '{key}' is not known here",
-                    f"one of {', '.join(sorted(cls.keys()))}",
-                    f"write '{near}' if that is meant" if near else "remove it",
-                )
+                do = f"write '{near}' if that is meant" if near else "remove it"
+                if str(key).partition(":")[0] in known_keys:
+                    do = "write a blank after the ':'"
+                found.note((key,), f"key '{key}' is not known here", f"one of {', '.join(sorted(cls.keys()))}", do)
         raise_any(found)
         return cls.prepare(value)
 

@@ -12,7 +12,10 @@ from exceed.errors import DocumentError, Problem
 
 MAXIMUM_BYTES = 2_000_000
 
-_NOT_TEXT = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x84\x86-\x9f\ud800-\udfff\ufeff\ufffe\uffff]")
+# control characters, lone surrogates, and marks that turn the direction of writing
+NOT_TEXT = re.compile(
+    "[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x84\x86-\x9f\u202a-\u202e\u2066-\u2069\ud800-\udfff\ufeff\ufffe\uffff]"
+)
 
 
 def read_text(path: Path | str, name: str | None = None) -> tuple[str, bytes]:
@@ -76,7 +79,7 @@ def decode(data: bytes, name: str) -> str:
 
 def clean(text: str, name: str) -> str:
     """The text itself. Raises DocumentError with the place of the first character that no YAML text may have."""
-    found = _NOT_TEXT.search(text)
+    found = NOT_TEXT.search(text)
     if found:
         raise DocumentError(
             Problem(
@@ -142,7 +145,8 @@ def syntax(error: yaml.YAMLError, name: str, text: str) -> Problem:
     said = str(getattr(error, "problem", "") or "")
     if mark is None:
         return Problem(name, "this is no YAML text", "YAML", "check that this is the right file")
-    if "unexpected end of stream" in said and start is not None:
+    # where it begins is where it can be mended
+    if start is not None and ("unexpected end of stream" in said or "could not find expected ':'" in said):
         mark = start
     place = f"{name}:{mark.line + 1}:{mark.column + 1}"
     lines = text.splitlines()

@@ -15,7 +15,7 @@ from typing import Any
 
 import yaml
 
-from exceed.documents.reading import clean, read_text, syntax
+from exceed.documents.reading import NOT_TEXT, clean, read_text, syntax
 from exceed.errors import DocumentError, Problem
 
 MAXIMUM_DEPTH = 32
@@ -25,7 +25,8 @@ _Loader: Any = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
 _QUOTES = ("'", '"', "|", ">")
 _ABSENT = {"", "~", "null", "Null", "NULL"}
 _DATE = re.compile(r"\d{4}-\d{2}-\d{2}([T ]\d{2}:\d{2}.*)?$")
-_DIGITS_COMMA = re.compile(r"[+-]?\d+$")
+_BEFORE_COMMA = re.compile(r"[+-]?\d+$", re.ASCII)
+_AFTER_COMMA = re.compile(r"\d+(\s*[A-Za-z%°/].*)?$", re.ASCII)
 
 
 @dataclass(slots=True, eq=False)
@@ -171,7 +172,7 @@ class _Builder:
             self._alias(event)
         elif isinstance(event, yaml.ScalarEvent):
             self._tag(event)
-            node = Scalar(mark.line + 1, mark.column + 1, event.value, event.style in _QUOTES)
+            node = Scalar(mark.line + 1, mark.column + 1, self._plain(event), event.style in _QUOTES)
             self._anchor(event, node)
             end: Any = event.end_mark
             self._add(node, node.quoted, mark.index, end.index)
@@ -197,6 +198,21 @@ class _Builder:
             elif isinstance(whole, Mapping):
                 self._mapping(whole, parts)
             self._add(whole, True, -1, -1)
+
+    def _plain(self, event: Any) -> str:
+        """The text of a scalar; a control character that an escape has smuggled in is told and replaced."""
+        text: str = event.value
+        found = NOT_TEXT.search(text)
+        if found is None:
+            return text
+        code = ord(found.group())
+        self._problem(
+            event.start_mark,
+            f"an escape makes a control character (U+{code:04X}) here",
+            "plain text",
+            "remove the escape",
+        )
+        return NOT_TEXT.sub("\ufffd", text)
 
     def _tag(self, event: Any) -> None:
         tag = event.tag
@@ -244,20 +260,25 @@ class _Builder:
         index = 0
         while index < len(parts):
             item = parts[index][0]
-            if index + 1 < len(parts) and (whole := self._decimal_comma(parts[index], parts[index + 1])):
+            if index + 1 < len(parts) and (whole := self._decimal_comma(parts[index], parts[index + 1], True)):
                 item = whole
                 index += 1
             made.items.append(item)
             index += 1
 
-    def _decimal_comma(self, first: tuple[Node, bool, int, int], second: tuple[Node, bool, int, int]) -> Scalar | None:
+    def _decimal_comma(
+        self, first: tuple[Node, bool, int, int], second: tuple[Node, bool, int, int], listed: bool
+    ) -> Scalar | None:
         """The value meant where '4,4 g' was torn in two: digits, a comma, and digits at once, all unquoted."""
         one, two = first[0], second[0]
         if not (isinstance(one, Scalar) and isinstance(two, Scalar)) or first[1] or second[1]:
             return None
         if second[2] - first[3] != 1 or self.text[first[3] : second[2]] != ",":
             return None
-        if not (_DIGITS_COMMA.match(one.text) and two.text[:1].isdigit()):
+        if not (_BEFORE_COMMA.match(one.text) and _AFTER_COMMA.match(two.text)):
+            return None
+        # [0,10] may well be two numbers
+        if listed and two.text.isdigit():
             return None
         whole = f"{one.text},{two.text}"
         self.problems.append(
@@ -284,7 +305,7 @@ class _Builder:
                     )
                 )
                 continue
-            if index and (whole := self._decimal_comma(parts[index - 1], parts[index])):
+            if index and (whole := self._decimal_comma(parts[index - 1], parts[index], False)):
                 if last in made.entries:
                     made.entries[last] = whole
                 continue

@@ -78,6 +78,12 @@ REFUSED = [
      "close the quote"),
     ("a colon in text", HEAD + "source: a: b\n", "2:10", "a ': ' stands where none can be", "valid YAML",
      "quote the text if the colon belongs to it, else start a new line"),
+    ("a key without a colon", HEAD + "mass\n", "2:1", "a ':' is missing after a key", "valid YAML",
+     "write 'key: value'"),
+    ("a colon without a blank", HEAD + "type:{a: b}\n", "2:1", "key 'type:{a' is not known here",
+     "one of category, flaps, format, fuel_consumption, gear, limits, load_factor, loading, mach, mass, "
+     "position_error, recorder, registration, rolling, serial, source, speeds, stall_speed, type, wing",
+     "write a blank after the ':'"),
     ("a crooked indent", HEAD + "mass:\n  empty: 600 kg\n maximum_take_off: 900 kg\n", "4:2", "a key is due here",
      "valid YAML", "align the keys of a mapping in one column, as in 'key: value'"),
     ("a merge key", HEAD + "limits: &b {a: 1 g}\nmass: {<<: *b}\n", "3:8", "merge key '<<' is not read",
@@ -111,6 +117,30 @@ def test_bad_text_is_refused_at_its_place(text: str, place: str, problem: str, e
     found = [row for row in lint(text) if row.problem == problem]
     assert found, [str(row) for row in lint(text)]
     assert (found[0].place, found[0].expected, found[0].do) == (f"text:{place}", expected, do)
+
+
+@pytest.mark.parametrize("text", ['"\\e[31m"', '"\\u202e"', '"a\\0b"'])
+def test_an_escape_cannot_smuggle_a_control_character_into_messages(text: str) -> None:
+    found = lint(HEAD + f"type: {text}\n{text}: 1\n")
+    assert [row.place for row in found if row.problem.startswith("an escape makes a control character (U+")] == [
+        "text:2:7",
+        "text:3:1",
+    ]
+    assert all(part.isprintable() for row in found for part in str(row).split("\n"))
+
+
+def test_two_plain_numbers_in_brackets_are_no_decimal_comma() -> None:
+    text = "a: [0,10]\nb: [0,0.5]\nc: [1 g,2 g]\nd: [1, 5 g]\ne: {x: 1,y: 2}\n"
+    document = parse(text)
+    assert document.problems == ()
+    assert plain(document.root)["a"] == ["0", "10"]
+
+
+def test_a_decimal_comma_in_a_plain_number_in_braces_is_told() -> None:
+    (problem,) = lint(HEAD + "mach: {maximum_operating: 0,80}\n")
+    assert (problem.place, problem.problem, problem.do) == (
+        "text:2:27", "'0,80' has a decimal comma", "write '0.80'",
+    )  # fmt: skip
 
 
 def test_aliases_that_expand_hugely_are_refused_at_once() -> None:
