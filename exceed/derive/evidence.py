@@ -14,11 +14,13 @@ from numpy.typing import NDArray
 from exceed.core.intervals import normal
 from exceed.core.recording import Array, Recording
 from exceed.derive.coarse import Coarse
+from exceed.physics.airspeed import calibrated_airspeed_from_impact_pressure
+from exceed.physics.atmosphere import pressure_altitude
 
 AIRSPEEDS = ("indicated_airspeed", "calibrated_airspeed", "equivalent_airspeed", "true_airspeed")
 HEIGHTS = ("pressure_altitude", "geometric_altitude")
 # what the evidence may come from, for reading no more columns than needed
-EVIDENCE = (*AIRSPEEDS, "ground_speed", *HEIGHTS, "weight_on_wheels", "height_above_ground")
+EVIDENCE = (*AIRSPEEDS, "ground_speed", *HEIGHTS, "static_pressure", "impact_pressure", "weight_on_wheels")
 
 # common practice of the trade, no source: the figures of this module, chosen wide
 HOP = 5.0  # s: shorter time in the air is a bounce or a hop
@@ -69,13 +71,21 @@ class Signals:
 def signals_of(coarse: Coarse) -> Signals:
     """The best speed and height that the recording has."""
     speed_name = next((name for name in AIRSPEEDS if coarse.has(name)), "")
-    if not speed_name and coarse.has("ground_speed"):
-        speed_name = "ground_speed"
-    height_name = next((name for name in HEIGHTS if coarse.has(name)), "")
+    speed = coarse.pick(speed_name) if speed_name else None
+    if speed is None and coarse.has("impact_pressure"):
+        speed_name = "calibrated_airspeed"
+        speed = calibrated_airspeed_from_impact_pressure(np.maximum(coarse.pick("impact_pressure"), 0.0))
+    if speed is None and coarse.has("ground_speed"):
+        speed_name, speed = "ground_speed", coarse.pick("ground_speed")
+    height_name = "pressure_altitude" if coarse.has("pressure_altitude") else ""
     height = coarse.pick(height_name) if height_name else None
+    if height is None and coarse.has("static_pressure"):
+        height_name, height = "pressure_altitude", pressure_altitude(coarse.pick("static_pressure"))
+    if height is None and coarse.has("geometric_altitude"):
+        height_name, height = "geometric_altitude", coarse.pick("geometric_altitude")
     return Signals(
         coarse,
-        coarse.pick(speed_name) if speed_name else None,
+        speed,
         speed_name,
         height,
         height_name,

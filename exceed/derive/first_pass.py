@@ -26,12 +26,14 @@ if TYPE_CHECKING:
 
 # common practice of the trade, no source: the figures of the datum estimate
 QUIET_BANK = np.radians(5.0)
+QUIET_TURN = np.radians(3.0)  # of heading in ten seconds
 QUIET_CLIMB = 1.0  # m/s
 QUIET_SCATTER = 0.03  # of load factor, between the means of neighbouring seconds
 LEAST_STANDSTILL = 5.0  # s
 LEAST_LEVEL = 30.0  # s of one level stretch
-# what a standstill cannot tell: the nose's attitude, where pitch is not recorded (cos 8 degrees is 0.990)
-ATTITUDE_UNKNOWN, ATTITUDE_KNOWN = 0.006, 0.002
+# what a standstill cannot tell: the nose's attitude, where pitch is not recorded (cos 12 degrees, on a tail wheel, is
+# 0.978: within twice the figure)
+ATTITUDE_UNKNOWN, ATTITUDE_KNOWN = 0.012, 0.002
 # what steady level flight cannot tell: angle of attack (the body axis is not the lift axis), slow climbs
 LEVEL_UNKNOWN = 0.006
 # quiet stretches of which nothing else is known may be a shallow turn
@@ -177,12 +179,19 @@ def _at_standstill(coarse: Coarse, standing: Intervals) -> tuple[float, float, s
 
 def _in_level_flight(coarse: Coarse, signals: Signals, found: Found) -> tuple[float, float, str] | None:
     """Mean over long stretches of level flight: their vertical speed does not change, so the mean is 1 g."""
-    if not found.known or signals.climb is None or not coarse.has("bank_angle"):
+    if not found.known or signals.climb is None:
         return None
-    bank = (coarse.pick("bank_angle") + np.pi) % (2.0 * np.pi) - np.pi
+    if coarse.has("bank_angle"):
+        straight = np.abs((coarse.pick("bank_angle") + np.pi) % (2.0 * np.pi) - np.pi) < QUIET_BANK
+    elif coarse.has("heading"):
+        heading = coarse.pick("heading")
+        known = np.isfinite(heading)
+        straight = known & (coarse.spread(np.unwrap(np.where(known, heading, 0.0)), 5.0) < QUIET_TURN)
+    else:
+        return None
     mean = coarse.statistics("load_factor").mean
     with np.errstate(invalid="ignore"):
-        level = (np.abs(bank) < QUIET_BANK) & (np.abs(signals.climb) < QUIET_CLIMB) & np.isfinite(mean)
+        level = straight & (np.abs(signals.climb) < QUIET_CLIMB) & np.isfinite(mean)
     level &= found.airborne.contains(coarse.time)
     runs = lasting(normal(coarse.time[level], (coarse.time + coarse.step)[level]), LEAST_LEVEL)
     if len(runs) == 0:

@@ -57,7 +57,9 @@ def flights_of(coarse: Coarse, signals: Signals, stall_speed: float | None = Non
         wheels = None
     if wheels is not None:
         stretches, method = wheels, "weight on wheels"
-        before, touch_within = 0.5 + recording.channels["weight_on_wheels"].interval, 0.0
+        interval = recording.channels["weight_on_wheels"].interval
+        # a slow switch only brackets the touchdown, and the accelerometer may show it
+        before, touch_within = 0.5 + interval, interval if interval > 0.3 else 0.0
     elif signals.speed is not None and limits is not None:
         stretches = air_by_speed(signals, limits, notes)
         method = limits.how + (f", with {signals.height_name.replace('_', ' ')}" if signals.height is not None else "")
@@ -71,7 +73,7 @@ def flights_of(coarse: Coarse, signals: Signals, stall_speed: float | None = Non
         reason = "no speed, height or weight on wheels tells flights apart: all recorded time counts as airborne"
         return Found((), everything, EMPTY, False, "none", (*notes, reason), None)
     stretches = _cut_at_seams(stretches, recording)
-    return _assembled(stretches, recording, signals, limits, method, notes, before, touch_within)
+    return _assembled(stretches, recording, signals, limits, method, notes, before, touch_within, wheels is not None)
 
 
 def _recorded_time(recording: Recording) -> Intervals:
@@ -111,6 +113,7 @@ def _assembled(
     notes: list[str],
     before: float,
     touch_within: float,
+    by_wheels: bool,
 ) -> Found:
     """Air stretches -> flights: hops, bounces and touch-and-goes put where they belong."""
     groups: list[list[Stretch]] = []
@@ -140,7 +143,7 @@ def _assembled(
         touchdowns: list[float] = []
         hops = 0
         for stretch in group:
-            if touch_within:
+            if not by_wheels:
                 touchdowns.extend(touches_between(signals, limits, stretch.start, stretch.end))
             if stretch.end_seen:
                 stretch.end = touchdown_near(recording, stretch.end, touch_within)
@@ -149,7 +152,7 @@ def _assembled(
             if stretch.end > stretch.start:
                 air.append((stretch.start, stretch.end))
         last = group[-1]
-        hops = min(hops, bounces.get(key, 0))
+        hops = max(min(hops, bounces.get(key, 0), len(touchdowns) - 1), 0)
         passes = sum(go_arounds(signals, limits, stretch.start, stretch.end, touchdowns) for stretch in group)
         flights.append(
             Flight(number, group[0].start, last.end, group[0].start_seen, last.end_seen,

@@ -85,7 +85,8 @@ def build_trace(
     first = first_pass(recording, aircraft, facts.stall_speed)
     weight = masses_of(first, aircraft, facts, mass, _several(loading))
     channels: dict[str, Channel] = {**first.channels, **weight.channels}
-    intervals = {name: channel.interval for name, channel in first.channels.items() if len(channel.values)}
+    empty = [name for name, channel in first.channels.items() if not _any_reading(channel)]
+    intervals = {name: channel.interval for name, channel in first.channels.items() if name not in empty}
     preset = dict(weight.steps)
     bank = first.channels.get("bank_angle")
     if bank is not None and (quantities is None or "inverted_time" in quantities):
@@ -106,7 +107,10 @@ def build_trace(
     used = closure(resolver.steps, wanted)
     steps = {name: _as_built(step, facts, channels) for name, step in resolver.steps.items() if name in used}
     missing = {name: why for name, why in resolver.missing.items() if name in wanted}
-    notes = tuple(dict.fromkeys((*first.notes, *facts.notes, *weight.notes)))
+    missing |= {name: f"column {first.channels[name].column} holds no reading" for name in empty if name in missing}
+    derived = [name for name in empty if name in steps]
+    instead = [f"column {first.channels[name].column} holds no reading: {name} is derived" for name in derived]
+    notes = tuple(dict.fromkeys((*first.notes, *facts.notes, *weight.notes, *instead)))
     return Trace(
         recording,
         MappingProxyType(channels),
@@ -117,6 +121,12 @@ def build_trace(
         notes,
         weight.flights,
     )
+
+
+def _any_reading(channel: Channel) -> bool:
+    """Whether a channel holds any reading: an empty column must not stand in the way of a derivation."""
+    some = channel.values[:: max(1, len(channel.values) // 1000)]
+    return bool(np.isfinite(some).any()) or bool(np.isfinite(channel.values).any())
 
 
 def _several(loading: Any) -> Sequence[Any]:
