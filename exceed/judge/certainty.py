@@ -17,7 +17,7 @@ from exceed.judge.peaks import HALO, Array, Peak, bend, size_peak
 
 __all__ = [
     "HALO", "Peak", "Word", "cap_at_possible", "certainty_word", "crossing_time", "duration_uncertainty",
-    "estimated_span", "hidden_beyond", "highest", "is_undecided", "probability_beyond", "probability_lasting",
+    "estimated_span", "hidden_beyond", "is_undecided", "probability_beyond", "probability_lasting",
     "shortest_sized", "size_peak", "upward_room", "white_noise",
 ]  # fmt: skip
 
@@ -147,52 +147,6 @@ def _opened(peak: Peak) -> Peak:
         up=spread,
         outward=_SCORES[4] * spread,
         sized=False,
-    )
-
-
-def highest(peaks: Sequence[Peak]) -> Peak:
-    """The true extreme of an excursion that has several competing peaks, all of one side.
-
-    An excursion in rough air has many humps, and the highest sample need not stand on the highest one. The sampling
-    errors of humps are taken as independent and the sensor's error as common. Time and recorded value are those of the
-    highest recorded peak, and so is the rest where no other comes near it. An open hump that does leaves it open too.
-    """
-    if not peaks or len({p.side for p in peaks}) != 1:
-        raise ValueError("one or more peaks of one side are needed")
-    side = peaks[0].side
-    place = max(range(len(peaks)), key=lambda i: side * peaks[i].recorded)
-    first = peaks[place]
-    if first.low is None or first.high is None:
-        return first
-    first_ends = _ends(first, False)
-    rivals = []
-    for p in (p for i, p in enumerate(peaks) if i != place):
-        ends = _ends(p, False)
-        if p.low is None or p.high is None:
-            if ends[2] > first_ends[0]:
-                return _opened(first)
-        elif ends[3] > first_ends[2]:
-            rivals.append(ends)
-    if not rivals:
-        return first
-    every = [first_ends, *rivals]
-    grid = np.linspace(min(min(e) for e in every), max(e[-1] for e in every) + 1e-12, 241)
-    chance = np.ones_like(grid)
-    for ends in every:
-        chance *= np.array([_normal(_score(ends, float(x))) for x in grid])
-    chance = np.maximum.accumulate(chance)
-    low, low_1, middle, high_1, outward, high = (
-        float(x) for x in np.interp([_normal(z) for z in _SCORES], chance, grid)
-    )
-    u = first.standard_uncertainty
-    low, high = middle - math.hypot(middle - low, _Z95 * u), middle + math.hypot(high - middle, _Z95 * u)
-    down, up = math.hypot(middle - low_1, u), math.hypot(high_1 - middle, u)
-    outward = math.hypot(outward - middle, _SCORES[4] * u)
-    if side < 0:
-        low, high, down, up = -high, -low, up, down
-    ratio = max(p.ratio for p in peaks)
-    return replace(
-        first, estimate=side * middle, low=low, high=high, down=down, up=up, outward=outward, sized=True, ratio=ratio
     )
 
 

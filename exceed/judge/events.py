@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from exceed.core.findings import Event, Level, LimitValue
+from exceed.core.intervals import Array
 from exceed.core.trace import Grid, Trace
 from exceed.judge import certainty
 from exceed.judge.block import Block
@@ -80,7 +81,8 @@ def build_events(
     breaks = np.unique(np.concatenate(scan.breaks)) if scan.breaks else np.empty(0, np.int64)
     whole = joined(released(runs[0], scan.release_band()), rule.joining, breaks)
     places = np.unique(np.concatenate(scan.candidates)) if scan.candidates else np.empty(0, np.int64)
-    stretches = [_stretch(rule, whole, index) for index in range(len(whole))] + _hidden(places, whole, grid, rule.joining)
+    stretches = [_stretch(rule, whole, index) for index in range(len(whole))]
+    stretches += _hidden(places, whole, grid, rule.joining)
     if not stretches:
         return [], []
     events: list[Event] = []
@@ -172,7 +174,7 @@ def _all(
     return made
 
 
-def _uncertainty(rule: Compiled, trace: Trace, grid: Grid, places: Index) -> np.ndarray:  # type: ignore[type-arg]
+def _uncertainty(rule: Compiled, trace: Trace, grid: Grid, places: Index) -> Array:
     """(k,) standard uncertainty of the judged value, and of a limit that is itself derived, at places."""
     name = rule.judged.removeprefix("rate_of:")
     if rule.discrete or not trace.has(name):

@@ -8,6 +8,7 @@ from dataclasses import replace
 import numpy as np
 
 from exceed.core.findings import SEVERITIES, Event
+from exceed.core.intervals import Array
 from exceed.judge.compiled import Allowance, Compiled
 from exceed.judge.excursions import Index, group_by_window, used_up
 
@@ -29,7 +30,7 @@ def _flights(events: list[Event]) -> Index:
     return np.array([event.flight or 0 for event in events], dtype=np.int64)
 
 
-def _spans(events: list[Event]) -> tuple[np.ndarray, np.ndarray]:  # type: ignore[type-arg]
+def _spans(events: list[Event]) -> tuple[Array, Array]:
     return np.array([event.start for event in events]), np.array([event.end for event in events])
 
 

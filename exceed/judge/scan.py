@@ -177,7 +177,7 @@ def scan_rule(rule: Compiled, block: Block, uncertainty: float = 0.0) -> RuleSca
         scan.band[1].append(ends)
     _find_breaks(scan, rule, block, known, live)
     if rule.judge_on == "estimate" and not rule.discrete:
-        _find_candidates(scan, rule, block, live, value, deciding)
+        _find_candidates(scan, rule, block, live, value, deciding, uncertainty)
     if uncertainty > 0.0:
         inside = live & (deciding <= 0.0) & (deciding > -1.96 * uncertainty)
         if inside[core].any():
@@ -305,7 +305,9 @@ def _find_breaks(scan: RuleScan, rule: Compiled, block: Block, known: Mask, live
     scan.breaks.append(np.flatnonzero(parts[block.core]) + block.core.start + block.offset)
 
 
-def _find_candidates(scan: RuleScan, rule: Compiled, block: Block, live: Mask, value: Array, deciding: Array) -> None:
+def _find_candidates(
+    scan: RuleScan, rule: Compiled, block: Block, live: Mask, value: Array, deciding: Array, uncertainty: float
+) -> None:
     """Samples inside the limit near which the truth between samples may lie beyond it: one a local extreme."""
     core = block.core
     inside = live & (deciding <= 0.0)
@@ -314,13 +316,19 @@ def _find_candidates(scan: RuleScan, rule: Compiled, block: Block, live: Mask, v
     near = np.where(inside, deciding, -np.inf)
     # the room between samples cannot exceed a few times the largest step in the block: a bound that costs one pass
     step = block.keep(("step", rule.judged), lambda: _largest_step(value))
-    if float(np.max(near[core])) + ROOM_PER_STEP * step + _white(block, rule) <= 0.0:
+    if float(np.max(near[core])) + ROOM_PER_STEP * step + 6.0 * _white(block, rule, uncertainty) <= 0.0:
         return
     room = block.keep(
         ("room", rule.judged, rule.side),
-        lambda: _room(block, rule, value),
+        lambda: certainty.upward_room(
+            block.time, value, rule.side, interval=block.grid.interval, noise=_white(block, rule, uncertainty)
+        ),
     )
     hopeful = inside & (deciding + room > 0.0)
+    if rule.must_see is not None:
+        # where the channel is too slow for the rule nothing is assessed, so nothing there is left to decide
+        longest = rule.must_see * MUST_SEE_TOLERANCE / certainty.INTERVALS_TO_SIZE
+        hopeful &= block.too_slow(longest) <= 0.0
     if not hopeful[core].any():
         return
     n = len(block)
@@ -332,24 +340,12 @@ def _find_candidates(scan: RuleScan, rule: Compiled, block: Block, live: Mask, v
         scan.candidates.append(places + block.offset)
 
 
-def _white(block: Block, rule: Compiled) -> float:
-    """What noise and resolution of the judged channel can add to the room, in its unit."""
+def _white(block: Block, rule: Compiled, uncertainty: float) -> float:
+    """Noise and resolution of the judged channel, in its unit; the value's uncertainty where they are not known."""
     channel = block.trace.channels.get(rule.judged)
-    if channel is None:
-        return 0.0
-    return 6.0 * float(np.hypot(channel.noise or 0.0, channel.resolution / np.sqrt(12.0)))
-
-
-def _room(block: Block, rule: Compiled, value: Array) -> Array:
-    channel = block.trace.channels.get(rule.judged)
-    return certainty.upward_room(
-        block.time,
-        value,
-        rule.side,
-        interval=block.grid.interval,
-        noise=(channel.noise or 0.0) if channel is not None else 0.0,
-        resolution=channel.resolution if channel is not None else 0.0,
-    )
+    if channel is None or channel.noise is None:
+        return uncertainty
+    return float(np.hypot(channel.noise, channel.resolution / np.sqrt(12.0)))
 
 
 def _largest_step(value: Array) -> float:

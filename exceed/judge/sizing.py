@@ -20,8 +20,10 @@ Mask = NDArray[np.bool_]
 
 # samples on either side of an extreme that its sizing looks at
 AROUND = 12
-# humps of one excursion that are sized besides the highest sample
-HUMPS = 3
+# s in which a quantity can go up and come back at the quickest, by kind: a body's loads and rates follow the stick, its
+# attitude takes longer, its speed and height longer still (judgement; the load factor's is what the yardstick holds)
+QUICKEST = {"load factor": 0.3, "angular rate": 0.3, "angle": 1.0, "rotation": 1.0}
+QUICKEST_OTHERS = 3.0
 NOT_SIZED = "not sized: the channel is too slow for the peak between its samples"
 SATURATED = "the sensor was at the end of its range: at least this much"
 
@@ -77,7 +79,7 @@ def size(rule: Compiled, trace: Trace, grid: Grid, strip: Strip, at: int, uncert
         chances = tuple(by_sensor(rule.side * (here - threshold), uncertainty) for threshold in thresholds)
         return Sized(PeakValue(when, here, here, here - half, here + half), chances, here)
     channel = judged_channel(rule, trace)
-    peak = certainty.highest([_peak(rule, channel, grid, strip, one, uncertainty) for one in humps(rule, strip, at)])
+    peak = _peak(rule, channel, grid, strip, at, uncertainty)
     chances = tuple(certainty.probability_beyond(peak, threshold) for threshold in thresholds)
     notes = []
     if peak.saturated:
@@ -101,20 +103,6 @@ def levels_at(rule: Compiled, limit: float) -> list[float]:
     return [float(np.asarray(rule.threshold(level, limit))) for level in rule.levels]
 
 
-def humps(rule: Compiled, strip: Strip, at: int) -> list[int]:
-    """The extreme sample and the next highest local extremes of the excursion, where the limit in force is the same."""
-    part = strip.inside
-    height = np.where(strip.live[part], rule.side * strip.value[part], -np.inf)
-    if len(height) < 3:
-        return [at]
-    top = (height[1:-1] >= height[:-2]) & (height[1:-1] > height[2:])
-    places = np.flatnonzero(top) + 1 + part.start
-    same = np.abs(strip.limit[places] - strip.limit[at]) <= 1e-9 * np.maximum(np.abs(strip.limit[at]), 1.0)
-    places = places[same & (places != at)]
-    order = np.argsort(-rule.side * strip.value[places], kind="stable")[:HUMPS]
-    return [at, *(int(place) for place in places[order])]
-
-
 def _peak(
     rule: Compiled, channel: Channel | None, grid: Grid, strip: Strip, at: int, uncertainty: float
 ) -> certainty.Peak:
@@ -134,6 +122,7 @@ def _peak(
         resolution=own.resolution if own is not None else 0.0,
         noise=own.noise if own is not None else None,
         saturation=end,
+        quickest=QUICKEST.get(rule.quantity.kind, QUICKEST_OTHERS),
     )
 
 
