@@ -32,15 +32,18 @@ def judge(trace: Trace, rules: list[Compiled], extremes: list[str], *, size: int
     ready = {index: rule for index, rule in enumerate(rules) if rule.unassessed is None and rule.not_applicable is None}
     scans, most = _scan_all(trace, ready, extremes, size, threads)
     context = [name for name in CONTEXT if trace.has(name)]
+    # what is only known as a range is judged at its other end too, all rules that rest on it in one more pass
+    low = {name: span[0] for name, span in trace.spans.items()}
+    open_rules = {index: rule for index, rule in ready.items() if _rests_on(trace, rule, low)}
+    others, _ = _scan_all(trace, open_rules, [], size, threads, low) if open_rules else ({}, None)
     events: list[Event] = []
     undecided: list[Event] = []
     for index, rule in ready.items():
         grid = trace.grid(rule.grid_names)
         found, maybe = build_events(rule, trace, grid, scans[index], context)
-        under = trace.closure([name for name in rule.names if trace.has(name)])
-        spans = {name: span for name, span in trace.spans.items() if name in under}
-        if spans:
-            found, maybe = _both_ends(rule, trace, grid, (found, maybe), context, spans, size, threads)
+        if index in others:
+            light = build_events(rule, trace, grid, others[index], context, low)
+            found, maybe = _both_ends((found, maybe), light, trace.spans)
         found, maybe = accumulate(rule, found, maybe)
         events += found
         undecided += maybe
@@ -108,23 +111,18 @@ def _typical_uncertainty(trace: Trace, grid: Grid, names: list[str]) -> dict[str
     }
 
 
+def _rests_on(trace: Trace, rule: Compiled, names: Mapping[str, float]) -> bool:
+    """Whether a rule's value, limit or condition rests on one of these quantities."""
+    return bool(names) and not names.keys().isdisjoint(trace.closure([name for name in rule.names if trace.has(name)]))
+
+
 def _both_ends(
-    rule: Compiled,
-    trace: Trace,
-    grid: Grid,
-    heavy: tuple[list[Event], list[Event]],
-    context: list[str],
-    spans: Spans,
-    size: int,
-    threads: int,
+    heavy: tuple[list[Event], list[Event]], light: tuple[list[Event], list[Event]], spans: Spans
 ) -> tuple[list[Event], list[Event]]:
-    """The verdicts at both ends of what is only known as a range.
+    """The verdicts (events, undecided) at the high and at the low end of what is only known as a range.
 
     Where they agree the event stands; where they differ both are given and it is at most `possible`.
     """
-    fixed = {name: low for name, (low, _) in spans.items()}
-    scans, _ = _scan_all(trace, {0: rule}, [], size, threads, fixed)
-    light = build_events(rule, trace, grid, scans[0], context, fixed)
     low, high = _end_words(spans)
     kept: list[Event] = []
     used: set[int] = set()

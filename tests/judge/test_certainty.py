@@ -262,29 +262,6 @@ def test_a_window_with_holes_or_doubled_times_is_refused(time: list[float], valu
 # --- several humps ----------------------------------------------------------------------------------------------------
 
 
-def test_a_peak_without_a_rival_stands_alone_and_an_equal_rival_raises_it() -> None:
-    one, lower = peak_of(PULL, 8), peak_of([1 + 0.3 * (x - 1) for x in PULL], 8)
-    assert certainty.highest([lower, one]) == one
-    both = certainty.highest([one, one])
-    assert both.estimate > one.estimate
-    assert both.high is not None
-    assert one.high is not None
-    assert one.high <= both.high < one.high + (one.high - one.estimate)
-    below = peak_of([-x for x in PULL], 8, -1)
-    assert certainty.highest([below, below]).estimate == pytest.approx(-both.estimate)
-
-
-def test_an_open_hump_leaves_the_excursion_open_if_it_comes_near() -> None:
-    spike = [1.0] * 8 + [5.0] + [1.0] * 8
-    sized, open_one = peak_of(PULL, 8), peak_of(spike, 8, interval=1.0)
-    assert not open_one.sized
-    near = certainty.highest([sized, peak_of([x + 0.09 for x in spike], 8, interval=1.0)])
-    assert (near.recorded, near.high, near.sized) == (5.1, None, False)
-    assert near.low == pytest.approx(5.1 - 1.96 * sized.down, abs=1e-4)
-    assert certainty.highest([sized, open_one]) == sized  # far below: it decides nothing
-    assert certainty.highest([peak_of(PULL, 8, saturation=5.1), sized]).high is None
-
-
 # --- noise ------------------------------------------------------------------------------------------------------------
 
 
