@@ -11,11 +11,11 @@ from exceed.core.findings import Event, Findings
 from exceed.core.intervals import Array
 from exceed.core.outcome import EnvelopeLine, EventPlot, LogPlots, Series, SpectrumPlot, VnPlot
 from exceed.core.trace import Grid, Trace
-from exceed.derive.facts import facts_of
 from exceed.documents.aircraft import Aircraft
+from exceed.envelopes import envelope_at
 from exceed.judge.block import SIZE, Block
 from exceed.judge.compiled import Compiled
-from exceed.physics import counting, envelope, load_limits
+from exceed.physics import counting
 
 # s drawn on either side of an event, and places a second of the smooth estimate
 MARGIN = 6.0
@@ -148,34 +148,6 @@ def envelope_lines(trace: Trace, aircraft: Aircraft | None) -> tuple[tuple[Envel
     lines.append(EnvelopeLine("speed limit", "speed", np.array([end, end]), np.array([lowest, float(drawn.upper[-1])])))
     words = f"{float(mass):.0f} kg" if mass is not None else "the mass of the stall speeds"
     return tuple(lines), f"envelope at {words}, flaps up, sea level"
-
-
-def envelope_at(aircraft: Aircraft, mass: float | None, flaps: float = 0.0) -> envelope.Envelope | None:
-    """The V-n boundary of an aeroplane at a mass (kg) and flap angle (rad); None where its facts do not give one."""
-    from exceed.physics.stall import stall_speed_equivalent
-
-    facts = facts_of(aircraft).values
-    table, limits = facts.get("stall_table"), facts.get("load_factor_table")
-    limit = _speed_limit(aircraft)
-    if table is None or limits is None or limit is None:
-        return None
-    weight = np.array([mass if mass is not None else float(table.mass[0])])
-    angle = np.array([flaps])
-    upright = float(stall_speed_equivalent(np.array([1.0]), weight, angle, table)[0])
-    inverted = float(stall_speed_equivalent(np.array([-1.0]), weight, angle, table)[0])
-    clean = (angle, weight, np.zeros(1), np.zeros(1), limits)
-    most = float(load_limits.load_factor_maximum(*clean)[0])
-    least = float(load_limits.load_factor_minimum(*clean)[0])
-    if not (np.isfinite(upright) and np.isfinite(most)):
-        return None
-    return envelope.envelope(upright, inverted, most, least, limit)
-
-
-def _speed_limit(aircraft: Aircraft) -> float | None:
-    for fact in (aircraft.speeds.never_exceed, aircraft.speeds.maximum_operating):
-        if fact is not None:
-            return float(fact.greatest)
-    return None
 
 
 def spectrum_plot(trace: Trace) -> SpectrumPlot | None:

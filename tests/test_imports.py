@@ -28,7 +28,9 @@ MAY = {
     "report": {"report", "core", "errors"},
     "prepare": {"core", "documents", "errors", "settings"},
     "outcomes": {"core", "documents", "judge", "prepare"},
-    "drawing": {"core", "documents", "derive", "judge", "physics"},
+    "boundary": {"core", "documents", "derive", "physics"},
+    "envelopes": {"boundary", "core", "documents", "derive", "physics"},
+    "drawing": {"core", "documents", "derive", "envelopes", "judge", "physics"},
     "tables": {"core", "derive", "errors", "report"},
     "batch": {"core", "errors", "pipeline", "prepare", "read"},
     "pipeline": {

@@ -1,0 +1,352 @@
+"""The V-n diagram of an aeroplane at one mass, altitude and flap setting, from its documents, in all its figures.
+
+What the manual says and what is computed are never mixed: every figure carries its source, what is missing its reason.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from exceed.boundary import (
+    ENDS,
+    MEETS,
+    UP_WITHIN,
+    Air,
+    SpeedEnd,
+    boundary,
+    finite,
+    limits_of,
+    mass_used,
+    speed_end,
+    speeds_of,
+    stall_speeds,
+)
+from exceed.core.constants import FOOT
+from exceed.core.diagrams import CornerRow, EnvelopeOutcome, GustRow, LimitRow, SpeedRow
+from exceed.core.outcome import AircraftInfo, EnvelopeLine
+from exceed.derive.facts import Facts, facts_of
+from exceed.physics import atmosphere, envelope, gust, load_limits, stall, tables
+
+if TYPE_CHECKING:
+    from exceed.documents.aircraft import Aircraft
+
+Missing = list[tuple[str, str]]
+# the categories whose gusts the formula of the older part 23 was written for; the very light codes took it over
+GUST_CATEGORIES = (None, "normal", "utility", "aerobatic", "commuter", "very-light", "light-sport")
+
+
+def envelope_at(aircraft: Aircraft, mass: float | None, flaps: float = 0.0) -> envelope.Envelope | None:
+    """The V-n boundary of an aeroplane at a mass (kg) and flap angle (rad) at sea level; None where its facts do not
+    give one (stall speed, positive limit and speed limit are needed)."""
+    facts = facts_of(aircraft)
+    air = Air(0.0, flaps, facts.values.get("position_error"))
+    weight, _ = mass_used(facts, mass)
+    speeds, machs, _ = speeds_of(aircraft, air, weight)
+    end = speed_end(speeds, machs)
+    stalls = stall_speeds(facts, weight, flaps)
+    if end is None or not np.isfinite(stalls[0]):
+        return None
+    found = boundary(facts, air, weight, stalls, end.equivalent)
+    return found if np.isfinite(found.upper).any() else None
+
+
+def envelope_of(
+    aircraft: Aircraft, mass: float | None = None, pressure_altitude: float = 0.0, flaps: float = 0.0
+) -> EnvelopeOutcome:
+    """Everything that the documents of an aeroplane say of its V-n diagram.
+
+    Parameters: mass : kg, None for the maximum take-off mass; pressure_altitude : m; flaps : rad.
+    Returns: EnvelopeOutcome; what is not known is in `missing`, what was taken for granted in `notes`.
+    """
+    facts = facts_of(aircraft)
+    weight, mass_source = mass_used(facts, mass)
+    air = Air(pressure_altitude, flaps, facts.values.get("position_error"))
+    speeds, machs, unknown = speeds_of(aircraft, air, weight)
+    end = speed_end(speeds, machs)
+    stalls = stall_speeds(facts, weight, flaps)
+    found = boundary(facts, air, weight, stalls, end.equivalent) if end is not None else None
+    limits = _limit_rows(aircraft, facts, air, weight)
+    corners = _corner_rows(found, air, end)
+    gusts, no_gusts = _gusts(aircraft, air, weight, speeds)
+    rows = [*speeds.values(), *machs]
+    meeting = next((row for row in corners if row.name == MEETS), None)
+    if meeting is not None:
+        rows.insert(0, SpeedRow("V_S sqrt(n)", f"{MEETS}; computed, not V_A", meeting.speed, "computed"))
+    missing = [*unknown, *_missing(aircraft, facts, air, stalls, limits, speeds, end), *no_gusts]
+    return EnvelopeOutcome(
+        aircraft=info_of(aircraft),
+        mass=weight,
+        mass_source=mass_source,
+        pressure_altitude=pressure_altitude,
+        flaps=flaps,
+        corners=corners,
+        speeds=tuple(rows),
+        limits=limits,
+        stalls=_stall_rows(air, stalls),
+        gusts=gusts,
+        missing=tuple(dict.fromkeys(missing)),
+        notes=tuple(dict.fromkeys(_notes(aircraft, facts, air, weight, speeds, stalls, limits, gusts))),
+        lines=_lines(found, end, stalls, limits, gusts),
+    )
+
+
+def info_of(aircraft: Aircraft) -> AircraftInfo:
+    """What the outputs say of the aeroplane."""
+    return AircraftInfo(
+        registration=aircraft.registration,
+        serial=aircraft.serial,
+        type=aircraft.type,
+        category=aircraft.category,
+        limits="assumed" if aircraft.assumed else "own",
+        source=aircraft.source,
+        path=aircraft.path or None,
+    )
+
+
+def _corner_rows(found: envelope.Envelope | None, air: Air, end: SpeedEnd | None) -> tuple[CornerRow, ...]:
+    if found is None or end is None:
+        return ()
+    rows = []
+    for corner in found.corners:
+        source = "load_factor"
+        if "stall" in corner.name:
+            source = "computed" if "meets" in corner.name or "line" in corner.name else "stall_speed"
+        elif corner.name.startswith("speed limit"):
+            source = f"{end.source}, load_factor"
+        speed = air.kinds(corner.equivalent_airspeed)
+        rows.append(CornerRow(corner.name, speed, finite(corner.load_factor), source))
+    return tuple(rows)
+
+
+def _stall_rows(air: Air, stalls: tuple[float, float]) -> tuple[CornerRow, ...]:
+    named = (("upright, level, 1 g", stalls[0], 1.0), ("inverted, level, -1 g", stalls[1], -1.0))
+    return tuple(
+        CornerRow(name, air.kinds(speed), load, "stall_speed") for name, speed, load in named if np.isfinite(speed)
+    )
+
+
+def _limit_rows(aircraft: Aircraft, facts: Facts, air: Air, mass: float | None) -> tuple[LimitRow, ...]:
+    """Limits in force by stretches of speed; while rolling and with airbrakes out where the manual says so."""
+    table = facts.values.get("load_factor_table")
+    if table is None:
+        return ()
+    kind = facts.aliases.get("limit_airspeed")
+    places = np.unique(table.speed_up_to[np.isfinite(table.speed_up_to)]).tolist()
+    bounds = list(zip([None, *places], [*places, None], strict=True))
+    rows = []
+    for low, high in bounds:
+        # the middle of a stretch stands for it; beyond the last bound any speed does
+        inside = 0.5 * ((low or 0.0) + high) if high is not None else (low or 0.0) + 1.0
+        most, least = limits_of(facts, air, mass, inside)
+        about = {"speed_from": low, "speed_to": high, "kind": kind if places else None}
+        rows.append(LimitRow("", finite(most), finite(least), "load_factor", **about))
+        if aircraft.rolling is not None and np.isfinite(most):
+            rolling = aircraft.rolling
+            words = f"rolling faster than {rolling.above_roll_rate}"
+            reduced = load_limits.load_factor_maximum_rolling(
+                most, 2.0 * rolling.above_roll_rate, rolling.factor, rolling.above_roll_rate
+            )
+            rows.append(LimitRow(words, finite(float(reduced)), finite(least), "load_factor, rolling", **about))
+        if (table.airbrakes == 1.0).any():
+            most, least = limits_of(facts, air, mass, inside, 1.0)
+            rows.append(LimitRow("airbrakes out", finite(most), finite(least), "load_factor", **about))
+    return tuple(rows)
+
+
+# --- gusts -------------------------------------------------------------------------------------------------------
+
+
+def _gusts(
+    aircraft: Aircraft, air: Air, mass: float | None, speeds: dict[str, SpeedRow]
+) -> tuple[tuple[GustRow, ...], Missing]:
+    """Load factors of the design gusts of 14 CFR 23.333(c) by the formula of 23.341(c), and why some are missing."""
+    wing = aircraft.wing
+    if aircraft.category not in GUST_CATEGORIES:
+        return (), [("gust lines", f"the gusts of 14 CFR 23.333(c) are not those of category {aircraft.category}")]
+    lacks = [
+        words
+        for words, value in (
+            ("wing area", wing.area),
+            ("mean chord", wing.mean_chord),
+            ("lift curve slope", wing.lift_curve_slope),
+            ("mass", mass),
+        )
+        if value is None
+    ]
+    if lacks:
+        return (), [("gust lines", f"{', '.join(lacks)} not known")]
+    area, chord, slope = (float(value or 0.0) for value in (wing.area, wing.mean_chord, wing.lift_curve_slope))
+    if abs(air.flaps) > UP_WITHIN:
+        wanted = [("flaps", "flaps_extended", "V_FE")]
+    else:
+        wanted = [("cruise", "normal_operating", "V_NO"), ("dive", "never_exceed", "V_NE")]
+        if "normal_operating" not in speeds and "maximum_operating" in speeds:
+            wanted[0] = ("cruise", "maximum_operating", "V_MO")
+        if aircraft.category == "commuter":
+            wanted.insert(0, ("rough-air", "turbulence", "V_B"))
+    rows: list[GustRow] = []
+    missing: Missing = []
+    density = atmosphere.density(
+        atmosphere.static_pressure(air.pressure_altitude), atmosphere.standard_temperature(air.pressure_altitude)
+    )
+    for sort, name, symbol in wanted:
+        velocity = float(gust.design_gust_velocity(air.pressure_altitude, sort))
+        equivalent = speeds[name].speed.equivalent if name in speeds else None
+        if equivalent is None:
+            missing.append((f"gust line of {velocity / FOOT:.0f} ft/s", f"no {symbol} known"))
+            continue
+        speed = speeds[name].speed
+        change = float(
+            gust.gust_load_factor_increment(velocity, equivalent, float(mass or 0.0), area, chord, slope, density)
+        )
+        if np.isfinite(change):
+            rows.append(GustRow(velocity, symbol, speed, 1.0 + change, 1.0 - change))
+    return tuple(rows), missing
+
+
+# --- what is missing, what was taken for granted -----------------------------------------------------------------
+
+
+def _missing(
+    aircraft: Aircraft,
+    facts: Facts,
+    air: Air,
+    stalls: tuple[float, float],
+    limits: tuple[LimitRow, ...],
+    speeds: dict[str, SpeedRow],
+    end: SpeedEnd | None,
+) -> Missing:
+    silent = "only the category is known" if aircraft.assumed else "the aircraft file does not give it"
+    found: Missing = []
+    if not np.isfinite(stalls[0]):
+        found.append(("stall line, corners at it", silent if "stall_table" in facts.missing else "mass not known"))
+    if not np.isfinite(stalls[1]):
+        where = "" if "stall_table" in facts.missing or abs(air.flaps) <= UP_WITHIN else " with these flaps"
+        found.append(("negative stall line", f"inverted stall speed{where} not known"))
+    for side in ("maximum", "minimum"):
+        if not any(getattr(row, side) is not None for row in limits):
+            why = "no row holds at this mass and these flaps" if limits else silent
+            found.append(("positive limit" if side == "maximum" else "negative limit", why))
+    if end is None:
+        found.append(("speed limit, corners at it", f"V_NE, V_MO: {silent}"))
+    if aircraft.speeds.manoeuvring is None:
+        found.append(("V_A, manoeuvring speed", silent))
+    if aircraft.speeds.normal_operating is None and not any(name in speeds for name in ENDS[1:]):
+        found.append(("V_NO, normal operating speed", silent))
+    if abs(air.flaps) > UP_WITHIN and "flaps_extended" not in speeds:
+        found.append(("V_FE, flaps extended speed", silent))
+    if aircraft.rolling is None:
+        found.append(("limit while rolling", f"{silent}; many manuals lower the positive limit"))
+    return found
+
+
+def _notes(
+    aircraft: Aircraft,
+    facts: Facts,
+    air: Air,
+    mass: float | None,
+    speeds: dict[str, SpeedRow],
+    stalls: tuple[float, float],
+    limits: tuple[LimitRow, ...],
+    gusts: tuple[GustRow, ...],
+) -> list[str]:
+    notes = list(facts.notes)
+    if aircraft.assumed:
+        notes.append("limit load factors are assumed: those of the category, not of the aeroplane's own manual")
+    if mass is not None and not aircraft.assumed:
+        top, empty = facts.maximum_take_off, facts.empty_mass
+        if top is not None and mass > top:
+            notes.append(f"this mass is above the maximum take-off mass of {top:.0f} kg")
+        if empty is not None and mass < empty:
+            notes.append(f"this mass is below the empty mass of {empty:.0f} kg")
+    limit_table = facts.values.get("load_factor_table")
+    if limit_table is not None:
+        if mass is not None and bool(load_limits.overweight_for_limits(mass, limit_table)):
+            notes.append("this mass is above all masses listed for the limit load factors: they shrink as m_last / m")
+        if bool(tables.past_last_setting(air.flaps, limit_table.flap_angle)):
+            notes.append("flaps past the last setting listed for the limit load factors: the last one holds")
+        elif abs(air.flaps) > UP_WITHIN and np.isfinite(limit_table.flap_angle).any():
+            row = np.degrees(float(tables.flap_setting_in_force(air.flaps, limit_table.flap_angle)))
+            notes.append(f"limit load factors are those listed for flaps {row:.0f} deg")
+    stall_table = facts.values.get("stall_table")
+    if stall_table is not None and mass is not None and (stall_table.mass != mass).any():
+        notes.append(f"stall speeds are taken to {mass:.0f} kg with the root of mass")
+    if air.position_error is None:
+        notes.append("no position error is known: IAS is taken as CAS")
+    elif any(_beyond(air, row) for row in speeds.values()) or _beyond_speed(air, stalls):
+        notes.append("beyond the ends of the position error's table its last correction is held")
+    notes += _manoeuvring_note(speeds, stalls, limits)
+    if gusts:
+        notes.append(
+            "gusts of 14 CFR 23.333(c), formula of 23.341(c), standard atmosphere; V_NO (or V_MO) stands for the design"
+            " cruise speed, V_NE for the design dive speed, which no manual gives"
+        )
+    notes.append("limit, not ultimate, load factors; symmetric flight but for the rows that say otherwise")
+    return notes
+
+
+def _beyond(air: Air, row: SpeedRow) -> bool:
+    return row.speed.indicated is not None and _outside(air, row.speed.indicated)
+
+
+def _beyond_speed(air: Air, stalls: tuple[float, float]) -> bool:
+    return any(_outside(air, air.from_equivalent(speed, None)) for speed in stalls if np.isfinite(speed))
+
+
+def _outside(air: Air, indicated: float) -> bool:
+    error = air.position_error
+    return error is not None and not any(row[0] - 1e-9 <= indicated <= row[-1] + 1e-9 for row in error.indicated)
+
+
+def _manoeuvring_note(
+    speeds: dict[str, SpeedRow], stalls: tuple[float, float], limits: tuple[LimitRow, ...]
+) -> list[str]:
+    """What a full pull at the manual's V_A gives: V_A is no promise that the wing stalls before the limit."""
+    row = speeds.get("manoeuvring")
+    limit = next((one.maximum for one in limits if one.condition == "" and one.maximum is not None), None)
+    if row is None or row.speed.equivalent is None or not np.isfinite(stalls[0]) or limit is None:
+        return []
+    gives = float(stall.load_factor_at_stall(row.speed.equivalent, stalls[0]))
+    side = "beyond" if gives > limit else "inside"
+    return [f"at the manual's V_A the wing stalls at {gives:.2f} g, {abs(gives - limit):.2f} g {side} the limit"]
+
+
+# --- lines for the page ------------------------------------------------------------------------------------------
+
+
+def _lines(
+    found: envelope.Envelope | None,
+    end: SpeedEnd | None,
+    stalls: tuple[float, float],
+    limits: tuple[LimitRow, ...],
+    gusts: tuple[GustRow, ...],
+) -> tuple[EnvelopeLine, ...]:
+    if found is None or end is None:
+        return ()
+    speed = found.equivalent_airspeed
+    rows: list[EnvelopeLine] = []
+    plain = [row for row in limits if row.condition == ""]
+    for label, values, side in (
+        ("positive boundary", found.upper, "maximum"),
+        ("negative boundary", found.lower, "minimum"),
+    ):
+        if np.isfinite(values).any():
+            rows.append(EnvelopeLine(label, "load factor", speed, values))
+        elif plain and getattr(plain[0], side) is not None:
+            # without a stall line only the limit itself is known, and not from which speed on it can be reached
+            limit = getattr(plain[0], side)
+            words = label.replace("boundary", "limit, stall line not known")
+            rows.append(EnvelopeLine(words, "limit alone", np.array([0.0, end.equivalent]), np.array([limit, limit])))
+    ends = [float(row.load_factor[-1]) for row in rows]
+    low, high = min([0.0, *ends]), max([0.0, *ends])
+    edge = np.array([end.equivalent, end.equivalent])
+    rows.append(EnvelopeLine(f"{end.symbol} speed limit", "speed", edge, np.array([low, high])))
+    for row in gusts:
+        if row.speed.equivalent is None:
+            continue
+        words = f"gust {row.velocity / FOOT:.0f} ft/s to {row.at}"
+        at = np.array([row.speed.equivalent, 0.0, row.speed.equivalent])
+        rows.append(EnvelopeLine(words, "gust", at, np.array([row.up, 1.0, row.down])))
+    return tuple(rows)
