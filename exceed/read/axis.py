@@ -62,7 +62,6 @@ def build(
             rows = np.flatnonzero(finite)
             without = count - len(rows)
             readings = readings[rows]
-            notes.append(f"{without} row{'s' * (without != 1)} without a time {'are' if without != 1 else 'is'} left out")
         if kind == "time_of_day":
             readings, rolled = _rolled(readings)
             if rolled:

@@ -56,6 +56,9 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
     if start is None and plan.anchor is not None:
         start, zone = _anchored(survey, parsed, plan, made, notes)
     time, fold, seams = _folded(made.time, raws, made.seams)
+    lost = made.without - parsed.repeats
+    if lost > 0:
+        notes.append(f"{lost} row{'s' * (lost != 1)} without a time {'are' if lost != 1 else 'is'} left out")
     notes += made.notes
     out = Instants(time, made.rows, fold, kind, start, zone, made.resets, seams, notes=[], clock_notes=notes)
     if len(made.doubled):

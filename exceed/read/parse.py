@@ -27,6 +27,7 @@ class Parsed:
     cut: list[str] = field(default_factory=list)
     texts: set[int] = field(default_factory=set)
     tail: bytes | None = None
+    repeats: int = 0  # headings among the rows
 
 
 def rewriter(layout: Layout, mend: bool = False) -> Callable[[Iterator[bytes]], Iterator[bytes]] | None:

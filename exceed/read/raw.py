@@ -69,6 +69,7 @@ def raw_channels(
             made += _unfolded(survey, column, pieces)
             continue
         made.append(RawChannel(column, pieces[0], sense_sure=sure))
+    parsed.repeats = repeats
     if repeats:
         notes.append(f"the headings are repeated {repeats} time{'s' * (repeats != 1)} between the rows: left out")
     if odd and survey.layout is not None:

@@ -197,7 +197,7 @@ def _with_unit(
             units=tuple(u for q in names for u in open_units(q, kind_of(q, declared))),
         )  # fmt: skip
     kind = kind_of(first.quantity, declared)
-    units = open_units(first.quantity, kind)
+    units = ("%", "1") if kind == "ratio" and first.quantity in declared else open_units(first.quantity, kind)
     if len(units) == 1:
         return _open(column, first).with_(
             quantity=first.quantity, unit=units[0], score=first.score, reason=f"{first.reason}; {units[0]}, the only unit it has" if units[0] != "1" else first.reason,
@@ -236,33 +236,37 @@ def _unit_of_cells(cells: Sequence[str]) -> tuple[str, str]:
     return "", ""
 
 
-_ENGINE = re.compile(r"^(e|eng|engine|no|cyl|cylinder)(\d)$")
+_ENGINE = re.compile(r"^(e|eng|engine|no|cyl|cylinder|egt|cht|rpm|n|t|itt|tit)(\d{1,2})$")
+_ENGINE_ROWS = {"engine_speed": "rpm"}
 
 
 def _own_words(text: str) -> tuple[frozenset[str], str]:
-    """Reduced words of a name, and the number in it."""
+    """Reduced words of a name, and its numbers joined: `E1 CHT3` -> cylinder head temperature, 1_3."""
     words: list[str] = []
-    number = ""
+    numbers: list[str] = []
     for word in words_of(text):
         match = _ENGINE.match(word)
-        if match:
-            number = number or match.group(2)
-            words.append(WORDS.get(match.group(1), match.group(1)))
+        if match and not (match.group(1) == "n" and match.group(2) in "12"):
+            numbers.append(match.group(2).lstrip("0") or "0")
+            word = match.group(1)
         elif word.isdigit():
-            number = number or word.lstrip("0")
+            numbers.append(word.lstrip("0") or "0")
+            continue
         elif word in ("left", "l", "lh", "port"):
-            number = number or "1"
+            numbers.append("1")
+            continue
         elif word in ("right", "r", "rh", "starboard"):
-            number = number or "2"
-        else:
-            words.append({"t": "temperature", "p": "pressure", "egt": "egt", "cht": "cht", "rpm": "speed"}.get(word, WORDS.get(word, word)))
+            numbers.append("2")
+            continue
+        words.append({"t": "temperature", "p": "pressure", "rpm": "speed"}.get(word, WORDS.get(word, word)))
     # every engine quantity is of an engine; every reading is a value
-    return frozenset(w for w in words if w not in ("engine", "e", "number") and not (w in SIDE and w not in ("a",))), number
+    kept = frozenset(w for w in words if w not in ("engine", "e", "number", "cylinder") and not (w in SIDE and w not in ("a",)))
+    return kept or frozenset(words), "_".join(numbers)
 
 
 _LONG_FORMS = {
     frozenset({"egt"}): frozenset({"exhaust", "gas", "temperature"}),
-    frozenset({"cht"}): frozenset({"cylinder", "head", "temperature"}),
+    frozenset({"cht"}): frozenset({"heading", "temperature"}),  # 'head' reads as heading, 'cylinder' goes without saying
     frozenset({"itt"}): frozenset({"interstage", "turbine", "temperature"}),
     frozenset({"tit"}): frozenset({"turbine", "inlet", "temperature"}),
     frozenset({"map"}): frozenset({"manifold", "pressure"}),
@@ -275,16 +279,56 @@ def _same_words(a: frozenset[str], b: frozenset[str]) -> bool:
 
 
 def _declared(bare: str, name: str, declared: Mapping[str, str]) -> Meaning | None:
-    """A quantity that a rules or channels file declares, by the same words and the same index."""
+    """A quantity that a rules or channels file declares, by the same words; numbers in the name become its index."""
     for text in (bare, name):
         words, number = _own_words(text)
         if not words:
             continue
         for quantity in declared:
             own, own_number = _own_words(quantity)
-            if _same_words(words, own) and (number == own_number or (not own_number and number in ("", "1"))):
-                return Meaning(quantity, 0.95, f"named like the declared quantity {quantity}")
+            if _same_words(words, own) and (number == own_number or not own_number):
+                return Meaning(quantity, 0.95, f"named like the declared quantity {quantity}", side=(number,) if number != own_number else ())
     return None
+
+
+def indexed(columns: Sequence[Column], declared: dict[str, str]) -> list[Column]:
+    """Several engines: columns of one engine quantity with different numbers become engine_speed_1, engine_speed_2.
+
+    New names are added to `declared`. A single column keeps the plain name.
+    """
+    out = list(columns)
+    by_quantity: dict[str, list[tuple[str, Column]]] = {}
+    for column in columns:
+        quantity = column.quantity or ""
+        if column.problem or column.ignored or column.found_by == "channels file":
+            continue
+        if quantity in _ENGINE_ROWS or (quantity in declared and quantity not in QUANTITIES):
+            by_quantity.setdefault(quantity, []).append((_own_words(split_unit(column.name)[0] or column.name)[1], column))
+    for quantity, members in by_quantity.items():
+        numbers = [number or _own_words(column.name)[1] for number, column in members]
+        if len(members) < 2 or len(set(numbers)) < len(numbers) or len(members) > 16:
+            continue
+        for number, (_, column) in zip(numbers, members, strict=True):
+            if not number:
+                continue
+            name = f"{quantity}_{number}"
+            declared.setdefault(name, declared.get(quantity) or _ENGINE_ROWS[quantity])
+            out[column.index] = column.with_(quantity=name)
+    return out
+
+
+def tanks(columns: Sequence[Column]) -> list[Column]:
+    """Fuel of one tank is not the fuel on board: columns that name a tank or side are left open."""
+    out = list(columns)
+    for column in columns:
+        if column.quantity not in ("fuel_mass", "fuel_volume") or column.problem or column.found_by == "channels file":
+            continue
+        words = set(words_of(split_unit(column.name)[0]))
+        if words & {"l", "r", "left", "right", "lh", "rh", "aux", "main", "centre", "center", "ctr", "tip", "inner", "outer", "1", "2", "3", "4", "wing"}:
+            out[column.index] = column.with_(
+                quantity=None, problem="one tank's fuel, not all that is on board", question="Which column is the fuel on board?"
+            )
+    return out
 
 
 def is_clock(column: Column) -> str | None:

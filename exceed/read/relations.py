@@ -135,6 +135,10 @@ def settle_unit(evidence: Evidence, one: Settled) -> None:
         _by_ground_pressure(evidence, one)
     elif quantity == "flap_angle":
         _flaps(evidence, one)
+    elif set(one.raw.column.units) == {"%", "1"}:
+        top = float(np.max(np.abs(_figures(evidence, one)), initial=0.0))
+        if top > 2.0:
+            one.take("%", f"figures up to {top:.3g} are per cent")
 
 
 def _figures(evidence: Evidence, one: Settled) -> Array:

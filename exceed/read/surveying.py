@@ -9,7 +9,7 @@ from exceed.core.units import AIRSPEED_UNITS
 from exceed.read.clock import find_clock, stated_period
 from exceed.read.container import Source, open_source
 from exceed.read.rates import groups
-from exceed.read.recognise import columns_of, is_clock
+from exceed.read.recognise import columns_of, indexed, is_clock, tanks
 from exceed.read.stamps import ClockPlan
 from exceed.read.look import Column, Survey
 from exceed.read.table import layout, registration_in, serial_in
@@ -83,7 +83,7 @@ def assemble(
         columns, facts, decimal, cells
     )
     columns = [c.with_(quantity=None, problem="") if c.index in plan.columns or c.index == plan.anchor else c for c in columns]
-    columns = groups(columns)
+    columns = groups(indexed(tanks(columns), declared))
     registration = registration or _in_column(columns, cells)
     return Survey(source, found, tuple(columns), plan, tuple(facts), registration, serial, channels, declared, rows, (*notes, *more))  # type: ignore[arg-type]
 

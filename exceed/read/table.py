@@ -6,6 +6,7 @@ import csv
 import re
 from collections import Counter
 from dataclasses import dataclass
+from typing import Any
 
 from exceed.read.cells import GROUPED, form, is_missing
 from exceed.read.container import Source, fail
@@ -51,6 +52,15 @@ def split(line: str, delimiter: str) -> list[str]:
     return next(csv.reader([line], delimiter=delimiter), [])
 
 
+def spread(rows: list[Any], most: int) -> list[Any]:
+    """At most so many rows, as three stretches: single rows at even steps would all meet one phase of slow channels."""
+    if len(rows) <= most:
+        return rows
+    size = most // 3
+    middle = (len(rows) - size) // 2
+    return rows[:size] + rows[middle : middle + size] + rows[-size:]
+
+
 def layout(source: Source) -> Layout:
     """Find the shape of a text log. Raises LogError where there is no table."""
     text = source.text
@@ -87,12 +97,11 @@ def layout(source: Source) -> Layout:
         (m for m in ("#", "//", "%", ";") if delimiter != m and any(line.startswith(m) for line in lines[:start])), ""
     )
     preamble = tuple(lines[:above])
-    step = max(1, len(data) // LOOKED_AT)
     short = sum(1 for row in data if len(row) < width)
     notes = [] if headings else ["no headings: columns are counted"]
     return Layout(
         delimiter, decimal, grouping, delimiter == " ", start, names, units, sources, tuple(tuple(h) for h in headings),
-        tuple(facts_in(preamble, delimiter)), preamble, tuple(tuple(c.strip() for c in row) for row in data[::step]),
+        tuple(facts_in(preamble, delimiter)), preamble, tuple(tuple(c.strip() for c in row) for row in spread(data, LOOKED_AT)),
         comment, short > 0.01 * len(data) + 1, tuple(notes),
     )  # fmt: skip
 
@@ -105,8 +114,7 @@ def _delimiter(source: Source, lines: list[str]) -> tuple[str, int]:
     """The delimiter under which the later lines are most even and most like data."""
     filled = [line for line in lines if line.strip()]
     tail = filled[len(filled) // 3 :] if len(filled) > 30 else filled
-    step = max(1, len(tail) // 150)
-    tail = tail[::step][:150]
+    tail = spread(tail, 150)
     best: tuple[float, str, int] | None = None
     for delimiter in DELIMITERS:
         if len(filled) > 3 and sum(delimiter in line for line in tail) < 0.3 * len(tail):
@@ -146,10 +154,9 @@ def _delimiter(source: Source, lines: list[str]) -> tuple[str, int]:
 def _usual_forms(rows: list[list[str]], width: int) -> list[set[str]]:
     """For each column the forms that its cells usually have, from the later half of the block."""
     full = [row for row in rows if len(row) in (width, width - 1)] or [row for row in rows if len(row) > 1]
-    later = full[len(full) // 2 :] if len(full) > 6 else full[-4:]
-    step = max(1, len(later) // 60)
+    later = spread(full[len(full) // 2 :] if len(full) > 6 else full[-4:], 96)
     counts = [Counter[str]() for _ in range(width)]
-    for row in later[::step]:
+    for row in later:
         for place, cell in enumerate(row[:width]):
             counts[place][form(cell)] += 1
     usual = []
@@ -266,7 +273,7 @@ def _marks(data: list[list[str]], delimiter: str) -> tuple[str, str]:
     comma = dot = 0
     firm_comma = firm_dot = 0
     group: Counter[str] = Counter()
-    for row in data[:: max(1, len(data) // 300)]:
+    for row in spread(data, 300):
         for cell in row:
             text = cell.strip().strip('"').strip()
             if not text or not (text[0].isdigit() or text[0] in "+-.,") or ":" in text:
