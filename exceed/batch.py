@@ -11,7 +11,7 @@ from exceed.errors import LogError, Problem
 
 if TYPE_CHECKING:
     from exceed.prepare import Run
-    from exceed.read import LogPath
+    from exceed.read.find import LogPath
 
 Progress = Callable[[int, int], None]
 
@@ -21,10 +21,11 @@ _run: Run | None = None
 def each(logs: list[LogPath], run: Run, jobs: int | None, progress: Progress | None = None) -> list[LogOutcome]:
     """Every log's outcome. jobs : processes, None for as many as cores; fewer logs than two stay here."""
     count = min(jobs or len(os.sched_getaffinity(0)), len(logs))
-    small = jobs is None and sum(log.size for log in logs) < SMALL
+    sizes = [_size(log) for log in logs]
+    small = jobs is None and sum(sizes) < SMALL
     if count <= 1 or small:
         return _here(logs, run, progress)
-    return _over_processes(logs, run, count, progress)
+    return _over_processes(logs, sizes, run, count, progress)
 
 
 # starting a process with its imports costs about as much as assessing so many bytes of logs
@@ -42,7 +43,9 @@ def _here(logs: list[LogPath], run: Run, progress: Progress | None) -> list[LogO
     return outcomes
 
 
-def _over_processes(logs: list[LogPath], run: Run, count: int, progress: Progress | None) -> list[LogOutcome]:
+def _over_processes(
+    logs: list[LogPath], sizes: list[int], run: Run, count: int, progress: Progress | None
+) -> list[LogOutcome]:
     """Over a pool of processes. A worker that dies costs the logs it was given a second try each, then only its own."""
     from concurrent.futures import ProcessPoolExecutor, as_completed
     from concurrent.futures.process import BrokenProcessPool
@@ -51,7 +54,7 @@ def _over_processes(logs: list[LogPath], run: Run, count: int, progress: Progres
     outcomes: dict[int, LogOutcome] = {}
     todo = list(range(len(logs)))
     # largest first: the last log to finish decides
-    todo.sort(key=lambda index: (-logs[index].size, index))
+    todo.sort(key=lambda index: (-sizes[index], index))
     alone = False
     while todo:
         batch = todo[:1] if alone else todo
@@ -82,6 +85,14 @@ def _over_processes(logs: list[LogPath], run: Run, count: int, progress: Progres
         alone = broken or (alone and bool(left))
         todo = left
     return [outcomes[index] for index in range(len(logs))]
+
+
+def _size(log: LogPath) -> int:
+    """Bytes of a log, 0 where that cannot be told (an object store)."""
+    try:
+        return os.path.getsize(log.location)
+    except OSError:
+        return 0
 
 
 def _start(run: Run) -> None:

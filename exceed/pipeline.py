@@ -11,6 +11,7 @@ import traceback
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from exceed.core.outcome import DayOutcome, FeedRow, LogOutcome
 from exceed.core.quantities import QUANTITIES
@@ -26,8 +27,12 @@ from exceed.judge.engine import judge
 from exceed.judge.events import CONTEXT
 from exceed.outcomes import outcome
 from exceed.prepare import Member, Run, prepare
-from exceed.read import LogPath, Survey, find_logs, load, survey
+from exceed.read import find_logs, load, survey
 from exceed.settings import Settings
+
+if TYPE_CHECKING:
+    from exceed.read.find import LogPath, Skipped
+    from exceed.read.look import Survey
 
 # every flight's extremes are given for these, as far as they can be had
 EXTREMES: tuple[str, ...] = (
@@ -74,7 +79,7 @@ def scan(settings: Settings, progress: Callable[[int, int], None] | None = None)
     return day(run, outcomes, skipped)
 
 
-def day(run: Run, outcomes: Iterable[LogOutcome], skipped: Iterable[tuple[str, str]] = ()) -> DayOutcome:
+def day(run: Run, outcomes: Iterable[LogOutcome], skipped: Iterable[Skipped] = ()) -> DayOutcome:
     """Outcomes of logs as one day."""
     fleets = [run.fleets[path] for path in sorted(run.fleets)]
     one = fleets[0].fleet if len(fleets) == 1 else None
@@ -84,7 +89,7 @@ def day(run: Run, outcomes: Iterable[LogOutcome], skipped: Iterable[tuple[str, s
         created=created,
         judged_with=run.judged_with,
         rules=run.rule_sets,
-        skipped=tuple(skipped),
+        skipped=tuple((one.shown, one.reason) for one in skipped),
         fleet=", ".join(sorted(run.fleets)) or None,
         operator=one.operator if one is not None else None,
         time_zone=one.time_zone if one is not None else None,
@@ -286,7 +291,7 @@ def _one_log(settings: Settings) -> tuple[LogPath, Run]:
     logs, skipped = find_logs(settings.paths)
     run = prepare(settings, [(str(Path(log.location).parent), log.root) for log in logs])
     if not logs:
-        reason = skipped[0][1] if skipped else "no such log"
+        reason = skipped[0].reason if skipped else "no such log"
         raise LogError(Problem(settings.paths[0], reason, "one log", "name a log file"))
     if len(logs) > 1:
         raise LogError(Problem(settings.paths[0], f"there are {len(logs)} logs here", "one log", "name one of them"))
