@@ -44,6 +44,7 @@ class Found:
     notes: tuple[str, ...]
     thresholds: Thresholds | None
     windows: Intervals = field(default_factory=lambda: EMPTY)  # around each touchdown
+    passes: tuple[float, ...] = ()  # instants of going around
 
 
 def flights_of(coarse: Coarse, signals: Signals, stall_speed: float | None = None) -> Found:
@@ -135,6 +136,7 @@ def _assembled(
     if len(kept) < len(groups):
         notes.append(f"{len(groups) - len(kept)} hop(s) of less than {HOP:g} s taken as ground time")
     flights = []
+    passes: list[float] = []
     air: list[tuple[float, float]] = []
     impacts: list[tuple[float, float]] = []
     for number, (key, group) in enumerate(kept, start=1):
@@ -153,24 +155,27 @@ def _assembled(
                 air.append((stretch.start, stretch.end))
         last = group[-1]
         hops = max(min(hops, bounces.get(key, 0), len(touchdowns) - 1), 0)
-        passes = sum(go_arounds(signals, limits, stretch.start, stretch.end, touchdowns) for stretch in group)
+        low = [when for part in group for when in go_arounds(signals, limits, part.start, part.end, touchdowns)]
+        passes.extend(low)
         flights.append(
             Flight(number, group[0].start, last.end, group[0].start_seen, last.end_seen,
-                   len(touchdowns) - hops, tuple(touchdowns), hops, passes)
+                   len(touchdowns) - hops, tuple(touchdowns), hops, len(low))
         )  # fmt: skip
         impacts.extend((when - before, when + 2.0) for when in touchdowns)
     windows = normal([s for s, _ in impacts], [e for _, e in impacts])
     flown = normal([s for s, _ in air], [e for _, e in air])
     # the instant of landing itself is still flight's end, so flights and airborne time agree at open ends
-    if flights and not flights[-1].landing_seen and len(flown):
-        last_end = np.where(flown.end >= recording.time[-1], np.nextafter(flown.end, np.inf), flown.end)
-        flown = Intervals(flown.start, last_end)
+    open_ends = [flight.end for flight in flights if not flight.landing_seen]
+    if open_ends:
+        flown = Intervals(
+            flown.start, np.where(np.isin(flown.end, open_ends), np.nextafter(flown.end, np.inf), flown.end)
+        )
     everything = _recorded_time(recording)
     airborne = complement(windows, flown)
     ground = complement(joined(flown, 0.0), everything)
     if not flights:
         notes.append("no flight found: the whole recording counts as ground time")
-    return Found(tuple(flights), airborne, ground, True, method, tuple(notes), limits, windows)
+    return Found(tuple(flights), airborne, ground, True, method, tuple(notes), limits, windows, tuple(passes))
 
 
 def _only_hops(group: list[Stretch]) -> bool:

@@ -32,6 +32,8 @@ PULLED, PUSHED = 1.8, 0.4  # mean load factor of a second
 PATH_BENT = 0.5 * STANDARD_GRAVITY  # m/s2 of change of vertical speed
 MANOEUVRE_LEAST, MANOEUVRE_JOIN, MANOEUVRE_PAD = 1.5, 30.0, 5.0  # s
 MOVING = 1.0  # m/s over the ground
+CRAWL = 8.0  # m/s: below, an airspeed indicator says nothing of movement
+SLIVER = 5.0  # s
 AROUND = 120.0  # s before and after a flight that belong to its runs on the ground
 ROLLING_FAST = 15.0  # m/s: the landing roll ends, the take-off run begins
 
@@ -63,9 +65,15 @@ def phases_of(coarse: Coarse, signals: Signals, found: Found) -> tuple[PhaseTrac
         _ends(coarse, signals, flight, cells, inside, code)
         low = np.isin(code, [PHASE_CODE["take-off"], PHASE_CODE["landing"]])
         code[inside & manoeuvring[cells] & ~low] = PHASE_CODE["manoeuvring"]
+        for when in found.passes:
+            if flight.start < when < flight.end:
+                _low_pass(signals, time, cells, when, inside, code, touched=False)
         for when in flight.touchdowns:
+            if when < flight.end - AROUND / 2.0:
+                _low_pass(signals, time, cells, when, inside, code, touched=True)
             code[(time >= when - 2.0) & (time < min(when + 8.0, flight.end))] = PHASE_CODE["landing"]
         _rolls(signals, flight, time, cells, code)
+        _without_slivers(time, code, inside)
     if not found.known:
         codes[manoeuvring] = PHASE_CODE["manoeuvring"]
     change = np.concatenate([[0], np.flatnonzero(codes[1:] != codes[:-1]) + 1])
@@ -84,7 +92,9 @@ def _on_ground(coarse: Coarse, signals: Signals, found: Found, codes: NDArray[np
     elif signals.speed is not None:
         # an airspeed indicator says nothing below its first mark, but a reading above it is movement
         known = np.isfinite(signals.speed)
-        moving = known & (signals.speed > 8.0)
+        moving = known & (signals.speed > CRAWL)
+        # the wind makes a slow reading waver about the mark: what moves, moves for a while
+        moving = lasting(joined(_stretches(coarse, moving), 15.0), 5.0).contains(coarse.time)
         if coarse.has("heading"):
             heading = coarse.pick("heading")
             turned = coarse.spread(np.unwrap(np.nan_to_num(heading)), 5.0)
@@ -93,7 +103,8 @@ def _on_ground(coarse: Coarse, signals: Signals, found: Found, codes: NDArray[np
     codes[ground & moving] = PHASE_CODE["taxi"]
     if still is None:
         return normal([], [])
-    runs = lasting(_stretches(coarse, ground & still), 5.0)
+    # a heading that stays tells standing from taxiing straight on only where it lasts
+    runs = lasting(_stretches(coarse, ground & still), 5.0 if signals.rolling is not None else 20.0)
     stopped = runs.contains(coarse.time)
     codes[ground & stopped] = PHASE_CODE["standing"]
     codes[ground & still & ~stopped] = PHASE_CODE["taxi"]
@@ -182,6 +193,36 @@ def _ends(
         low &= ~np.isin(codes, [take_off, initial])
         codes[low] = approach
         codes[inside & _until(backwards, (above > FLARE)[::-1], -end, 60.0)[::-1]] = landing
+
+
+def _low_pass(
+    signals: Signals, time: Array, cells: slice, when: float, inside: Mask, codes: NDArray[np.int8], *, touched: bool
+) -> None:
+    """A touch-and-go, or a missed approach, which belongs to the approach until it is back in the circuit."""
+    if signals.height is None or signals.climb is None:
+        return
+    height, climb = signals.height[cells], signals.climb[cells]
+    above = height - signals.coarse.median_near(signals.height, when, 2.0)
+    backwards = -time[::-1]
+    before = _until(backwards, ((above > CIRCUIT) | (climb > CLIMBING))[::-1], -when, 600.0)[::-1] & inside
+    codes[before] = PHASE_CODE["approach"]
+    levelled = (above > SCREEN) & (climb < LEVELLED) & (time > when + 20.0)
+    after = _until(time, (above > CIRCUIT) | levelled, when, 600.0) & inside
+    codes[after] = PHASE_CODE["initial climb" if touched else "approach"]
+    if touched:
+        codes[_until(backwards, (above > FLARE)[::-1], -when, 60.0)[::-1] & inside] = PHASE_CODE["landing"]
+        codes[_until(time, above > SCREEN, when, 60.0) & inside] = PHASE_CODE["take-off"]
+
+
+def _without_slivers(time: Array, codes: NDArray[np.int8], inside: Mask) -> None:
+    """Legs of a few seconds that manoeuvring cut off go to what follows them."""
+    legs = [PHASE_CODE[name] for name in ("climb", "cruise", "descent")]
+    edges = np.concatenate([[0], np.flatnonzero(np.diff(codes)) + 1, [len(codes)]])
+    for first, stop in reversed(list(zip(edges[:-1].tolist(), edges[1:].tolist(), strict=True))):
+        if first > 0 and stop < len(codes) and codes[first] in legs and inside[first] and inside[stop]:
+            beside = PHASE_CODE["manoeuvring"] in (codes[first - 1], codes[stop])
+            if beside and time[stop] - time[first] < SLIVER:
+                codes[first:stop] = codes[stop]
 
 
 def _until(time: Array, stop: Mask, start: float, longest: float) -> Mask:

@@ -102,10 +102,10 @@ def touches_between(signals: Signals, limits: Thresholds | None, start: float, e
 
 def go_arounds(
     signals: Signals, limits: Thresholds | None, start: float, end: float, touchdowns: Sequence[float]
-) -> int:
-    """How often the aeroplane came down to the field and went away without touching."""
+) -> list[float]:
+    """Instants at which the aeroplane had come down near the field, and went away without touching."""
     time = signals.coarse.time
-    count = 0
+    found = []
     for part in _low_stretches(signals, limits, start, end, LOW):
         low, high = float(time[part.start]) - 5.0, float(time[part.stop - 1]) + 5.0
         assert signals.height is not None
@@ -113,5 +113,5 @@ def go_arounds(
         around = signals.height[max(part.start - 180, 0) : part.start], signals.height[part.stop : part.stop + 180]
         far = all(len(side) and np.isfinite(side).any() and np.nanmax(side) > depth + 0.75 * LOW for side in around)
         if far and not any(low <= when <= high for when in touchdowns):
-            count += 1
-    return count
+            found.append(float(time[part][np.nanargmin(signals.height[part])]))
+    return found

@@ -100,3 +100,21 @@ def test_short_legs_do_not_flicker() -> None:
         points.append((10.0 * step, 80.0, 500.0 + 20.0 * step + (3.0 if step % 2 else -3.0)))
     track, _, _ = phases(profile(points))
     assert order(track).count("climb") == 1
+
+
+def test_a_touch_and_go_lands_and_takes_off_again() -> None:
+    touch = [*CIRCUIT[:8], (606, 50, 100), (612, 58, 100), (670, 75, 330), (800, 100, 700), (900, 90, 700),
+             (1100, 60, 100), (1120, 25, 100), (1140, 10, 100), (1200, 0, 100)]  # fmt: skip
+    track, _, _ = phases(profile(touch))
+    names = order(track)
+    first = names.index("landing")
+    assert names[first - 1] == "approach"
+    assert names[first + 1 : first + 3] == ["take-off", "initial climb"]
+    assert names.count("landing") == 2
+
+
+def test_a_wavering_airspeed_indicator_does_not_flicker_between_taxi_and_unknown() -> None:
+    recording = only(profile([(0, 0, 100), (60, 0, 100), (70, 16, 100), (200, 16, 100), (220, 0, 100), (300, 0, 100)],
+                             noise=0.6), "indicated_airspeed")  # fmt: skip
+    track, _, _ = phases(recording)
+    assert order(track) == ["unknown", "taxi", "unknown"]
