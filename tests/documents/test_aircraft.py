@@ -110,6 +110,8 @@ FORMS = [
      lambda a: [(row.flaps, row.maximum) for row in a.speeds.flaps_extended], [(None, 90 * KT)]),
     ("speeds: {flaps_extended: {over: flaps, points: [[10 deg, 110 KIAS], [30 deg, 90 KIAS]]}}\n",
      lambda a: [row.maximum for row in a.speeds.flaps_extended], [110 * KT, 90 * KT]),
+    ("speeds: {flaps_extended: [{flaps: 10 deg, maximum: 90 KIAS}, {flaps: 30 deg, maximum: 90 KIAS}]}\n",
+     lambda a: [row.maximum for row in a.speeds.flaps_extended], [90 * KT, 90 * KT]),
     ("position_error: [[50 KIAS, 54 KCAS], [180 KIAS, 180 KCAS]]\n",
      lambda a: (a.position_error[0].flaps, a.position_error[0].points[0]), (None, (50 * KT, 54 * KT))),
     ("mach: {maximum_operating: 0.80}\n", lambda a: a.mach.maximum_operating.value, 0.8),

@@ -129,3 +129,19 @@ def test_zones_become_offsets() -> None:
     noon = datetime.datetime(2031, 7, 1, 12)
     for text, hours in (("UTC", 0), ("Z", 0), ("+02:00", 2), ("-05:30", -5.5)):
         assert time_zone(text).utcoffset(noon) == datetime.timedelta(hours=hours)
+
+
+def test_an_unknown_unit_is_answered_with_what_is_meant() -> None:
+    for unit, do in (("kph", "write 'km/h' if you meant kilometres per hour"), ("degc", "write 'degC' if that is meant"),  # noqa: E501
+                     ("zorkmid", "use a unit of the list")):  # fmt: skip
+        with pytest.raises(DocumentError) as caught:
+            load_channels(HEAD + f"channels: [{{column: A, quantity: oil, unit: {unit}}}]\n")
+        assert caught.value.problems[0].do == do
+
+
+@pytest.mark.parametrize(
+    ("zone", "right"), [("+14:00", True), ("+14:01", True), ("+15:00", False), ("-00:59", True), ("+01:60", False)]
+)
+def test_offsets_of_zones_stay_within_a_day(zone: str, right: bool) -> None:
+    found = lint(HEAD + f'clock: {{column: t, kind: iso, zone: "{zone}"}}\n')
+    assert (found == []) is right

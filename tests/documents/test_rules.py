@@ -121,6 +121,50 @@ def test_a_severer_level_may_lie_inside_if_it_asks_for_a_longer_time() -> None:
     assert [level.percent for level in rule.levels] == [1.1, 1.05]
 
 
+ORDER = [
+    ("load_factor", "aircraft.load_factor.maximum", "above", "100 %", "110 %", True),
+    ("load_factor", "aircraft.load_factor.maximum", "above", "110 %", "100 %", False),
+    # a negative limit lies farther out at a greater per cent
+    ("load_factor", "aircraft.load_factor.minimum", "below", "100 %", "110 %", True),
+    ("load_factor", "aircraft.load_factor.minimum", "below", "110 %", "100 %", False),
+    # a stall speed at a smaller one
+    ("calibrated_airspeed", "{quantity: stall_speed}", "below", "110 %", "100 %", True),
+    ("calibrated_airspeed", "{quantity: stall_speed}", "below", "100 %", "110 %", False),
+    # the sign of a named fact is not known, so either may be meant, but not twice the same
+    ("load_factor", "aircraft.limits.x", "below", "110 %", "100 %", True),
+    ("load_factor", "aircraft.limits.x", "below", "100 %", "110 %", True),
+    ("load_factor", "aircraft.limits.x", "below", "100 %", "100 %", False),
+    ("load_factor", "aircraft.limits.x", "below", "2 g", "1 g", True),
+    ("load_factor", "aircraft.limits.x", "below", "1 g", "2 g", False),
+    ("load_factor", "aircraft.limits.x", "above", "{beyond_by: 1 g}", "{beyond_by: 2 g}", True),
+    ("load_factor", "aircraft.limits.x", "below", "{beyond_by: 2 g}", "{beyond_by: 1 g}", False),
+    # one form against the other depends on the limit in force
+    ("load_factor", "aircraft.limits.x", "above", "100 %", "{beyond_by: 1 g}", True),
+    ("load_factor", "aircraft.limits.x", "above", "100 %", "2 g", True),
+]
+
+
+@pytest.mark.parametrize(("quantity", "limit", "side", "less", "more", "right"), ORDER)
+def test_the_severer_level_lies_farther_out(
+    quantity: str, limit: str, side: str, less: str, more: str, right: bool
+) -> None:
+    body = f"quantity: {quantity}, limit: {limit}, {side}: {{caution: {less}, warning: {more}}}"
+    if right:
+        assert len(one(body).levels) == 2
+        return
+    with pytest.raises(DocumentError, match=r"warning at .* is (inside|the same as) caution at"):
+        one(body)
+
+
+def test_what_is_expected_of_a_ratio_allows_a_bare_number() -> None:
+    with pytest.raises(DocumentError) as caught:
+        one("quantity: mach, limit: 0.8, above: {caution: 5 kt}")
+    assert caught.value.problems[0].expected == "a number or a per cent, or a per cent of the limit"
+    with pytest.raises(DocumentError) as caught:
+        one("quantity: load_factor, above: {caution: 5 kt}")
+    assert caught.value.problems[0].expected == "a load factor in ft/s2, g, m/s2"
+
+
 def test_a_discrete_rule_knows_its_states() -> None:
     rule = one("quantity: gear_down, is: {caution: up}, when: [{phase: landing}]")
     assert [(level.severity, level.word, level.value) for level in rule.states] == [("caution", "up", 0)]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from typing import Any
 
 import jsonschema
@@ -105,6 +106,19 @@ def test_every_key_is_described(kind: str) -> None:
     for model in _models().values():
         for name, field in model.model_fields.items():
             assert name in model.HIDDEN or field.description, name
+
+
+def test_numbers_with_units_have_a_pattern_and_say_what_is_due() -> None:
+    whole = schema("aircraft")
+    mass = whole["$defs"]["Masses"]["properties"]["empty"]
+    (text,) = [row for row in mass["anyOf"] if row.get("type") == "string"]
+    assert text["description"] == "a mass in kg, lb"
+    for good in ("640 kg", "640kg", "1.4e3 lb", " +.5 kg "):
+        assert re.search(text["pattern"], good), good
+    for bad in ("640", "640 kt", "kg", "6,4 kg", "1 200 kg", "nan kg"):
+        assert not re.search(text["pattern"], bad), bad
+    speed = json.dumps(whole["$defs"]["SpeedLimit"])
+    assert "an airspeed in KCAS, KEAS, KIAS, KTAS" in speed
 
 
 def test_an_unknown_kind_suggests_the_nearest() -> None:
