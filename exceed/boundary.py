@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import itertools
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -94,6 +94,13 @@ class Air:
             finite(self.from_equivalent(equivalent, "indicated_airspeed")),
         )
 
+    def given(self, value: float, kind: str | None) -> Airspeeds:
+        """A speed of a kind in all kinds; its own stays to the last digit as the manual has it."""
+        found = self.kinds(self.to_equivalent(value, kind))
+        own = {"equivalent_airspeed": "equivalent", "calibrated_airspeed": "calibrated", "true_airspeed": None}
+        name = own.get(kind or "", "indicated")
+        return found if name is None else replace(found, **{name: value})
+
 
 @dataclass(frozen=True, slots=True)
 class SpeedEnd:
@@ -131,7 +138,7 @@ def speeds_of(
         if value is None:
             unknown.append((f"{symbol}, {title}".removeprefix(", "), said))
             continue
-        speed = air.kinds(air.to_equivalent(value, limit.airspeed))
+        speed = air.given(value, limit.airspeed)
         found[name] = SpeedRow(symbol, title, speed, f"speeds.{name}", limit.airspeed, notes=(said,) if said else ())
     if abs(air.flaps) > UP_WITHIN and aircraft.speeds.flaps_extended:
         rows = aircraft.speeds.flaps_extended
@@ -141,7 +148,7 @@ def speeds_of(
         kind = rows[0].maximum.airspeed
         past = bool(tables.past_last_setting(air.flaps, table.flap_angle))
         said = "past the last setting listed: the last one holds" if past else ""
-        speed = air.kinds(air.to_equivalent(value, kind))
+        speed = air.given(value, kind)
         found["flaps_extended"] = SpeedRow(
             "V_FE", "flaps extended speed", speed, "speeds.flaps_extended", kind, notes=(said,) if said else ()
         )

@@ -5,7 +5,8 @@ What the manual says and what is computed are never mixed: every figure carries 
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 
@@ -26,13 +27,16 @@ from exceed.boundary import (
 from exceed.core.constants import FOOT
 from exceed.core.diagrams import CornerRow, EnvelopeOutcome, GustRow, LimitRow, SpeedRow
 from exceed.core.outcome import AircraftInfo, EnvelopeLine
+from exceed.core.units import UNITS
 from exceed.derive.facts import Facts, facts_of
+from exceed.documents.aircraft import CATEGORIES, Aircraft, category_aircraft, load_aircraft
+from exceed.documents.values import ValueFault, parse
+from exceed.errors import Problem, UsageError
 from exceed.physics import atmosphere, envelope, gust, load_limits, stall, tables
-
-if TYPE_CHECKING:
-    from exceed.documents.aircraft import Aircraft
+from exceed.physics.atmosphere import LOWEST_ALTITUDE
 
 Missing = list[tuple[str, str]]
+HIGHEST_ALTITUDE = 25000.0  # m; the standard atmosphere reaches further, no manual does
 # the categories whose gusts the formula of the older part 23 was written for; the very light codes took it over
 GUST_CATEGORIES = (None, "normal", "utility", "aerobatic", "commuter", "very-light", "light-sport")
 
@@ -50,6 +54,54 @@ def envelope_at(aircraft: Aircraft, mass: float | None, flaps: float = 0.0) -> e
         return None
     found = boundary(facts, air, weight, stalls, end.equivalent)
     return found if np.isfinite(found.upper).any() else None
+
+
+def envelope_asked(
+    aircraft: str, mass: str | None = None, altitude: str | None = None, flaps: str | None = None
+) -> EnvelopeOutcome:
+    """`envelope_of` from texts as a user gives them. aircraft : a file, or a category (mass is then its maximum
+    take-off mass). Raises UsageError and DocumentError with all that is wrong."""
+    problems: list[Problem] = []
+    weight = _asked(problems, "--mass", mass, "mass", "900 kg", (1.0, 1e6))
+    height = _asked(problems, "--altitude", altitude, "length", "5000 ft", (LOWEST_ALTITUDE, HIGHEST_ALTITUDE))
+    angle = _asked(problems, "--flaps", flaps, "angle", "10 deg", (np.radians(-20.0), np.radians(90.0)))
+    if problems:
+        raise UsageError(*problems)
+    word = not Path(aircraft).exists() and "/" not in aircraft and not aircraft.endswith((".yaml", ".yml"))
+    if aircraft in CATEGORIES or word:
+        try:
+            known = category_aircraft(aircraft, weight)
+        except UsageError as error:  # what is an option elsewhere is the argument here
+            raise UsageError(*(replace(one, place="AIRCRAFT") for one in error.problems)) from error
+    else:
+        known = load_aircraft(Path(aircraft))
+    if known.flaps == "none" and abs(angle or 0.0) > UP_WITHIN:
+        raise UsageError(
+            Problem(
+                "--flaps", f"flaps are set to {flaps}, and this aeroplane has none", "no flaps", "leave --flaps out"
+            )
+        )
+    return envelope_of(known, weight, height or 0.0, angle or 0.0)
+
+
+def _asked(
+    problems: list[Problem], option: str, text: str | None, kind: str, example: str, bounds: tuple[float, float]
+) -> float | None:
+    """An option's value in SI, within what can be meant; None where it is not given or wrong (then a problem more)."""
+    if text is None:
+        return None
+    try:
+        value = parse(text, kind, airspeed="refused")
+    except ValueFault as error:
+        problems.append(Problem(option, error.problem, error.expected, error.do or f"write it as '{example}'"))
+        return None
+    if not bounds[0] <= value <= bounds[1]:
+        unit = UNITS[value.unit]
+        low, high = ((bound - unit.offset) / unit.factor for bound in bounds)
+        expected = f"{low:.6g} to {high:.6g} {value.unit}"
+        problems.append(Problem(option, f"'{text}' is out of range", expected, f"write it as '{example}'"))
+        return None
+    return float(value)
 
 
 def envelope_of(
@@ -113,10 +165,12 @@ def _corner_rows(found: envelope.Envelope | None, air: Air, end: SpeedEnd | None
         source = "load_factor"
         if "stall" in corner.name:
             source = "computed" if "meets" in corner.name or "line" in corner.name else "stall_speed"
-        elif corner.name.startswith("speed limit"):
-            source = f"{end.source}, load_factor"
+        if corner.name.startswith("speed limit"):
+            source = end.source
         speed = air.kinds(corner.equivalent_airspeed)
-        rows.append(CornerRow(corner.name, speed, finite(corner.load_factor), source))
+        # the corner says which speed limit ends the diagram
+        name = corner.name.replace("speed limit", end.symbol)
+        rows.append(CornerRow(name, speed, finite(corner.load_factor), source))
     return tuple(rows)
 
 
@@ -136,12 +190,13 @@ def _limit_rows(aircraft: Aircraft, facts: Facts, air: Air, mass: float | None) 
     places = np.unique(table.speed_up_to[np.isfinite(table.speed_up_to)]).tolist()
     bounds = list(zip([None, *places], [*places, None], strict=True))
     rows = []
+    source = f"category {aircraft.category}" if aircraft.assumed else "load_factor"
     for low, high in bounds:
         # the middle of a stretch stands for it; beyond the last bound any speed does
         inside = 0.5 * ((low or 0.0) + high) if high is not None else (low or 0.0) + 1.0
         most, least = limits_of(facts, air, mass, inside)
         about = {"speed_from": low, "speed_to": high, "kind": kind if places else None}
-        rows.append(LimitRow("", finite(most), finite(least), "load_factor", **about))
+        rows.append(LimitRow("", finite(most), finite(least), source, **about))
         if aircraft.rolling is not None and np.isfinite(most):
             rolling = aircraft.rolling
             words = f"rolling faster than {rolling.above_roll_rate}"
@@ -151,7 +206,7 @@ def _limit_rows(aircraft: Aircraft, facts: Facts, air: Air, mass: float | None) 
             rows.append(LimitRow(words, finite(float(reduced)), finite(least), "load_factor, rolling", **about))
         if (table.airbrakes == 1.0).any():
             most, least = limits_of(facts, air, mass, inside, 1.0)
-            rows.append(LimitRow("airbrakes out", finite(most), finite(least), "load_factor", **about))
+            rows.append(LimitRow("airbrakes out", finite(most), finite(least), source, **about))
     return tuple(rows)
 
 
@@ -222,7 +277,8 @@ def _missing(
     found: Missing = []
     if not np.isfinite(stalls[0]):
         found.append(("stall line, corners at it", silent if "stall_table" in facts.missing else "mass not known"))
-    if not np.isfinite(stalls[1]):
+    lowest = min((row.minimum for row in limits if row.minimum is not None), default=-1.0)
+    if not np.isfinite(stalls[1]) and lowest < 0.0:
         where = "" if "stall_table" in facts.missing or abs(air.flaps) <= UP_WITHIN else " with these flaps"
         found.append(("negative stall line", f"inverted stall speed{where} not known"))
     for side in ("maximum", "minimum"):
@@ -269,7 +325,8 @@ def _notes(
             notes.append("flaps past the last setting listed for the limit load factors: the last one holds")
         elif abs(air.flaps) > UP_WITHIN and np.isfinite(limit_table.flap_angle).any():
             row = np.degrees(float(tables.flap_setting_in_force(air.flaps, limit_table.flap_angle)))
-            notes.append(f"limit load factors are those listed for flaps {row:.0f} deg")
+            words = "flaps out" if aircraft.assumed else f"flaps {row:.0f} deg"
+            notes.append(f"limit load factors are those listed for {words}")
     stall_table = facts.values.get("stall_table")
     if stall_table is not None and mass is not None and (stall_table.mass != mass).any():
         notes.append(f"stall speeds are taken to {mass:.0f} kg with the root of mass")
@@ -277,7 +334,8 @@ def _notes(
         notes.append("no position error is known: IAS is taken as CAS")
     elif any(_beyond(air, row) for row in speeds.values()) or _beyond_speed(air, stalls):
         notes.append("beyond the ends of the position error's table its last correction is held")
-    notes += _manoeuvring_note(speeds, stalls, limits)
+    if abs(air.flaps) <= UP_WITHIN:  # the manual's V_A is one of flaps up
+        notes += _manoeuvring_note(speeds, stalls, limits)
     if gusts:
         notes.append(
             "gusts of 14 CFR 23.333(c), formula of 23.341(c), standard atmosphere; V_NO (or V_MO) stands for the design"
