@@ -33,7 +33,8 @@ class Step:
     by sample. uncertainty : the method's own standard uncertainty in SI, besides what its inputs bring. one_sided : the
     value is a bound by construction, so it can never clear a limit (a level turn's 1/cos Φ). cap : highest certainty.
     main : the inputs whose samples are the method's own; the others only correct them and are interpolated onto these
-    (none named: all).
+    (none named: all). spread : a function of the same parameters that gives the method's own standard uncertainty sample
+    by sample, where it is not the same everywhere.
     """
 
     quantity: str
@@ -49,6 +50,7 @@ class Step:
     constant: float | None = None
     source: str = ""
     main: tuple[str, ...] = ()
+    spread: Callable[..., Any] | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -221,16 +223,36 @@ class Trace:
             change = np.abs(moved - base)
             total += np.where(np.isfinite(change), change, 0.0) ** 2
         for inner in self.closure([name]):
-            own = self.steps[inner].uncertainty
-            if not own:
+            own = self._own_uncertainty(inner, grid, places)
+            most = float(np.max(own, initial=0.0))
+            if most <= 0.0:
                 continue
             if inner == name:
                 total += own**2
             else:
-                moved = self.evaluate_at([name], grid, places, shifted={f"step:{inner}": own})[name]
-                change = np.abs(moved - base)
+                moved = self.evaluate_at([name], grid, places, shifted={f"step:{inner}": most})[name]
+                change = np.abs(moved - base) * own / most
                 total += np.where(np.isfinite(change), change, 0.0) ** 2
         return np.sqrt(total)
+
+    def _own_uncertainty(self, name: str, grid: Grid, places: NDArray[np.int64]) -> Array:
+        """(k,) a step's own standard uncertainty at places, besides what its inputs bring."""
+        step = self.steps[name]
+        own = np.full(len(places), step.uncertainty)
+        if step.spread is None:
+            return own
+        needed = [source for source in step.inputs.values() if source != TIME and not source.startswith("recorded:")]
+        around = self.evaluate_at(needed, grid, places) if needed else {}
+        arguments: dict[str, Any] = dict(step.facts)
+        for parameter, source in step.inputs.items():
+            if source == TIME:
+                arguments[parameter] = grid.time[places]
+            elif source.startswith("recorded:"):
+                arguments[parameter] = self._channel(source[9:], grid, places, grid.time[places], {})
+            else:
+                arguments[parameter] = around[source]
+        spread = np.abs(np.broadcast_to(np.asarray(step.spread(**arguments), dtype=np.float64), own.shape))
+        return np.hypot(own, np.where(np.isfinite(spread), spread, 0.0))
 
     def _work_out(
         self,
