@@ -9,6 +9,7 @@ from __future__ import annotations
 import numpy as np
 
 from exceed.core.constants import EARTH_RADIUS, STANDARD_GRAVITY
+from exceed.core.intervals import runs
 from exceed.core.recording import Array
 from exceed.physics import airspeed, atmosphere, kinematics, smoothing, turning
 
@@ -16,25 +17,34 @@ from exceed.physics import airspeed, atmosphere, kinematics, smoothing, turning
 def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
     """Rate of change by local least-squares parabolas over `width` s to either side; the reach is `width`.
 
-    (n,) in, (n,) out. Even spacing without holes takes a short way to the same numbers. Source: [SAVITZKY-GOLAY].
+    (n,) in, (n,) out. Evenly spaced samples take a short way to the same numbers: there a parabola's slope at its
+    middle is a straight line's, so one kernel serves all. Source: [SAVITZKY-GOLAY].
     """
     count = len(time)
     if count < 2:
         return np.full(count, np.nan)
     step = float(time[-1] - time[0]) / (count - 1)
     half = int(width * (1.0 + 1e-6) / step) if step > 0.0 else 0
-    even = half >= 1 and step <= max_gap and count > 2 * half
-    if even:
-        spacing = np.diff(time)
-        even = float(np.max(spacing) - np.min(spacing)) < 1e-4 * step and bool(np.isfinite(values).all())
-    if not even:
+    if half < 1 or step > max_gap or count <= 2 * half:
+        return smoothing.smooth_derivative(time, values, width, max_gap)
+    spacing = np.diff(time)
+    if float(np.max(spacing) - np.min(spacing)) >= 1e-4 * step:
+        return smoothing.smooth_derivative(time, values, width, max_gap)
+    # a missing sample, or an end, within reach leaves another set of samples: those places take the long way
+    holed = ~np.isfinite(values)
+    holed[0] = holed[-1] = True
+    near = np.concatenate([[0], np.cumsum(holed)])
+    own = np.arange(count)
+    touched = near[np.minimum(own + half + 1, count)] > near[np.maximum(own - half, 0)]
+    if 2 * np.count_nonzero(touched) > count:
         return smoothing.smooth_derivative(time, values, width, max_gap)
     offsets = np.arange(half, -half - 1, -1, dtype=np.float64)
     kernel = offsets / (np.sum(offsets**2) * step)
-    result = np.convolve(values, kernel, mode="same")
-    edge = min(2 * half + 1, count)
-    result[:half] = smoothing.smooth_derivative(time[:edge], values[:edge], width, max_gap)[:half]
-    result[-half:] = smoothing.smooth_derivative(time[-edge:], values[-edge:], width, max_gap)[-half:]
+    result = np.convolve(np.where(np.isfinite(values), values, 0.0), kernel, mode="same")
+    for first, stop in runs(touched).tolist():
+        low, high = max(first - half, 0), min(stop + half, count)
+        part = smoothing.smooth_derivative(time[low:high], values[low:high], width, max_gap)
+        result[first:stop] = part[first - low : stop - low]
     return result
 
 
