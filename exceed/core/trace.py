@@ -33,8 +33,8 @@ class Step:
     by sample. uncertainty : the method's own standard uncertainty in SI, besides what its inputs bring. one_sided : the
     value is a bound by construction, so it can never clear a limit (a level turn's 1/cos Φ). cap : highest certainty.
     main : the inputs whose samples are the method's own; the others only correct them and are interpolated onto these
-    (none named: all). spread : a function of the same parameters that gives the method's own standard uncertainty sample
-    by sample, where it is not the same everywhere.
+    (none named: all). spread : a function of the same parameters that gives the method's own standard uncertainty
+    sample by sample, where it is not the same everywhere.
     """
 
     quantity: str
