@@ -13,6 +13,8 @@ from exceed.core.intervals import runs
 from exceed.core.recording import Array
 from exceed.physics import airspeed, atmosphere, kinematics, smoothing, turning
 
+MOST_PATCHES = 8  # more of them cost more than the long way for all
+
 
 def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
     """Rate of change by local least-squares parabolas over `width` s to either side; the reach is `width`.
@@ -36,12 +38,13 @@ def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
     near = np.concatenate([[0], np.cumsum(holed)])
     own = np.arange(count)
     touched = near[np.minimum(own + half + 1, count)] > near[np.maximum(own - half, 0)]
-    if 2 * np.count_nonzero(touched) > count:
+    patches = runs(touched)
+    if len(patches) > MOST_PATCHES or 2 * np.count_nonzero(touched) > count:
         return smoothing.smooth_derivative(time, values, width, max_gap)
     offsets = np.arange(half, -half - 1, -1, dtype=np.float64)
     kernel = offsets / (np.sum(offsets**2) * step)
     result = np.convolve(np.where(np.isfinite(values), values, 0.0), kernel, mode="same")
-    for first, stop in runs(touched).tolist():
+    for first, stop in patches.tolist():
         low, high = max(first - half, 0), min(stop + half, count)
         part = smoothing.smooth_derivative(time[low:high], values[low:high], width, max_gap)
         result[first:stop] = part[first - low : stop - low]
