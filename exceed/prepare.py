@@ -11,7 +11,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from exceed.core.outcome import JudgedWith, RuleSetRow
-from exceed.documents.aircraft import CATEGORIES, Aircraft, category_aircraft, load_aircraft
+from exceed.documents.aircraft import CATEGORIES, Aircraft, category_aircraft, load_aircraft, same_registration
 from exceed.documents.channels import Channels, load_channels
 from exceed.documents.fleet import Fleet, FleetAircraft, load_fleet
 from exceed.documents.loading import LoadingSheet, load_loading
@@ -260,6 +260,15 @@ def _member(
     own_aircraft = aircraft
     if settings.aircraft is None and row.aircraft is not None:
         own_aircraft = loader.aircraft(str(fleet.resolve(row.aircraft)))
+        if own_aircraft is not None and not same_registration(own_aircraft.registration, row.registration):
+            loader.problems.append(
+                Problem(
+                    fleet.path,
+                    f"{row.registration} names {row.aircraft}, which is the file of {own_aircraft.registration}",
+                    f"the aircraft file of {row.registration}",
+                    "correct the path here, or the registration there",
+                )
+            )
     own_book = book if settings.rules else loader.book([loader.rules(name) for name in fleet.rules_of(row)])
     own_channels = channels
     if settings.channels is None and row.channels is not None:

@@ -252,7 +252,8 @@ class Trace:
             else:
                 arguments[parameter] = around[source]
         spread = np.abs(np.broadcast_to(np.asarray(step.spread(**arguments), dtype=np.float64), own.shape))
-        return np.hypot(own, np.where(np.isfinite(spread), spread, 0.0))
+        total: Array = np.hypot(own, np.where(np.isfinite(spread), spread, 0.0))
+        return total
 
     def _work_out(
         self,
