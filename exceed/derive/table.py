@@ -79,6 +79,10 @@ _SYSTEM_ERROR = 5.0 * KNOT / float(np.sqrt(3.0))
 # air differs from the standard atmosphere by some 10 K; common practice, no source
 _ISA_UNCERTAINTY = 10.0
 
+# what differentiation leaves of noise and steps: orders of magnitude against the flight model; a constant error of the
+# channel, which is what its accuracy mostly is, leaves nothing
+_RISE, _TURN, _ROTATION, _SPIN = 0.3, float(np.radians(0.5)), float(np.radians(2.0)), float(np.radians(10.0))
+
 _RATES = ("roll_rate", "pitch_rate", "yaw_rate")
 
 DERIVATIONS: tuple[Derivation, ...] = (
@@ -138,30 +142,37 @@ DERIVATIONS: tuple[Derivation, ...] = (
                "geometric altitude less the field's",
                "DEFINITION"),
     Derivation("vertical_speed", methods.vertical_speed, "pressure altitude differentiated", "SAVITZKY-GOLAY",
-               width=1.5),
+               width=1.5, uncertainty=_RISE),
     Derivation("vertical_speed", methods.vertical_speed_geometric, "geometric altitude differentiated",
                "SAVITZKY-GOLAY",
-               width=1.5),
-    Derivation("ground_speed", methods.ground_speed, "position differentiated", "SAVITZKY-GOLAY", width=1.5),
-    Derivation("track_angle", methods.track_angle, "position differentiated", "SAVITZKY-GOLAY", width=1.5),
+               width=1.5, uncertainty=_RISE),
+    Derivation("ground_speed", methods.ground_speed, "position differentiated", "SAVITZKY-GOLAY",
+               width=1.5, uncertainty=1.0),
+    Derivation("track_angle", methods.track_angle, "position differentiated", "SAVITZKY-GOLAY",
+               width=1.5, uncertainty=float(np.radians(1.0))),
     # turning
-    Derivation("turn_rate", methods.turn_rate_from_heading, "heading differentiated", "SAVITZKY-GOLAY", width=1.0),
-    Derivation("turn_rate", methods.turn_rate_from_track, "track differentiated", "SAVITZKY-GOLAY", width=1.0,
+    Derivation("turn_rate", methods.turn_rate_from_heading, "heading differentiated", "SAVITZKY-GOLAY",
+               width=1.0, uncertainty=_TURN),
+    Derivation("turn_rate", methods.turn_rate_from_track, "track differentiated", "SAVITZKY-GOLAY",
+               width=1.0, uncertainty=_TURN,
                assumes="still air: the track turns as the aeroplane does"),
     Derivation("turn_rate", turning.turn_rate, "level turn", "LEVEL-TURN", assumes="level coordinated turn"),
     Derivation("bank_angle", turning.bank_angle_level_turn, "turn rate and true airspeed", "LEVEL-TURN",
                assumes="level coordinated turn", uncertainty=float(np.radians(3.0))),
     Derivation("turn_radius", turning.turn_radius, "level turn", "LEVEL-TURN", assumes="level coordinated turn"),
     Derivation("turn_radius", turning.turn_radius_from_turn_rate, "turn rate and true airspeed", "LEVEL-TURN"),
-    Derivation("roll_rate", methods.roll_rate, "bank differentiated", "AXES", width=0.25, when=_quick("bank_angle")),
-    Derivation("pitch_rate", methods.pitch_rate, "attitude differentiated", "AXES", width=0.25,
+    Derivation("roll_rate", methods.roll_rate, "bank differentiated", "AXES",
+               width=0.25, uncertainty=_ROTATION, when=_quick("bank_angle")),
+    Derivation("pitch_rate", methods.pitch_rate, "attitude differentiated", "AXES", width=0.25, uncertainty=_ROTATION,
                when=_quick("pitch_angle", "bank_angle", "heading")),
-    Derivation("yaw_rate", methods.yaw_rate, "attitude differentiated", "AXES", width=0.25,
+    Derivation("yaw_rate", methods.yaw_rate, "attitude differentiated", "AXES", width=0.25, uncertainty=_ROTATION,
                when=_quick("pitch_angle", "bank_angle", "heading")),
-    Derivation("roll_acceleration", methods.roll_acceleration, "roll rate differentiated", "SAVITZKY-GOLAY", width=0.1),
+    Derivation("roll_acceleration", methods.roll_acceleration, "roll rate differentiated", "SAVITZKY-GOLAY",
+               width=0.1, uncertainty=_SPIN),
     Derivation("pitch_acceleration", methods.pitch_acceleration, "pitch rate differentiated", "SAVITZKY-GOLAY",
-               width=0.1),
-    Derivation("yaw_acceleration", methods.yaw_acceleration, "yaw rate differentiated", "SAVITZKY-GOLAY", width=0.1),
+               width=0.1, uncertainty=_SPIN),
+    Derivation("yaw_acceleration", methods.yaw_acceleration, "yaw rate differentiated", "SAVITZKY-GOLAY",
+               width=0.1, uncertainty=_SPIN),
     # load factor
     Derivation("load_factor", methods.load_factor_moved, "accelerometer moved to the centre of gravity", "RIGID-BODY",
                corrects=True, when=_quick("load_factor", *_RATES), main=("recorded_load_factor",)),
@@ -207,7 +218,7 @@ DERIVATIONS: tuple[Derivation, ...] = (
     Derivation("touchdown_load_factor", encounters.touchdown_load_factor, "accelerometer as recorded",
                "COMMON-PRACTICE"),
     Derivation("touchdown_sink_rate", encounters.touchdown_sink_rate_radio, "radio height over the last second",
-               "SAVITZKY-GOLAY", width=1.0, looks=1.6),
+               "SAVITZKY-GOLAY", width=1.0, looks=1.6, uncertainty=0.15),
     Derivation("touchdown_sink_rate", encounters.touchdown_sink_rate, "vertical speed over the last second",
                "COMMON-PRACTICE", width=1.0, looks=1.6, cap=POSSIBLE, uncertainty=0.5,
                assumes="static pressure near the ground is little disturbed"),
