@@ -250,13 +250,17 @@ class JudgedWith:
 
 @dataclass(frozen=True, slots=True)
 class RuleSetRow:
-    """A rule set used. `titles`: rule id -> title. `overrides`: ids that replaced an earlier file's rule."""
+    """A rule set used. `titles`: rule id -> title. `overrides`: ids that replaced an earlier file's rule.
+
+    `quantities`: rule id -> the quantity it judges.
+    """
 
     name: str
     title: str
     rules: int
     titles: tuple[tuple[str, str], ...] = ()
     overrides: tuple[str, ...] = ()
+    quantities: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)

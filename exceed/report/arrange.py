@@ -87,3 +87,13 @@ def share_text(share: float | None) -> str:
 def titles(summary: Dict) -> dict[str, str]:
     """Rule id -> title, of all rule sets."""
     return {rule: title for row in summary["rules"] for rule, title in row["titles"].items()}
+
+
+def ordered(summary: Dict) -> list[Dict]:
+    """Recordings in reading order."""
+    return sorted(summary["recordings"], key=flight_order)
+
+
+def owner(recording: Dict, screen: Screen) -> str:
+    """A recording's registration, or that it has none."""
+    return screen.safe(recording["registration"] or "no registration")

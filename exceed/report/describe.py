@@ -9,6 +9,7 @@ from exceed.report import sections
 from exceed.report.layout import Column, Screen, columns
 from exceed.report.show import count, duration, elapsed, find_zone, local_text, number, words
 from exceed.report.summary import summarise
+from exceed.report.unassessed import problem_lines
 
 Dict = dict[str, Any]
 
@@ -45,7 +46,7 @@ def describe(
 def _head(summary: Dict, recording: Dict, screen: Screen) -> list[str]:
     lines = [screen.heading(line) for line in screen.wrap(screen.safe(recording["path"]))]
     if recording["status"] == "failed":
-        return [*lines, *sections.problem_lines(recording, "not read", screen)]
+        return [*lines, *problem_lines(recording, "not read", screen)]
     text = f"{count(recording['rows'], 'row')}, {duration(recording['recorded_s'])} recorded"
     lines += screen.wrap(text, "  ")
     if recording["content_sha256"]:

@@ -57,6 +57,7 @@ class RuleSet(_Row):
     rules: int
     titles: dict[str, str] = Field(description="rule id -> title")
     overrides: list[str] = Field(description="ids of rules that replaced those of an earlier file")
+    quantities: dict[str, str] = Field(description="rule id -> the quantity it judges")
 
 
 class Problem(_Row):

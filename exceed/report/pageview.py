@@ -6,7 +6,7 @@ from collections import Counter
 from typing import Any
 
 from exceed.core.findings import SEVERITIES
-from exceed.report import sections
+from exceed.report import sections, unassessed
 from exceed.report.arrange import flight_order, flight_times, grouped, limit_source, share_text, titles
 from exceed.report.layout import Screen
 from exceed.report.show import (
@@ -24,6 +24,7 @@ from exceed.report.show import (
 from exceed.report.summary import certainty_rank
 
 Dict = dict[str, Any]
+_SECTIONS = {"not_assessed": unassessed.not_assessed, "quality": sections.quality}
 _CERTAIN = {
     "established": "went beyond it",
     "likely": "more likely than not went beyond it",
@@ -50,7 +51,7 @@ class View:
     def section(self, name: str) -> list[tuple[int, str]]:
         """One of the terminal's sections as a list."""
         screen = Screen(None, units=self.system, zone=self.zone)
-        return self.listing(getattr(sections, name)(self.summary, screen))
+        return self.listing(_SECTIONS[name](self.summary, screen))
 
     def groups(self, key: str) -> list[Dict]:
         """Events (or undecided stretches) by recording and flight, with what stands above each group."""

@@ -2,22 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from typing import Any
 
-from exceed.report.arrange import aeroplane, flight_order, flight_times, share_text, titles
+from exceed.report.arrange import aeroplane, flight_times, ordered, owner, share_text, titles
 from exceed.report.layout import Column, Screen, columns
 from exceed.report.show import count, duration, elapsed, moment, paint, shown, words
 
 Dict = dict[str, Any]
-_MOST_RULES = 8
-# excursions shorter than this are worth a line: it is long for a pull
-_SHORT_SIGHT = 1.0
-
-
-def ordered(summary: Dict) -> list[Dict]:
-    """Recordings in reading order."""
-    return sorted(summary["recordings"], key=flight_order)
+# extremes that are worth a line though no limit is known
+_ALWAYS = ("load_factor", "indicated_airspeed", "pressure_altitude")
 
 
 def extremes(summary: Dict, screen: Screen) -> list[str]:
@@ -25,8 +18,11 @@ def extremes(summary: Dict, screen: Screen) -> list[str]:
     flights = [(recording, flight) for recording in ordered(summary) for flight in recording["flights"]]
     rows: list[list[str]] = []
     plan: list[tuple[Dict, Dict, int]] = []
+    left = 0
     for recording, flight in flights:
-        for row in flight["extremes"]:
+        kept = [row for row in flight["extremes"] if screen.width is None or _telling(row)]
+        left += len(flight["extremes"]) - len(kept)
+        for row in kept:
             form = shown(row["quantity"], row["unit"], screen.units)
             cells = [screen.safe(words(row["quantity"]))]
             for end in ("maximum", "minimum"):
@@ -35,7 +31,7 @@ def extremes(summary: Dict, screen: Screen) -> list[str]:
                 cells.append(instant(recording, found["time_s"]) if found is not None else "")
             cells.append(share_text(row["closest_to_limit"]))
             rows.append(cells)
-        plan.append((recording, flight, len(flight["extremes"])))
+        plan.append((recording, flight, len(kept)))
     if not plan:
         return []
     heads = [
@@ -61,7 +57,14 @@ def extremes(summary: Dict, screen: Screen) -> list[str]:
         place += many
         for note in flight["notes"]:
             lines += screen.wrap(screen.safe(note), "    note: ")
+    if left:
+        text = "quantities without a limit are left out here; the JSON and the page have them all"
+        lines += [screen.paint(line, "faint") for line in screen.wrap(text, "  ")]
     return lines
+
+
+def _telling(row: Dict) -> bool:
+    return row["closest_to_limit"] is not None or row["quantity"] in _ALWAYS
 
 
 def instant(recording: Dict, time: float | None) -> str:
@@ -110,119 +113,6 @@ def mass_text(mass: Dict | None, screen: Screen) -> str:
     return "mass not known" + method
 
 
-def not_assessed(summary: Dict, screen: Screen) -> list[str]:
-    """Logs that failed, rules that could not be judged and why, stretches that were not seen."""
-    names = titles(summary)
-    lines: list[str] = []
-    for recording in ordered(summary):
-        if recording["status"] == "failed":
-            lines += problem_lines(recording, "not read", screen)
-    for row in summary["skipped"]:
-        lines += screen.wrap(f"{screen.safe(row['path'])}: skipped: {screen.safe(row['reason'])}", "  ", "    ")
-    lines += _no_limits(summary, screen)
-    never: dict[tuple[str, str], tuple[dict[str, None], dict[str, None]]] = {}
-    moot: dict[tuple[str, str], tuple[dict[str, None], dict[str, None]]] = {}
-    partly: list[str] = []
-    for recording in ordered(summary):
-        owner = recording["registration"] or ""
-        some: dict[tuple[float, str], dict[str, None]] = {}
-        for row in recording["assessment"]:
-            if row["flight"] is not None:
-                continue
-            title = names.get(row["rule"], row["rule"])
-            if row["assessed_s"] > 0.0:
-                if row["unassessed_s"] > 0.0:
-                    reasons = _reasons(row["reasons"], row["not_applicable_s"] > 0.0)
-                    some.setdefault((row["unassessed_s"], reasons), {})[title] = None
-                continue
-            table = never if row["unassessed_s"] > 0.0 else moot
-            key = owner, ", ".join(reason["reason"] for reason in row["reasons"]) or "no reason given"
-            rules, logs = table.setdefault(key, ({}, {}))
-            rules[title] = None
-            logs[recording["path"]] = None
-        for (missed, reasons), rules in sorted(some.items(), key=lambda item: -item[0][0]):
-            text = (
-                f"{_owner(recording, screen)}, {screen.safe(recording['path'])}: {duration(missed)} of"
-                f" {duration(recording['recorded_s'])} not assessed ({screen.safe(reasons)}): {_rules(rules, screen)}"
-            )
-            partly += screen.wrap(text, "  ", "    ")
-    for table, what in ((never, "not assessed at all"), (moot, "does not apply")):
-        for (owner, reason), (rules, logs) in table.items():
-            where = screen.safe(owner or "no registration") + (f" ({count(len(logs), 'log')})" if len(logs) > 1 else "")
-            text = f"{where}: {what}: {_rules(rules, screen)}: {screen.safe(reason)}"
-            lines += screen.wrap(text, "  ", "    ")
-        if table is never:
-            lines += partly
-    lines += _short_sight(summary, screen)
-    if not any(recording["assessment"] for recording in summary["recordings"]):
-        lines += screen.wrap("no rule was applied to any log", "  ")
-    if not lines:
-        return ["", screen.heading("Not assessed"), "  nothing: every rule saw all of the recorded time"]
-    return ["", screen.heading("Not assessed"), *lines]
-
-
-def _owner(recording: Dict, screen: Screen) -> str:
-    return screen.safe(recording["registration"] or "no registration")
-
-
-def problem_lines(recording: Dict, what: str, screen: Screen) -> list[str]:
-    """Why a log was not read, or not wholly, and what to do."""
-    problem = recording["problem"] or {"place": "", "problem": "no reason given", "expected": "", "do": ""}
-    place = problem["place"] or recording["path"]
-    lines = screen.wrap(f"{screen.safe(place)}: {what}: {screen.safe(problem['problem'])}", "  ", "    ")
-    if place.split(":")[0] != recording["path"]:
-        lines += screen.wrap(f"in {screen.safe(recording['path'])}", "    ")
-    for key in ("expected", "do"):
-        if problem[key]:
-            lines += screen.wrap(f"{key}: {screen.safe(problem[key])}", "    ", "      ")
-    return lines
-
-
-def _no_limits(summary: Dict, screen: Screen) -> list[str]:
-    lines: list[str] = []
-    bare = [recording for recording in ordered(summary) if recording["status"] != "failed"]
-    unnamed = [recording["path"] for recording in bare if recording["registration"] is None]
-    if unnamed:
-        lines += screen.wrap(f"no registration: {screen.listing(unnamed)}", "  ", "    ")
-    owners = {recording["registration"] for recording in bare if recording["limits"] == "none"}
-    named = sorted(owner for owner in owners if owner is not None)
-    if owners:
-        who = screen.listing(named) if named else "the logs without a registration"
-        lines += screen.wrap(f"no limits known for this aeroplane: {who}", "  ", "    ")
-        do = "do: write an aircraft file ('exceed template aircraft' starts one), or name a category with --aircraft"
-        lines += screen.wrap(do, "    ", "      ")
-    return lines
-
-
-def _reasons(reasons: Sequence[Dict], always: bool) -> str:
-    if len(reasons) == 1 and not always:
-        return str(reasons[0]["reason"])
-    return ", ".join(f"{row['reason']} {duration(row['seconds'])}" for row in reasons) or "no reason given"
-
-
-def _rules(rules: dict[str, None], screen: Screen) -> str:
-    found = list(rules)
-    return (f"{len(found)} rules: " if len(found) > 3 else "") + screen.listing(found, _MOST_RULES)
-
-
-def _short_sight(summary: Dict, screen: Screen) -> list[str]:
-    lines: list[str] = []
-    names = titles(summary)
-    for recording in ordered(summary):
-        blind: dict[float, dict[str, None]] = {}
-        for row in recording["assessment"]:
-            least = row["shortest_seen_s"]
-            if row["flight"] is None and row["assessed_s"] > 0.0 and least is not None and least >= _SHORT_SIGHT:
-                blind.setdefault(least, {})[names.get(row["rule"], row["rule"])] = None
-        for least, rules in sorted(blind.items()):
-            text = (
-                f"{_owner(recording, screen)}, {screen.safe(recording['path'])}: peaks of less than {duration(least)}"
-                f" cannot be sized: {_rules(rules, screen)}"
-            )
-            lines += screen.wrap(text, "  ", "    ")
-    return lines
-
-
 def quality(summary: Dict, screen: Screen) -> list[str]:
     """What was rejected, unused or not understood; gaps, resets, notes."""
     lines: list[str] = []
@@ -258,7 +148,7 @@ def quality(summary: Dict, screen: Screen) -> list[str]:
             found.append(f"{count(len(unused), 'column')} not used: " + screen.listing(unused))
         found += recording["notes"]
         if found:
-            lines += screen.wrap(f"{_owner(recording, screen)}, {screen.safe(recording['path'])}", "  ", "    ")
+            lines += screen.wrap(f"{owner(recording, screen)}, {screen.safe(recording['path'])}", "  ", "    ")
             for text in found:
                 lines += screen.wrap(screen.safe(text), "    ", "      ")
     for note in summary["notes"]:
@@ -285,9 +175,9 @@ def inspections(summary: Dict, screen: Screen) -> list[str]:
     lines: list[str] = []
     for row in summary["inspections"]:
         status = "due" if row["status"] == "due" else "to be decided"
-        owner = screen.safe(row["registration"] or "no registration")
+        who = screen.safe(row["registration"] or "no registration")
         serial = f" (serial {screen.safe(row['serial'])})" if row["serial"] else ""
-        parts = [f"{status}: {owner}{serial}", row["certainty"]]
+        parts = [f"{status}: {who}{serial}", row["certainty"]]
         if row["ata"]:
             parts.append(f"ATA {screen.safe(row['ata'])}")
         parts.append(f"{screen.safe(names.get(row['rule'], row['rule']))}, {count(len(row['events']), 'event')}")

@@ -83,6 +83,7 @@ def summarise(day: DayOutcome) -> Dict:
                 "rules": row.rules,
                 "titles": dict(row.titles),
                 "overrides": list(row.overrides),
+                "quantities": dict(row.quantities),
             }
             for row in day.rules
         ],

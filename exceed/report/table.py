@@ -9,7 +9,7 @@ from collections import Counter
 from collections.abc import Callable
 from typing import Any
 
-from exceed.report import sections
+from exceed.report import sections, unassessed
 from exceed.report.arrange import aeroplane, flight_times, grouped, limit_source
 from exceed.report.layout import Column, Screen, columns, on_point
 from exceed.report.show import (
@@ -26,7 +26,7 @@ from exceed.report.summary import certainty_rank, severity_rank
 
 Dict = dict[str, Any]
 Group = tuple[Dict, int | None, list[Dict]]
-Heading = Callable[[Dict, Screen, Dict, int | None, list[Dict]], list[str]]
+Heading = Callable[[Dict, Screen, Dict, int | None, list[Dict], bool], list[str]]
 # narrower terminals than this get no fractions of a second, no local time, no probability
 _ROOMY = 118
 _MOST_NOTES = 6
@@ -60,7 +60,7 @@ def render_table(
         *_events(summary, screen, floor),
         *_undecided(summary, screen),
         *sections.extremes(summary, screen),
-        *sections.not_assessed(summary, screen),
+        *unassessed.not_assessed(summary, screen),
         *sections.quality(summary, screen),
         *sections.inspections(summary, screen),
         *sections.totals(summary, screen),
@@ -190,8 +190,11 @@ def _table(summary: Dict, screen: Screen, groups: list[Group], heading: Heading)
             place += 1
     head, body = columns(screen, heads, rows)
     lines, place = [screen.paint(head, "faint")], 0
+    named: set[str | None] = set()
     for recording, flight, found in groups:
-        lines += heading(summary, screen, recording, flight, found)
+        first = recording["registration"] not in named
+        named.add(recording["registration"])
+        lines += heading(summary, screen, recording, flight, found, first)
         for event in found:
             lines.append(_tinted(body[place], event["severity"], screen))
             place += 1
@@ -215,7 +218,9 @@ def _time(event: Dict, *, roomy: bool, dated: bool) -> str:
     return clock[:-2] if roomy else clock[:8]
 
 
-def _group_heading(summary: Dict, screen: Screen, recording: Dict, flight: int | None, found: list[Dict]) -> list[str]:
+def _group_heading(
+    summary: Dict, screen: Screen, recording: Dict, flight: int | None, found: list[Dict], first: bool
+) -> list[str]:
     parts = [aeroplane(summary, recording, screen)]
     if flight is not None:
         parts.append(f"flight {flight}")
@@ -231,12 +236,14 @@ def _group_heading(summary: Dict, screen: Screen, recording: Dict, flight: int |
         parts.append("limits assumed")
     lines = [screen.heading(line) for line in screen.wrap(", ".join(part for part in parts if part), " ", "   ")]
     source = limit_source(summary, recording)
-    if source:
+    if source and first:
         lines += [screen.paint(line, "faint") for line in screen.wrap(f"limits: {screen.safe(source)}", "   ", "     ")]
     return lines
 
 
-def _short_heading(summary: Dict, screen: Screen, recording: Dict, flight: int | None, found: list[Dict]) -> list[str]:
+def _short_heading(
+    summary: Dict, screen: Screen, recording: Dict, flight: int | None, found: list[Dict], first: bool
+) -> list[str]:
     owner = screen.safe(recording["registration"] or "no registration")
     parts = [owner, "" if flight is None else f"flight {flight}", screen.safe(recording["path"])]
     return [screen.heading(line) for line in screen.wrap(", ".join(part for part in parts if part), " ", "   ")]

@@ -62,6 +62,8 @@ RULES = RuleSetRow(
         ("flaps-extended", "Flaps-extended speed"),
         ("operating-mach", "Maximum operating Mach number"),
     ),
+    (),
+    (("load-factor-high", "load_factor"), ("never-exceed", "airspeed")),
 )
 LARKSPUR = AircraftInfo(
     "ZZ-NMA",

@@ -8,6 +8,7 @@ from typing import Any
 
 import pytest
 
+from exceed.core.findings import Coverage
 from exceed.core.outcome import DayOutcome
 from exceed.report.show import MARKS, breadth
 from exceed.report.summary import summarise
@@ -135,11 +136,11 @@ def test_nothing_is_silent(summary: dict[str, Any], width: int | None) -> None:
     for said in (
         "not read: no column looks like time",
         "do: name it",
-        "notes.txt: skipped: not a log",
+        "1 file skipped (not a log: no table in it): notes.txt",
         "no registration: other/log",
         "no limits known for this aeroplane",
         "Flaps-extended speed: no flap channel",
-        "53.6 s of 1 h 26 min not assessed (gap)",
+        "53.6 s of 1 h 26 min not assessed (gap)" if width is None else "1 h 26 min recorded 53.6 s not assessed (gap)",
         "does not apply: Maximum operating Mach number",
         "1 sample rejected (spike)",
         "1920 samples rejected (stuck)",
@@ -182,3 +183,20 @@ def test_metric_units_change_speeds_and_heights_and_nothing_else(summary: dict[s
     assert " kt" not in text.replace("kt or km/h cannot be told", "")
     assert "1387 m" in text  # 4550 ft of exactly 0.3048 m
     assert "6.24" in text
+
+
+def test_on_a_terminal_what_an_aircraft_file_does_not_have_is_one_row() -> None:
+    log = examples.touring()
+    names = [f"limits.number_{number}" for number in range(20)]
+    coverage = tuple(
+        Coverage(name, None, 0.0, 0.0, 7199.0, None, ((f"the aircraft file has no {name}", 7199.0),)) for name in names
+    )
+    made = summarise(DayOutcome((replace(log, findings=replace(log.findings, coverage=coverage)),), ""))
+    wide = [line for line in render_table(made, width=200).splitlines() if "does not apply" in line]
+    assert len(wide) == 1
+    text = " ".join(render_table(made, width=200).split())
+    assert "20 rules" in text
+    assert "the aircraft file has no limits.number_0, limits.number_1," in text
+    assert "and 12 more" in text
+    piped = [line for line in render_table(made).splitlines() if "does not apply" in line]
+    assert len(piped) == 20
