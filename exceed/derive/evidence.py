@@ -11,6 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from exceed.core.constants import EARTH_RADIUS
 from exceed.core.intervals import normal
 from exceed.core.recording import Array, Recording
 from exceed.derive.coarse import Coarse
@@ -21,6 +22,7 @@ AIRSPEEDS = ("indicated_airspeed", "calibrated_airspeed", "equivalent_airspeed",
 HEIGHTS = ("pressure_altitude", "geometric_altitude")
 # what the evidence may come from, for reading no more columns than needed
 EVIDENCE = (*AIRSPEEDS, "ground_speed", *HEIGHTS, "static_pressure", "impact_pressure", "weight_on_wheels")
+POSITION = ("latitude", "longitude")  # tells speed where nothing else does
 
 # common practice of the trade, no source: the figures of this module, chosen wide
 HOP = 5.0  # s: shorter time in the air is a bounce or a hop
@@ -75,8 +77,9 @@ def signals_of(coarse: Coarse) -> Signals:
     if speed is None and coarse.has("impact_pressure"):
         speed_name = "calibrated_airspeed"
         speed = calibrated_airspeed_from_impact_pressure(np.maximum(coarse.pick("impact_pressure"), 0.0))
-    if speed is None and coarse.has("ground_speed"):
-        speed_name, speed = "ground_speed", coarse.pick("ground_speed")
+    rolling = coarse.pick("ground_speed") if coarse.has("ground_speed") else _speed_of_positions(coarse)
+    if speed is None and rolling is not None:
+        speed_name, speed = "ground_speed", rolling
     height_name = "pressure_altitude" if coarse.has("pressure_altitude") else ""
     height = coarse.pick(height_name) if height_name else None
     if height is None and coarse.has("static_pressure"):
@@ -90,8 +93,21 @@ def signals_of(coarse: Coarse) -> Signals:
         height,
         height_name,
         coarse.slope(height) if height is not None else None,
-        coarse.pick("ground_speed") if coarse.has("ground_speed") else None,
+        rolling,
     )
+
+
+def _speed_of_positions(coarse: Coarse) -> Array | None:
+    """Speed over the ground from latitude and longitude; None where they are not recorded."""
+    if not (coarse.has("latitude") and coarse.has("longitude")):
+        return None
+    latitude, longitude = coarse.pick("latitude"), coarse.pick("longitude")
+    known = np.isfinite(longitude)
+    unwrapped = np.full(len(longitude), np.nan)
+    unwrapped[known] = np.unwrap(longitude[known])
+    north, east = coarse.slope(latitude, 2.0), coarse.slope(unwrapped, 2.0) * np.cos(latitude)
+    speed: Array = EARTH_RADIUS * np.hypot(north, east)
+    return speed
 
 
 def thresholds_of(signals: Signals, stall_speed: float | None) -> Thresholds | None:

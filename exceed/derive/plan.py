@@ -62,6 +62,8 @@ def needed_channels(
         needed |= leaves(resolver.steps, wanted)
         if rests & {"mass", "centre_of_gravity", "zero_fuel_mass", "fuel_mass"}:
             needed |= {name for name in available if base_name(name) in mass.EVIDENCE}
+    if "ground_speed" not in available:
+        needed |= set(evidence.POSITION)
     return (needed | set(evidence.EVIDENCE) | set(phases.EVIDENCE)) & available
 
 

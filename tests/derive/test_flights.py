@@ -12,6 +12,7 @@ from exceed.core.recording import Recording
 from exceed.derive.coarse import coarse_of
 from exceed.derive.evidence import signals_of
 from exceed.derive.flights import Found, flights_of
+from exceed.derive.plan import build_trace
 
 KT = 0.514444
 STALL = 55.0 * KT
@@ -78,6 +79,30 @@ def test_the_accelerometer_finds_the_touchdown_that_speed_and_height_only_bracke
     flown = aerobatics()
     found = flights(without(recording_of(flown, SENSORS), "weight_on_wheels"), STALL)
     assert found.flights[0].end == pytest.approx(flown.marked("touchdown")[0], abs=0.3)
+
+
+def test_a_position_logger_tells_flights_too() -> None:
+    """Latitude, longitude and geometric height once a second, as a handheld receiver writes them."""
+    flown = circuits()
+    rows = np.arange(0, len(flown.time), 100)
+    time = flown.time[rows]
+    radius = 6_371_000.0
+    latitude = 0.9 + np.round(flown["north"][rows] / radius, 7)
+    longitude = np.round(flown["east"][rows] / radius / np.cos(0.9), 7) - 0.05
+    height = flown["height_above_aerodrome"][rows]
+    channels = {"latitude": latitude, "longitude": longitude, "geometric_altitude": height}
+    recording = make(time, {name: channel_of(name, row, None, time) for name, row in channels.items()})
+    (flight,) = flights(recording).flights
+    assert flight.start == pytest.approx(flown.marked("take_off")[0], abs=5.0)
+    assert flight.end == pytest.approx(flown.marked("touchdown")[0], abs=5.0)
+    trace = build_trace(recording)
+    assert trace.steps["load_factor"].method == "vertical acceleration"
+    values = trace.evaluate(["ground_speed", "track_angle"], trace.grid(["ground_speed"]))
+    inside = trace.track.airborne.contains(time)
+    error = (values["ground_speed"] - flown["ground_speed"][rows])[inside]
+    assert np.sqrt(np.mean(error**2)) < 1.0
+    turned = np.mod(values["track_angle"] - flown["track_angle"][rows] + np.pi, 2 * np.pi) - np.pi
+    assert np.percentile(np.abs(turned[inside]), 95) < np.radians(3.0)
 
 
 def test_a_go_around_is_counted_and_is_no_landing() -> None:
