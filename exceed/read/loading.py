@@ -6,15 +6,14 @@ from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Any
 
-import numpy as np
-
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Clock, Recording, Rejected, Unresolved, frozen
-from exceed.read import settle
+from exceed.read import probe, settle
 from exceed.read.container import fail
+from exceed.read.evidence import Settled
 from exceed.read.instants import Instants, instants
 from exceed.read.parse import Parsed, Reader
-from exceed.read.raw import RawChannel, raw_channels
+from exceed.read.raw import raw_channels
 from exceed.read.look import Column, Survey
 
 # quantities that settle what other columns leave open, cheap to read along when something is open
@@ -48,7 +47,12 @@ def load(
             survey.path, survey.clock.problem, expected="a column of time, or a counter and its rate",
             do="name the clock in a channels file: clock: {column: NAME, kind: elapsed, unit: s}",
         )  # fmt: skip
-    chosen = choose(survey, wanted)
+    chosen, witnesses = choose(survey, wanted)
+    known: dict[int, Settled] | None = None
+    if witnesses and probe.worth_it(survey):
+        known = probe.probe(survey, [*chosen, *witnesses])
+    if known is None:
+        chosen = sorted([*chosen, *witnesses], key=lambda column: column.index)
     parsed = _parse(survey, chosen)
     count = parsed.rows
     if count == 0:
@@ -56,19 +60,20 @@ def load(
     raws, notes, rejected_cells = raw_channels(survey, chosen, parsed)
     time = instants(survey, parsed, raws)
     parsed.columns.clear()
-    return _recording(survey, wanted, parsed, raws, time, [*notes], rejected_cells, ranges or {})
+    settled = settle.settle(survey, raws, time, known)
+    return _recording(survey, wanted, parsed, settled, time, [*notes], rejected_cells, ranges or {})
 
 
-def choose(survey: Survey, wanted: set[str] | frozenset[str] | None) -> list[Column]:
-    """Columns to read: those of wanted quantities, and witnesses where something is open."""
+def choose(survey: Survey, wanted: set[str] | frozenset[str] | None) -> tuple[list[Column], list[Column]]:
+    """(columns of the wanted quantities, witnesses to read along where something is open)."""
     usable = [c for c in survey.columns if c.quantity and not c.problem and not c.ignored and c.part < 0]
     usable = [c for c in usable if c.index not in survey.clock.columns]
     if wanted is None:
-        return usable
+        return usable, []
     first = [c for c in usable if c.quantity in wanted or set(c.alternatives) & wanted]
     if any(settle.needs_witness(c) for c in first):
-        return [c for c in usable if c in first or c.quantity in WITNESSES]
-    return first
+        return first, [c for c in usable if c not in first and c.quantity in WITNESSES]
+    return first, []
 
 
 def _parse(survey: Survey, chosen: list[Column]) -> Parsed:
@@ -76,6 +81,11 @@ def _parse(survey: Survey, chosen: list[Column]) -> Parsed:
         from exceed.read.parquet import read_columns
 
         return read_columns(survey, chosen)
+    return parse_text(survey, chosen)
+
+
+def parse_text(survey: Survey, chosen: list[Column], data: bytes | None = None) -> Parsed:
+    """The columns of a text log, or of some lines of it."""
     assert survey.layout is not None
     types: dict[int, str] = {}
     for column in chosen:
@@ -94,7 +104,7 @@ def _parse(survey: Survey, chosen: list[Column]) -> Parsed:
     if not types:
         # only the rows are counted
         types[0] = "text"
-    return Reader(survey.source, survey.layout, tuple(getattr(survey.channels, "missing", None) or ())).read(types)
+    return Reader(survey.source, survey.layout, tuple(getattr(survey.channels, "missing", None) or ()), data).read(types)
 
 
 def _type_of(survey: Survey, column: Column) -> str:
@@ -111,10 +121,9 @@ def _type_of(survey: Survey, column: Column) -> str:
 
 
 def _recording(
-    survey: Survey, wanted: set[str] | frozenset[str] | None, parsed: Parsed, raws: list[RawChannel], time: Instants,
+    survey: Survey, wanted: set[str] | frozenset[str] | None, parsed: Parsed, settled: list[Settled], time: Instants,
     notes: list[str], cells: list[tuple[Column, Any, list[str], str]], ranges: Mapping[str, tuple[float, float]],
 ) -> Recording:  # fmt: skip
-    settled = settle.settle(survey, raws, time)
     result = settle.finish(survey, settled, wanted, time, ranges, cells)
     unresolved = [Unresolved(c.name, c.problem, c.question) for c in survey.columns if c.problem and c.question and not c.ignored]
     unresolved += result.unresolved
@@ -134,6 +143,7 @@ def _recording(
     all_notes = [*survey.notes, *notes, *time.notes, *result.notes, *parsed.cut]
     if survey.layout is not None:
         all_notes += _uneven(parsed)
+    sha256, content_sha256 = parsed.digests()
     rejected: list[Rejected] = [*time.rejected, *result.rejected]
     return Recording(
         path=survey.path,
@@ -141,8 +151,8 @@ def _recording(
         channels=MappingProxyType(result.channels),
         clock=Clock(time.kind, time.start, time.resets, time.zone, tuple(time.clock_notes)),
         rows=parsed.rows,
-        sha256=parsed.sha256,
-        content_sha256=parsed.content_sha256,
+        sha256=sha256,
+        content_sha256=content_sha256,
         facts=MappingProxyType(dict(survey.facts)),
         registration=survey.registration or result.registration,
         recorder_serial=survey.recorder_serial,
@@ -165,8 +175,3 @@ def _uneven(parsed: Parsed) -> list[str]:
         f"{parsed.uneven_count} line{'s' * many} with another number of cells than the headings {'are' if many else 'is'} left out "
         f"(the first: {first!r})"
     ]
-
-
-def usable_rows(values: np.ndarray[Any, Any]) -> np.ndarray[Any, Any]:
-    """Places of finite samples."""
-    return np.flatnonzero(np.isfinite(values))

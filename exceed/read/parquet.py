@@ -175,8 +175,10 @@ def read_columns(survey: Survey, chosen: Sequence[Column]) -> Parsed:
         columns[place] = column
     rows = table.num_rows
     del table
-    digests = digest.result() if digest is not None else _digest(survey.source)
-    return Parsed(columns, rows, digests, digests)
+    if digest is not None:
+        return Parsed(columns, rows, "", "", digest=digest)
+    both = _digest(survey.source)
+    return Parsed(columns, rows, both, both)
 
 
 def _digest(source: Source) -> str:

@@ -28,6 +28,14 @@ class Parsed:
     texts: set[int] = field(default_factory=set)
     tail: bytes | None = None
     repeats: int = 0  # headings among the rows
+    digest: Digest | None = None
+
+    def digests(self) -> tuple[str, str]:
+        """SHA-256 of the file and of its unpacked bytes; waits for the thread that makes them."""
+        if self.digest is not None:
+            self.sha256 = self.content_sha256 = self.digest.result()
+            self.digest = None
+        return self.sha256, self.content_sha256
 
 
 def rewriter(layout: Layout, mend: bool = False) -> Callable[[Iterator[bytes]], Iterator[bytes]] | None:
@@ -93,15 +101,15 @@ def mendable(stray: Sequence[str], layout: Layout) -> bool:
 class Reader:
     """One text log, read as often as needed. Types: column -> number, text, stamp, stamp_zone or time."""
 
-    def __init__(self, source: Source, layout: Layout, missing: Sequence[str] = (), limit: int | None = None) -> None:
-        self.source, self.layout, self.missing = source, layout, missing
-        self.limit = limit
+    def __init__(self, source: Source, layout: Layout, missing: Sequence[str] = (), data: bytes | None = None) -> None:
+        """`data`: lines to read instead of the file's."""
+        self.source, self.layout, self.missing, self.data = source, layout, missing, data
 
     def read(self, types: dict[int, str]) -> Parsed:
         """Read the columns; a column that does not parse as it should is read as text instead."""
         types = dict(types)
         texts: set[int] = {place for place, kind in types.items() if kind == "text"}
-        digest = Digest(self.source.location) if self.source.direct else None
+        digest = Digest(self.source.location) if self.source.direct and self.data is None else None
         mend = False
         for attempt in range(8):
             try:
@@ -117,8 +125,7 @@ class Reader:
                 mend = True
                 continue
             parsed.texts = texts
-            if digest is not None:
-                parsed.sha256 = parsed.content_sha256 = digest.result()
+            parsed.digest = digest
             return parsed
         raise fail(self.source.shown, "its columns cannot be read as numbers or as text", do="export the log as CSV again")
 
@@ -140,7 +147,10 @@ class Reader:
 
         stream: Any = None
         handle: Any
-        if self.source.direct and rewriter(layout, mend) is None:
+        skip = layout.skip
+        if self.data is not None:
+            handle, skip = pa.BufferReader(self.data), 0
+        elif self.source.direct and rewriter(layout, mend) is None:
             handle = pa.memory_map(self.source.location)
         else:
             stream = Utf8Stream(self.source, rewriter(layout, mend))
@@ -148,7 +158,7 @@ class Reader:
         try:
             table = arrow_csv.read_csv(
                 handle,
-                arrow_csv.ReadOptions(column_names=[str(k) for k in range(layout.width)], skip_rows=layout.skip, block_size=BLOCK),
+                arrow_csv.ReadOptions(column_names=[str(k) for k in range(layout.width)], skip_rows=skip, block_size=BLOCK),
                 arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven),
                 arrow_csv.ConvertOptions(
                     column_types={str(k): kinds[kind] for k, kind in types.items()},

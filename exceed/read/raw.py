@@ -43,14 +43,14 @@ def missing_of(survey: Survey) -> frozenset[str]:
 
 
 def raw_channels(
-    survey: Survey, chosen: Sequence[Column], parsed: Parsed
+    survey: Survey, chosen: Sequence[Column], parsed: Parsed, quiet: bool = False
 ) -> tuple[list[RawChannel], list[str], list[OddCells]]:
-    """Convert column by column, letting go of each arrow column once it is converted."""
+    """Convert column by column, letting go of each arrow column once it is converted. `quiet`: look for no places."""
     notes: list[str] = []
     odd: list[OddCells] = []
     repeats = 0
     made: list[RawChannel] = []
-    last = _cut_last_cell(survey, parsed)
+    last = not quiet and _cut_last_cell(survey, parsed)
     if last:
         notes.append("the last line has no end: its last cell may be cut and is not used")
     for column in chosen:
@@ -72,7 +72,7 @@ def raw_channels(
     parsed.repeats = repeats
     if repeats:
         notes.append(f"the headings are repeated {repeats} time{'s' * (repeats != 1)} between the rows: left out")
-    if odd and survey.layout is not None:
+    if odd and survey.layout is not None and not quiet:
         notes += _places(survey, odd)
     return made, notes, odd
 

@@ -11,7 +11,7 @@ import numpy as np
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array, Channel, Index, Rejected, Unresolved, frozen, median_interval
 from exceed.core.units import UNITS
-from exceed.read import evidence, quality, rates
+from exceed.read import evidence, probe, quality, rates
 from exceed.read.instants import Instants
 from exceed.read.raw import OddCells, RawChannel
 from exceed.read.recognise import QUESTIONS, kind_of
@@ -62,10 +62,16 @@ def placed(raw: RawChannel, time: Instants) -> RawChannel:
     return raw
 
 
-def settle(survey: Survey, raws: Sequence[RawChannel], time: Instants) -> list[evidence.Settled]:
-    """Place all, then let the data settle unit, sign and datum."""
+def settle(
+    survey: Survey, raws: Sequence[RawChannel], time: Instants, known: dict[int, evidence.Settled] | None = None
+) -> list[evidence.Settled]:
+    """Place all, then let the data settle unit, sign and datum, unless windows of the log already did."""
     for raw in raws:
         placed(raw, time)
+    if known is not None:
+        found = probe.carried(raws, known)
+        if found is not None:
+            return found
     return evidence.settle(list(raws), time.time, survey.declared)
 
 
