@@ -67,6 +67,20 @@ def calibrated_taken_as_indicated(indicated_airspeed: Array) -> Array:
     return as_it_is(indicated_airspeed)
 
 
+def calibrated_airspeed_of_equivalent(recorded_equivalent_airspeed: Array, pressure_altitude: Array) -> Array:
+    return airspeed.calibrated_airspeed_from_equivalent(recorded_equivalent_airspeed, pressure_altitude)
+
+
+def calibrated_airspeed_of_mach(recorded_mach: Array, pressure_altitude: Array) -> Array:
+    return airspeed.calibrated_airspeed_from_mach(recorded_mach, pressure_altitude)
+
+
+def calibrated_airspeed_of_true(
+    recorded_true_airspeed: Array, pressure_altitude: Array, static_air_temperature: Array
+) -> Array:
+    return airspeed.calibrated_airspeed_from_true(recorded_true_airspeed, pressure_altitude, static_air_temperature)
+
+
 def indicated_taken_as_calibrated(calibrated_airspeed: Array) -> Array:
     return as_it_is(calibrated_airspeed)
 
