@@ -298,4 +298,15 @@ def _one_log(settings: Settings) -> tuple[LogPath, Run]:
     return logs[0], run
 
 
-__all__ = ["QUANTITIES", "assess", "day", "describe", "failed", "scan", "trace_of"]
+def traced(log: LogPath, run: Run, names: Iterable[str]) -> tuple[Assigned, Trace]:
+    """One log's trace of some quantities, and whose it is. Raises ExceedError."""
+    names = list(names)
+    assigned = assign(log, run)
+    recording = read(assigned, names)
+    member = assigned.member
+    return assigned, build_trace(
+        recording, member.aircraft, quantities=names, mass=run.mass, loading=list(member.loading)
+    )
+
+
+__all__ = ["QUANTITIES", "assess", "day", "describe", "failed", "scan", "trace_of", "traced"]

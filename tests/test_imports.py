@@ -29,7 +29,9 @@ MAY = {
     "prepare": {"core", "documents", "errors", "settings"},
     "outcomes": {"core", "documents", "judge", "prepare"},
     "boundary": {"core", "documents", "derive", "physics"},
-    "envelopes": {"boundary", "core", "documents", "derive", "physics"},
+    "envelopes": {"boundary", "core", "documents", "derive", "errors", "physics"},
+    "tallies": {"core", "physics"},
+    "spectra": {"core", "documents", "errors", "pipeline", "prepare", "read", "settings", "tallies"},
     "drawing": {"core", "documents", "derive", "envelopes", "judge", "physics"},
     "tables": {"core", "derive", "errors", "report"},
     "batch": {"core", "errors", "pipeline", "prepare", "read"},
@@ -37,7 +39,10 @@ MAY = {
         "core", "errors", "settings", "documents", "read", "derive", "judge", "prepare", "outcomes", "drawing", "batch",
     },
     "api": {"pipeline", "report", "settings", "tables"},
-    "cli": {"cli", "pipeline", "report", "errors", "core", "documents", "read", "settings", "tables", "reference"},
+    "cli": {
+        "cli", "pipeline", "report", "errors", "core", "documents", "read", "settings", "tables", "reference",
+        "envelopes", "spectra",
+    },
     "__init__": {"api", "errors"},
     "__main__": {"cli"},
 }  # fmt: skip

@@ -163,6 +163,73 @@ def trace(
 
 
 @app.command()
+def envelope(
+    aircraft: Annotated[str, typer.Argument(metavar="AIRCRAFT", help="Aircraft file, or a category.")],
+    mass: Annotated[
+        str | None, typer.Option("--mass", metavar='"905 kg"', help="Mass; of a category the maximum take-off mass.")
+    ] = None,
+    altitude: Annotated[
+        str | None, typer.Option("--altitude", metavar='"5000 ft"', help="Pressure altitude; default: sea level.")
+    ] = None,
+    flaps: Annotated[
+        str | None, typer.Option("--flaps", metavar='"10 deg"', help="Flap setting; default: flaps up.")
+    ] = None,
+    html: Annotated[
+        Path | None, typer.Option("--html", metavar="FILE", help="Write a page with the diagram, one file.")
+    ] = None,
+    json: Annotated[
+        str | None, typer.Option("--json", metavar="FILE|-", help="Write the figures as JSON; - to stdout, no table.")
+    ] = None,
+    units: Annotated[opt.Units, typer.Option("--units", help="Units of table and page.")] = opt.Units.trade,
+    debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
+) -> None:
+    """The V-n diagram of an aeroplane: corners, limits, stall and gust speeds, each with its source.
+
+    \b
+    exceed envelope aircraft.yaml --mass "905 kg" --altitude "5000 ft"
+    exceed envelope normal --mass "1100 kg"
+    """
+    with guarded(debug):
+        from exceed.cli.run import run_envelope
+
+        shown = {"html": html, "json": json, "units": units.value}
+        raise typer.Exit(run_envelope(aircraft, {"mass": mass, "altitude": altitude, "flaps": flaps}, shown))
+
+
+@app.command()
+def spectrum(
+    paths: Annotated[list[str], typer.Argument(metavar="PATH...", help="Logs, folders, globs, object-store URIs.")],
+    fleet: opt.Fleet = None,
+    aircraft: opt.Aircraft = None,
+    channels: opt.Channels = None,
+    loading: opt.Loading = None,
+    registration: opt.Registration = None,
+    mass: opt.Mass = None,
+    json: Annotated[
+        str | None, typer.Option("--json", metavar="FILE|-", help="Write the spectra as JSON; - to stdout, no table.")
+    ] = None,
+    html: Annotated[
+        Path | None, typer.Option("--html", metavar="FILE", help="Write a page with plots, one file.")
+    ] = None,
+    debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
+) -> None:
+    """Level crossings, peaks and rainflow cycles of load factor, per flight hour and per 1,000 h.
+
+    \b
+    exceed spectrum sample_logs
+    exceed spectrum season/ --json season.json --html season.html
+    """
+    settings = opt.settings(
+        paths, fleet=fleet, aircraft=aircraft, channels=channels, loading=loading, registration=registration,
+        mass=mass, debug=debug,
+    )  # fmt: skip
+    with guarded(debug):
+        from exceed.cli.run import run_spectrum
+
+        raise typer.Exit(run_spectrum(settings, {"html": html, "json": json}))
+
+
+@app.command()
 def lint(
     files: Annotated[list[Path], typer.Argument(metavar="FILE...", help="Aircraft, rules, channels, ... files.")],
 ) -> None:

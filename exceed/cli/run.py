@@ -213,9 +213,52 @@ def run_trace(settings: Settings, out: Path) -> int:
     return DONE
 
 
+def run_envelope(aircraft: str, asked: dict[str, str | None], shown: dict[str, Any]) -> int:
+    """The V-n diagram of an aeroplane as table, JSON, page."""
+    from exceed.envelopes import envelope_asked
+    from exceed.report.envelope import envelope_page, envelope_summary, render_envelope
+    from exceed.report.show import wants_unicode
+    from exceed.report.write import to_json, write_whole
+
+    found = envelope_asked(aircraft, **asked)
+    summary = envelope_summary(found)
+    if shown["json"] is not None:
+        write_whole(shown["json"], to_json(summary))
+    if shown["html"] is not None:
+        write_whole(shown["html"], envelope_page(summary, found, units=shown["units"]))
+    if shown["json"] != "-":
+        out = sys.stdout
+        unicode = wants_unicode(out.encoding)
+        _out(render_envelope(summary, width=Terminal.width(out), unicode=unicode, units=shown["units"]))
+    return DONE
+
+
+def run_spectrum(settings: Settings, shown: dict[str, Any]) -> int:
+    """Spectra of load factor as tables, JSON, page; 3 if a log could not be counted."""
+    from exceed import spectra
+    from exceed.report.show import wants_unicode
+    from exceed.report.spectrum import render_spectrum, spectrum_page, spectrum_summary
+    from exceed.report.write import to_json, write_whole
+
+    with _progress(False) as progress:
+        found = spectra.spectrum(settings, progress)
+    summary = spectrum_summary(found)
+    if shown["json"] is not None:
+        write_whole(shown["json"], to_json(summary))
+    if shown["html"] is not None:
+        write_whole(shown["html"], spectrum_page(summary, found))
+    if shown["json"] == "-":
+        _say_failures(summary, {"quiet": True, **shown})
+    else:
+        out = sys.stdout
+        _out(render_spectrum(summary, width=Terminal.width(out), unicode=wants_unicode(out.encoding)))
+    return FAILED if any(log["status"] == "failed" for log in summary["recordings"]) else DONE
+
+
 def run_lint(files: list[Path]) -> int:
-    """Every problem of every file; 2 if there is one."""
-    from exceed.documents.lint import lint
+    """Every problem of every file, and advice; 2 if there is a problem."""
+    from exceed.documents.lint import check
+    from exceed.report.show import visible
 
     bad = False
     for path in files:

@@ -70,8 +70,22 @@ def level_crossings(history: ArrayLike, levels: ArrayLike, reference: float = 1.
     """
     values = _vector(history)
     values = values[np.isfinite(values)]
+    return level_crossings_of_steps(values[:-1], values[1:], levels, reference)
+
+
+@quiet
+def level_crossings_of_steps(
+    before: ArrayLike, after: ArrayLike, levels: ArrayLike, reference: float = 1.0
+) -> NDArray[np.intp]:
+    """Level crossings in some of a history's steps, so that a history can be told apart by what happens in each.
+
+    Parameters: before, after : (m,) arrays, the history's values at either end of each step; levels, reference : as in
+    `level_crossings`, whose counts those of all steps add up to.
+    Returns: (k,) array of counts. A step with a NaN at either end counts nothing.
+    Source: [ASTM-E1049] level-crossing counting.
+    """
+    before, after = floats(before), floats(after)
     wanted = np.atleast_1d(floats(levels))
-    before, after = values[:-1], values[1:]
     up, down = after > before, after < before
     # crossing upwards: before < level <= after, so count the levels at or below each end
     rise = _passed(wanted, before[up], after[up])

@@ -213,6 +213,7 @@ OTHERWISE = {
     "overweight",
     "turning_points",
     "level_crossings",
+    "level_crossings_of_steps",  # the sum of its steps is the whole: tests/test_spectra.py
     "peak_counts",
     "rainflow",
     "rainflow_repeating",
