@@ -113,7 +113,8 @@ def open_source(location: str, shown: str | None = None) -> Source:
     packed = next((name for magic, name in PACKED.items() if first.startswith(magic)), "")
     pieces, length = [], 0
     whole = True
-    for piece in unpacked(location, shown, packed, size):
+    cut: list[str] = []
+    for piece in unpacked(location, shown, packed, size, cut=cut):
         pieces.append(piece)
         length += len(piece)
         if length >= HEAD_BYTES:
@@ -122,6 +123,8 @@ def open_source(location: str, shown: str | None = None) -> Source:
     head = b"".join(pieces)
     if len(head) > HEAD_BYTES:
         head, whole = head[:HEAD_BYTES], False
+    if cut and not head:
+        raise fail(shown, cut[0], expected="a whole file", do="copy the log from the recorder again")
     if not head.strip(b"\x00\r\n\t \xef\xbb\xbf"):
         raise fail(shown, "holds no text", expected="a CSV or Parquet log", do="copy the log from the recorder again")
     if head.startswith(PARQUET_MAGIC):

@@ -59,6 +59,15 @@ def _normal(evidence: Evidence, one: Settled) -> None:
     if not near_zero or column.datum == "total":
         if one.forced:
             return
+        # a log of one long turn has no level reading; the unit may still be plain, and the mean of n is never below 1
+        wide = [unit for unit in _UNITS if 0.5 <= abs(level) * UNITS[unit].factor <= 2.6]
+        if (stated and stated in wide) or (not stated and len(wide) == 1):
+            one.take(stated or wide[0], f"its median of {level:.3g} is that of a total in {stated or wide[0]}, though of no level flight")
+            one.scale = -one.scale if level < 0 and not column.positive else one.scale
+            one.sign = one.sign or ("up" if level > 0 else "down")
+            one.datum = one.datum or "total"
+            one.notes.append("no long level flight in this log: unit, sign and datum rest on its median alone")
+            return
         one.problem = f"its level reading of {level:.3g} is neither that of a total nor of an increment in g, m/s2 or ft/s2"
         one.question = "Which unit and datum has it?"
         return
