@@ -137,12 +137,23 @@ def vn(plot: VnPlot, declared: Mapping[str, str] | None = None, system: str = "t
     layout = {
         "height": 440,
         "margin": {"l": 56, "r": 12, "t": 12, "b": 60},
-        "xaxis": {"title": {"text": f"{words(plot.speed_kind)}, {speed_form.unit}"}, "rangemode": "tozero"},
-        "yaxis": {"title": {"text": "load factor, g"}},
+        "xaxis": {"title": {"text": f"{words(plot.speed_kind)}, {speed_form.unit}"}, **_room(data, "x", 0.0)},
+        "yaxis": {"title": {"text": "load factor, g"}, **_room(data, "y", None)},
         "legend": {"orientation": "h", "y": 1.02, "yanchor": "bottom"},
         "showlegend": True,
     }
     return {"data": data, "layout": layout}
+
+
+def _room(data: list[Dict], axis: str, least: float | None) -> Dict:
+    """A range with air about it, so that a boundary does not lie on the frame; nothing where there is no value."""
+    values = [value for row in data for value in row[axis] if value is not None]
+    if least is not None:
+        values.append(least)
+    if len(values) < 2 or max(values) == min(values):
+        return {}
+    air = 0.05 * (max(values) - min(values))
+    return {"range": [round(min(values) - air, 3), round(max(values) + air, 3)]}
 
 
 def _no_tags(text: str) -> str:

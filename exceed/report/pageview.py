@@ -50,7 +50,9 @@ class View:
 
     def section(self, name: str) -> list[tuple[int, str]]:
         """One of the terminal's sections as a list."""
-        screen = Screen(None, units=self.system, zone=self.zone)
+        # the page has a table of every rule below: what was not assessed is grouped as on a (very wide) terminal
+        width = 100_000 if name == "not_assessed" else None
+        screen = Screen(width, units=self.system, zone=self.zone)
         return self.listing(_SECTIONS[name](self.summary, screen))
 
     def groups(self, key: str) -> list[Dict]:
@@ -171,7 +173,7 @@ class View:
         return text
 
     def values(self, recording: Dict, event: Dict) -> list[tuple[str, str]]:
-        """What held at the peak, as rows of a table."""
+        """The judgement at the peak, as rows of a table."""
         peak = event["peak"]
         form = shown(event["quantity"], peak["unit"], self.system)
         rows = [("instant of the peak", elapsed(peak["time_s"]) + " after the first sample")]
@@ -180,13 +182,13 @@ class View:
         rows.append(("corrected", form.with_unit(peak["value"], form.decimals + 1)))
         rows.append(("estimated true extreme", self.estimate(event)))
         rows.append(("limit in force", self.limit_text(event)))
-        if source := limit_source(self.summary, recording):
+        source = limit_source(self.summary, recording)
+        if source and event["limit"]["source"].startswith("aircraft"):
             rows.append(("source of the limit", source))
         rows += [
             (f"beyond {level['severity']}, {form.with_unit(level['limit'])}", self.beyond(level))
             for level in event["levels"]
         ]
-        rows += self.context(event)
         if event["cut_by"]:
             rows.append(("cut by", words(event["cut_by"])))
         rows.append(("rule", f"{event['rule']} ({event['set']})" if event["set"] else event["rule"]))
@@ -219,6 +221,7 @@ class View:
         return f"{duration(level['beyond_s'])} (probability {probability(level['probability'])})"
 
     def context(self, event: Dict) -> list[tuple[str, str]]:
+        """What else held at the peak, as far as known."""
         return [
             (words(name), shown(name, row["unit"], self.system).with_unit(row["value"]))
             for name, row in event["context"].items()

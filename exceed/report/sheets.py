@@ -75,7 +75,7 @@ def _rows(view: View, recording: Dict, event: Dict) -> list[tuple[str, str]]:
             for level in event["levels"]
         ),
         ("limit", view.limit_text(event)),
-        ("source of the limit", aircraft.get("source") or "not stated"),
+        ("source of the limit", _source(event, aircraft)),
         ("mass", _mass(view, event, mass)),
         ("centre of gravity", view.one(event, "centre_of_gravity")),
         ("fuel", view.one(event, "fuel_mass")),
@@ -88,6 +88,12 @@ def _rows(view: View, recording: Dict, event: Dict) -> list[tuple[str, str]]:
         ("log", f"{recording['path']}, content sha256 {recording['content_sha256'] or 'not known'}"),
     ]
     return [*rows, *(("note", note) for note in event["notes"])]
+
+
+def _source(event: Dict, aircraft: Dict) -> str:
+    if not event["limit"]["source"].startswith("aircraft"):
+        return f"the rule {event['rule']}" + (f" of {event['set']}" if event["set"] else "")
+    return str(aircraft.get("source") or "not stated")
 
 
 def _mass(view: View, event: Dict, mass: Dict | None) -> str:
