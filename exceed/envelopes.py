@@ -121,7 +121,7 @@ def envelope_of(
     found = boundary(facts, air, weight, stalls, end.equivalent) if end is not None else None
     limits = _limit_rows(aircraft, facts, air, weight)
     corners = _corner_rows(found, air, end)
-    gusts, no_gusts = _gusts(aircraft, air, weight, speeds)
+    gusts, no_gusts = _gusts(aircraft, air, weight, speeds, end)
     rows = [*speeds.values(), *machs]
     meeting = next((row for row in corners if row.name == MEETS), None)
     if meeting is not None:
@@ -140,7 +140,7 @@ def envelope_of(
         gusts=gusts,
         missing=tuple(dict.fromkeys(missing)),
         notes=tuple(dict.fromkeys(_notes(aircraft, facts, air, weight, speeds, stalls, limits, gusts))),
-        lines=_lines(found, end, stalls, limits, gusts),
+        lines=_lines(found, end, stalls, limits, gusts, speeds.get("manoeuvring")),
     )
 
 
@@ -214,7 +214,7 @@ def _limit_rows(aircraft: Aircraft, facts: Facts, air: Air, mass: float | None) 
 
 
 def _gusts(
-    aircraft: Aircraft, air: Air, mass: float | None, speeds: dict[str, SpeedRow]
+    aircraft: Aircraft, air: Air, mass: float | None, speeds: dict[str, SpeedRow], end: SpeedEnd | None
 ) -> tuple[tuple[GustRow, ...], Missing]:
     """Load factors of the design gusts of 14 CFR 23.333(c) by the formula of 23.341(c), and why some are missing."""
     wing = aircraft.wing
@@ -253,6 +253,8 @@ def _gusts(
             missing.append((f"gust line of {velocity / FOOT:.0f} ft/s", f"no {symbol} known"))
             continue
         speed = speeds[name].speed
+        if end is not None and end.equivalent < equivalent:  # high up a Mach number ends the diagram before
+            equivalent, symbol, speed = end.equivalent, end.symbol, air.kinds(end.equivalent)
         change = float(
             gust.gust_load_factor_increment(velocity, equivalent, float(mass or 0.0), area, chord, slope, density)
         )
@@ -380,6 +382,7 @@ def _lines(
     stalls: tuple[float, float],
     limits: tuple[LimitRow, ...],
     gusts: tuple[GustRow, ...],
+    manoeuvring: SpeedRow | None,
 ) -> tuple[EnvelopeLine, ...]:
     if found is None or end is None:
         return ()
@@ -401,6 +404,15 @@ def _lines(
     low, high = min([0.0, *ends]), max([0.0, *ends])
     edge = np.array([end.equivalent, end.equivalent])
     rows.append(EnvelopeLine(f"{end.symbol} speed limit", "speed", edge, np.array([low, high])))
+    rolling = next((row.maximum for row in limits if row.condition.startswith("rolling")), None)
+    if rolling is not None and stalls[0] * np.sqrt(rolling) < end.equivalent:
+        # without a stall line the limit alone, from standstill
+        start = stalls[0] * np.sqrt(rolling) if np.isfinite(stalls[0]) else 0.0
+        at = np.array([start, end.equivalent])
+        rows.append(EnvelopeLine("limit while rolling", "rolling", at, np.array([rolling, rolling])))
+    if manoeuvring is not None and manoeuvring.speed.equivalent is not None:
+        at = np.array([manoeuvring.speed.equivalent, manoeuvring.speed.equivalent])
+        rows.append(EnvelopeLine("V_A of the manual", "V_A", at, np.array([0.0, high])))
     for row in gusts:
         if row.speed.equivalent is None:
             continue

@@ -227,7 +227,7 @@ def _count(
         not_counted=_not_counted(trace, grid, airborne, again, gaps, mine),
         at_end=_at_sensor_end(trace, airborne),
         status=about.status if mine.samples or again <= 0.0 else "not counted",
-        notes=(*about.notes, *trace.track.notes, *trace.notes),
+        notes=tuple(dict.fromkeys((*about.notes, *trace.track.notes, *trace.notes))),
     )
 
 

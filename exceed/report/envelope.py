@@ -118,8 +118,34 @@ def envelope_page(summary: Dict, found: EnvelopeOutcome, *, units: str = "trade"
     drawn: dict[str, Dict] = {}
     if found.lines:
         plot = VnPlot("equivalent_airspeed", np.empty(0), np.empty(0), found.lines)
-        drawn["envelope"] = figures.vn(plot, None, units)
+        drawn["envelope"] = _figure(figures.vn(plot, None, units), summary, units)
     return render_paper(_paper(summary, units, figure=bool(found.lines)), drawn)
+
+
+def _figure(figure: Dict, summary: Dict, units: str) -> Dict:
+    """The diagram with its corners marked, and room beyond the speed limit."""
+    form = shown("equivalent_airspeed", "kt", units)
+    rows = [row for row in summary["corners"] if row["equivalent_airspeed_kt"] is not None]
+    speeds = [form.convert(row["equivalent_airspeed_kt"]) for row in rows]
+    figure["data"].append(
+        {
+            "type": "scatter",
+            "mode": "markers",
+            "name": "corners",
+            "x": speeds,
+            "y": [row["load_factor_g"] for row in rows],
+            "text": [row["name"] for row in rows],
+            "marker": {"size": 7, "color": "$line"},
+            "hovertemplate": f"%{{text}}: %{{x:.1f}} {form.unit}, %{{y}} g<extra></extra>",
+        }
+    )
+    for line in figure["data"]:
+        # one line among many in one colour: what is no boundary is thinner
+        if line["mode"] == "lines" and "boundary" not in line["name"]:
+            line["line"]["width"] = 1.2
+    ends = [value for line in figure["data"] for value in line["x"] if value is not None]
+    figure["layout"]["xaxis"]["range"] = [0.0, round(1.04 * max(ends), 1)]
+    return figure
 
 
 def _paper(summary: Dict, units: str, *, figure: bool = False) -> Paper:
@@ -175,8 +201,9 @@ def _load(value: float | None) -> str:
 
 
 def _key(source: str) -> str:
-    """The last part of a fact's name: what it is called in the aircraft file."""
-    return source.rpartition(".")[2]
+    """The last part of a fact's name, as the aircraft file has it; of Mach numbers the first."""
+    group, _, name = source.rpartition(".")
+    return group if group == "mach" else name
 
 
 def _points(title: str, rows: list[Dict], units: str) -> Sheet:

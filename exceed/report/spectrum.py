@@ -306,8 +306,6 @@ def _log_line(log: Dict) -> str:
     if log["samples_at_sensor_end"]:
         many = count(log["samples_at_sensor_end"], "sample")
         parts.append(f"{many} at the sensor's end: the true load lies beyond")
-    if log["flights"] is None:
-        parts.append("flights not known: all recorded time counts as airborne")
     if log["status"] == "partial":
         parts.append("read in part")
     return f"{log['path']}: " + "; ".join([*parts, *log["notes"]])
@@ -315,10 +313,13 @@ def _log_line(log: Dict) -> str:
 
 def _part(row: Dict) -> Part:
     rates = ", ".join(f"{rate:g}" for rate in row["rates_hz"])
-    flights = count(row["flights"], "flight") if row["flights"] is not None else "flights not known"
+    flights = "flights not known, all recorded time counts as airborne"
+    if row["flights"] is not None:
+        flights = count(row["flights"], "flight")
+    stretches = count(row["stretches"], "stretch", "stretches")
     said = [
-        f"{count(row['recordings'], 'log')}, {flights}, {row['airborne_s'] / 3600.0:.2f} h airborne,"
-        f" {row['counted_h']:.2f} h counted in {count(row['stretches'], 'stretch', 'stretches')} at {rates} Hz",
+        f"{count(row['recordings'], 'log')}, {flights}: {_hours(row['airborne_s'])} airborne,"
+        f" {_hours(row['counted_s'])} counted in {stretches} at {rates} Hz",
     ]
     if row["lowest_g"] is not None:
         said.append(f"from {number(row['lowest_g'], 2)} to {number(row['highest_g'], 2)} g")
@@ -335,6 +336,10 @@ def _part(row: Dict) -> Part:
     elif row["mass_weighted_note"]:
         sheets.append(Sheet("Load factor x mass", said=(f"not counted: {row['mass_weighted_note']}",)))
     return Part(_name(row), tuple(said), (), tuple(sheets))
+
+
+def _hours(seconds: float) -> str:
+    return f"{seconds / 3600.0:.2f} h" if seconds >= 360.0 else duration(seconds)
 
 
 def _levels(row: Dict, title: str = "Level crossings and peaks", said: tuple[str, ...] = ()) -> Sheet:
@@ -414,6 +419,6 @@ def _parts(title: str, parts: list[Dict], key: str, levels: list[Dict], said: tu
     for part in parts:
         counts = {one["level_g"]: one["peaks"] for one in part["levels"]}
         low, high = ("-" if part[name] is None else number(part[name], 2) for name in ("lowest_g", "highest_g"))
-        cell = [part[key], f"{part['counted_h']:.2f}", low, high]
+        cell = [part[key], number(part["counted_h"], 2), low, high]
         cells.append(tuple(cell + [str(counts.get(level, 0)) for level in chosen]))
     return Sheet(title, tuple(heads), tuple(cells), said)
