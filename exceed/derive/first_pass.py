@@ -11,6 +11,7 @@ from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from exceed.core.intervals import Intervals, lasting, normal
 from exceed.core.phases import FlightTrack
@@ -177,17 +178,23 @@ def _at_standstill(coarse: Coarse, standing: Intervals) -> tuple[float, float, s
     return float(np.median(error)), float(np.hypot(scatter / np.sqrt(good.sum()), allowed)), "standstill on the ground"
 
 
-def _in_level_flight(coarse: Coarse, signals: Signals, found: Found) -> tuple[float, float, str] | None:
-    """Mean over long stretches of level flight: their vertical speed does not change, so the mean is 1 g."""
-    if not found.known or signals.climb is None:
-        return None
+def _straight(coarse: Coarse) -> NDArray[np.bool_] | None:
+    """(m,) bool: cells of wings level or, where bank is not recorded, of a steady heading; None if neither tells."""
     if coarse.has("bank_angle"):
-        straight = np.abs((coarse.pick("bank_angle") + np.pi) % (2.0 * np.pi) - np.pi) < QUIET_BANK
-    elif coarse.has("heading"):
+        level: NDArray[np.bool_] = np.abs((coarse.pick("bank_angle") + np.pi) % (2.0 * np.pi) - np.pi) < QUIET_BANK
+        return level
+    if coarse.has("heading"):
         heading = coarse.pick("heading")
         known = np.isfinite(heading)
-        straight = known & (coarse.spread(np.unwrap(np.where(known, heading, 0.0)), 5.0) < QUIET_TURN)
-    else:
+        steady: NDArray[np.bool_] = coarse.spread(np.unwrap(np.where(known, heading, 0.0)), 5.0) < QUIET_TURN
+        return known & steady
+    return None
+
+
+def _in_level_flight(coarse: Coarse, signals: Signals, found: Found) -> tuple[float, float, str] | None:
+    """Mean over long stretches of level flight: their vertical speed does not change, so the mean is 1 g."""
+    straight = _straight(coarse)
+    if not found.known or signals.climb is None or straight is None:
         return None
     mean = coarse.statistics("load_factor").mean
     with np.errstate(invalid="ignore"):
@@ -205,17 +212,21 @@ def _in_level_flight(coarse: Coarse, signals: Signals, found: Found) -> tuple[fl
 
 
 def _in_quiet_air(coarse: Coarse) -> tuple[float, float, str] | None:
-    """Where nothing but the accelerometer is there: what is quiet for long is 1 g, or a shallow turn."""
+    """Where no long level flight is to be had: what is quiet for long is 1 g or a steady turn, which only adds."""
     mean = coarse.statistics("load_factor").mean
     if len(mean) < 30:
         return None
     scatter = coarse.spread(mean, 5.0)
     quiet = np.isfinite(mean) & (scatter < 2.0 * QUIET_SCATTER)
+    straight = _straight(coarse)
+    if straight is not None:
+        quiet &= straight
     runs = lasting(normal(coarse.time[quiet], (coarse.time + coarse.step)[quiet]), 20.0)
-    inside = runs.contains(coarse.time) & quiet
-    if inside.sum() < 20:
+    if len(runs) == 0:
         return None
-    error = float(np.median(mean[inside])) - 1.0
+    # a steep turn held for long is as quiet as level flight: the lowest stretch is the one that turns least
+    parts = (coarse.part(start, end) for start, end in runs)
+    error = min(float(np.median(mean[part][quiet[part]])) for part in parts) - 1.0
     if abs(error) > 0.3:
         return None  # no datum error of a sound accelerometer: it is something else, and must be seen
     return error, QUIET_UNKNOWN, "quiet stretches"

@@ -77,6 +77,19 @@ def test_a_bare_accelerometer_is_corrected_only_for_a_large_datum_error() -> Non
     assert large.bias.value == pytest.approx(0.15, abs=0.03)
 
 
+@pytest.mark.parametrize("with_bank", [True, False])
+def test_a_steep_turn_held_for_long_is_no_datum_error(with_bank: bool) -> None:
+    """Two short level stretches about a turn of 45 degrees (eased to 1.21 g), as quiet as they are and four times as long."""
+    time = np.arange(0.0, 200.0, 0.125)
+    turning = (time > 25.0) & (time < 170.0)
+    noise = 0.01 * np.random.default_rng(1).standard_normal(len(time))
+    channels = {"load_factor": channel_of("load_factor", np.where(turning, 2**0.5 - 0.2, 1.0) + noise, None, time)}
+    if with_bank:
+        bank = np.where(turning, np.radians(45.0), 0.0)
+        channels["bank_angle"] = channel_of("bank_angle", bank, None, time)
+    assert first_pass(make(time, channels)).channels["load_factor"].bias is None
+
+
 def test_nothing_quiet_leaves_the_datum_alone_and_says_so() -> None:
     time = np.arange(0.0, 100.0, 0.125)
     shaken = 1.3 + 0.5 * np.sin(time)
