@@ -256,7 +256,8 @@ def boundary(
         top.append(envelope.Corner("stall at 1 g", upright, 1.0))
     if inverted <= end and limits[0][1] <= -1.0:
         bottom.append(envelope.Corner("inverted stall at -1 g", inverted, -1.0))
-    speed = np.unique(np.concatenate([np.linspace(0.0, end, points), [step[1] for step in steps]]))
+    marked = [*(step[1] for step in steps), *(speed for speed in stalls if speed <= end)]
+    speed = np.unique(np.concatenate([np.linspace(0.0, end, points), marked]))
     pieces: list[tuple[Any, Any, Any]] = []
     for turn, ((low, high, *_), (most, least)) in enumerate(zip(steps, limits, strict=True)):
         last = turn == len(steps) - 1
