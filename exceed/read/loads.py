@@ -35,6 +35,10 @@ def _normal(evidence: Evidence, one: Settled) -> None:
         fits = [(unit, sign) for unit, sign in fits if unit == stated]
     total_possible = bool(fits) and column.datum != "increment"
     near_zero = abs(level) * (UNITS[stated].factor if stated else 1.0) <= 0.25 and (bool(stated) or abs(level) <= 0.25 * _spread_g(figures))
+    if stated and near_zero and fits and not (one.forced and column.datum):
+        # an increment with a bias, or a total under a wrong unit? turns tell; else a level reading of 1.00 is no bias
+        shown = _increment_unit(evidence, figures - level)
+        near_zero = not (shown == fits[0][0] or (shown is None and abs(abs(level) * UNITS[fits[0][0]].factor - 1.0) < 0.06))
     if total_possible and (not stated or fits[0][0] == stated or not near_zero):
         unit, sign = fits[0]
         if stated and unit != stated:

@@ -146,16 +146,13 @@ def _redundant(pieces: list[Array]) -> bool:
     step = max(1, (len(first) - 1) // 20_000)
     rows = np.arange(0, len(first) - 1, step)
     own, following = np.abs(last[rows] - first[rows]), np.abs(last[rows] - first[rows + 1])
-    good = np.isfinite(own) & np.isfinite(following)
-    if np.count_nonzero(good) < 8:
+    own, following = own[np.isfinite(own)], following[np.isfinite(following)]
+    if min(len(own), len(following)) < 8:
         return False
-    # where something moves, and without the jumps of an angle that wraps
-    moving = good & ((own > 0) | (following > 0))
-    if np.count_nonzero(moving) < 8:
-        return False
-    own, following = own[moving], following[moving]
-    here = float(np.mean(np.minimum(own, np.percentile(own, 95))))
-    there = float(np.mean(np.minimum(following, np.percentile(following, 95))))
+    # without the jumps of an angle that wraps
+    limit = float(np.percentile(np.concatenate([own, following]), 97))
+    here = float(np.mean(np.minimum(own, limit)))
+    there = float(np.mean(np.minimum(following, limit)))
     if here == 0.0 and there == 0.0:
         return False
     return here < 0.6 * there

@@ -78,3 +78,15 @@ def simple(count: int = 200, heading: str = "time [s],NZ [g],IAS [kt],PALT [ft]"
     for k, (when, load, speed, height) in enumerate(rows(count)):
         lines.append(f"{stamps[k] if stamps else f'{when:.3f}'},{load:.3f},{speed:.1f},{height:.0f}")
     return "\n".join(lines) + "\n"
+
+
+FT, KT, DEG, G0 = 0.3048, 1852.0 / 3600.0, np.pi / 180.0, 9.80665
+
+
+def of_flight(columns: dict[str, np.ndarray], time: np.ndarray | None = None, clock: str = "time [s]") -> str:
+    """A log of the flight: heading -> figures as written, at 8 Hz."""
+    when = np.arange(truth().count) / 8.0 if time is None else time
+    table = np.column_stack([when, *columns.values()])
+    lines = [",".join([clock, *columns])]
+    lines += [",".join("" if cell != cell else f"{cell:.6g}" for cell in row) for row in table.tolist()]
+    return "\n".join(lines) + "\n"
