@@ -7,7 +7,7 @@ from typing import Any
 from exceed.core.outcome import DayOutcome, FeedRow, LogOutcome
 from exceed.report import sections
 from exceed.report.layout import Column, Screen, columns
-from exceed.report.show import count, duration, elapsed, find_zone, local_text, number, words
+from exceed.report.show import count, duration, elapsed, find_zone, local_text, number, shown, words
 from exceed.report.summary import summarise
 from exceed.report.unassessed import problem_lines
 
@@ -84,12 +84,12 @@ def _clock(recording: Dict, screen: Screen) -> list[str]:
         text += f"; zone {clock['zone']}" if clock["zone"] else ""
     text += f"; {count(clock['resets'], 'reset')}; {count(len(clock['gaps']), 'gap')}"
     lines = ["", screen.heading("Clock"), *screen.wrap(screen.safe(text), "  ", "    ")]
-    shown = clock["gaps"] if screen.width is None else clock["gaps"][:8]
-    for gap in shown:
+    listed = clock["gaps"] if screen.width is None else clock["gaps"][:8]
+    for gap in listed:
         length = duration(gap["end_s"] - gap["start_s"])
         lines.append(f"    gap {elapsed(gap['start_s'])} to {elapsed(gap['end_s'])}, {length}")
-    if len(shown) < len(clock["gaps"]):
-        lines.append(f"    and {len(clock['gaps']) - len(shown)} more")
+    if len(listed) < len(clock["gaps"]):
+        lines.append(f"    and {len(clock['gaps']) - len(listed)} more")
     return lines
 
 
@@ -146,7 +146,11 @@ def _per_cent(share: float | None) -> str:
 
 
 def _measured(row: Dict | None) -> str:
-    return "" if row is None else f"{row['value']:g} {row['unit']}"
+    if row is None:
+        return ""
+    unit = shown("", row["unit"]).unit
+    # an uncertainty says nothing with more than two digits
+    return f"{row['value']:.2g} {unit}".strip()
 
 
 def _columns_left(recording: Dict, screen: Screen) -> list[str]:
@@ -167,7 +171,7 @@ def _methods(recording: Dict, screen: Screen) -> list[str]:
     lines: list[str] = []
     for row in recording["methods"]:
         text = f"{words(row['quantity'])}: {row['method']}"
-        text += f" from {', '.join(row['inputs'])}" if row["inputs"] else ""
+        text += f" from {', '.join(map(words, row['inputs']))}" if row["inputs"] else ""
         text += f"; assumes: {row['assumes']}" if row["assumes"] else ""
         text += (
             f"; standard uncertainty {_measured(row['standard_uncertainty'])}" if row["standard_uncertainty"] else ""

@@ -117,9 +117,11 @@ def _judged_with(view: View) -> str:
 def _sensor(method: Dict | None, aircraft: Dict) -> str:
     parts = []
     if method is not None:
-        parts.append(method["method"] + (f" from {', '.join(method['inputs'])}" if method["inputs"] else ""))
+        parts.append(
+            method["method"] + (f" from {', '.join(map(words, method['inputs']))}" if method["inputs"] else "")
+        )
         if method["standard_uncertainty"] is not None:
             spread = method["standard_uncertainty"]
-            parts.append(f"standard uncertainty {spread['value']:g} {spread['unit']}")
+            parts.append(f"standard uncertainty {spread['value']:.2g} {spread['unit']}")
     parts += [f"{name} {text}" for name, text in aircraft.get("recorder", {}).items()]
     return "; ".join(parts) or "not known"
