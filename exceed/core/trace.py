@@ -22,6 +22,8 @@ from exceed.core.recording import Array, Channel, Index, Recording
 TIME = "time"
 # a slower continuous input is interpolated over at most two of its own intervals (and a tenth, for jitter)
 BRIDGE = 2.1
+# neighbourhoods are worked out together only if so many seconds lie between them: longer than any gap a step bridges
+APART = 120.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -195,16 +197,25 @@ class Trace:
         fixed: Mapping[str, float] | None = None,
         shifted: Mapping[str, float] | None = None,
     ) -> dict[str, Array]:
-        """Values at scattered grid places; each sees its own neighbourhood where a step reaches beyond the sample."""
+        """Values at scattered grid places (k,), ascending or not.
+
+        Where a step reaches beyond the sample, each place is worked out with its own neighbourhood; all neighbourhoods
+        go through together, parted by more time than any step bridges.
+        """
         names = list(names)
         near = [name for name in names if self.reach(name) == 0.0]
         far = [name for name in names if self.reach(name) > 0.0]
-        found = self._work_out(near, grid, places, fixed or {}, shifted or {}) if near else {}
-        found = {name: found[name] for name in near}
-        if far:
-            rows = [self.evaluate(far, grid, int(place), int(place) + 1, fixed, shifted) for place in places]
-            for name in far:
-                found[name] = np.array([row[name][0] for row in rows], dtype=np.float64)
+        found: dict[str, Array] = {}
+        if near:
+            values = self._work_out(near, grid, places, fixed or {}, shifted or {})
+            found = {name: values[name] for name in near}
+        if far and len(places):
+            around = neighbourhoods(grid.time, places, max(self.reach(name) for name in far))
+            values = self._work_out(far, grid, around, fixed or {}, shifted or {})
+            at = np.searchsorted(around, places)
+            found.update({name: values[name][at] for name in far})
+        else:
+            found.update({name: np.empty(0) for name in far})
         return found
 
     def uncertainty_at(self, name: str, grid: Grid, places: NDArray[np.int64]) -> Array:
@@ -298,6 +309,21 @@ class Trace:
         else:
             values = between_samples(self.recording.time, channel, time)
         return values + shifted[name] if name in shifted else values
+
+
+def neighbourhoods(time: Array, places: NDArray[np.int64], reach: float) -> NDArray[np.int64]:
+    """Ascending places of all samples within `reach` s of any of the given ones.
+
+    Two neighbourhoods with less than APART s between them become one: so where samples are left out, the step in time
+    is longer than any gap, and no function joins what is not joined.
+    """
+    centres = np.unique(places)
+    low = np.searchsorted(time, time[centres] - reach, side="left")
+    high = np.searchsorted(time, time[centres] + reach, side="right")
+    apart = time[low[1:]] - time[high[:-1] - 1] > APART
+    starts = low[np.concatenate([[True], apart])]
+    stops = high[np.concatenate([apart, [True]])]
+    return np.concatenate([np.arange(start, stop) for start, stop in zip(starts, stops, strict=True)])
 
 
 def between_samples(axis: Array, channel: Channel, at: Array) -> Array:

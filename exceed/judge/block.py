@@ -76,13 +76,7 @@ class Block:
         block.trace, block.grid, block.offset, block.whole = trace, grid, 0, len(grid.time)
         block.core = slice(0, len(places))
         block.time = grid.time[places]
-        near = [name for name in names if trace.reach(name) == 0.0]
-        block.values = trace.evaluate_at(near, grid, places, fixed)
-        far = [name for name in names if trace.reach(name) > 0.0]
-        if far:
-            pieces = [trace.evaluate(far, grid, start, stop, fixed) for start, stop in patches]
-            for name in far:
-                block.values[name] = np.concatenate([piece[name] for piece in pieces])
+        block.values = trace.evaluate_at(names, grid, places, fixed)
         block.seams = np.cumsum([stop - start for start, stop in patches])[:-1] - 1
         block._kept = {}
         return block
