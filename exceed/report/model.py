@@ -49,6 +49,7 @@ class Aircraft(_Row):
     limits: Literal["own", "assumed", "none"]
     source: str | None
     recorder: dict[str, str] = Field(description="what its file says of the sensors, as plain text")
+    path: str | None = Field(description="its file, as in judged_with")
 
 
 class RuleSet(_Row):

@@ -84,7 +84,7 @@ def _rows(view: View, recording: Dict, event: Dict) -> list[tuple[str, str]]:
         ("configuration", ", ".join(f"{word} {view.one(event, name)}" for word, name in _CONFIGURATION)),
         ("sensor", _sensor(method, aircraft)),
         ("repeats in this flight", f"{count(same, 'event')} of this rule, this one among them"),
-        ("judged with", _judged_with(view)),
+        ("judged with", _judged_with(view, recording, aircraft)),
         ("log", f"{recording['path']}, content sha256 {recording['content_sha256'] or 'not known'}"),
     ]
     return [*rows, *(("note", note) for note in event["notes"])]
@@ -104,14 +104,21 @@ def _mass(view: View, event: Dict, mass: Dict | None) -> str:
     return mass_text(mass, Screen(None, units=view.system)) or "not known"
 
 
-def _judged_with(view: View) -> str:
-    parts = [
-        f"{row['kind']} {row['path']} {(row['sha256'] or '')[:16]}".strip()
-        if "path" in row
-        else f"{row['name']} {row['value']}"
-        for row in view.summary["judged_with"]
-    ]
-    return "; ".join(parts) or "not stated"
+def _judged_with(view: View, recording: Dict, aircraft: Dict) -> str:
+    """The aeroplane's file, the rule sets and the options; every file stands under Evidence."""
+    parts = []
+    for row in view.summary["judged_with"]:
+        if "path" not in row:
+            parts.append(f"{row['name']} {row['value']}")
+        elif row["path"] == aircraft.get("path") or (row["kind"] == "rules" and _used(row, view, recording)):
+            parts.append(f"{row['kind']} {row['path']} {(row['sha256'] or '')[:16]}".strip())
+    return "; ".join(parts) or "see the evidence"
+
+
+def _used(row: Dict, view: View, recording: Dict) -> bool:
+    """Whether a rules file was used on a log; where its names do not tell, it is listed."""
+    known = {one["set"] for one in view.summary["rules"]}
+    return row["path"] not in known or row["path"] in recording["rule_sets"]
 
 
 def _sensor(method: Dict | None, aircraft: Dict) -> str:

@@ -404,9 +404,24 @@ def _aircraft(day: DayOutcome, logs: Iterable[LogOutcome]) -> list[Dict]:
             "limits": info.limits,
             "source": info.source,
             "recorder": dict(info.recorder),
+            "path": _file_of(info, day),
         }
         for _, info in sorted(found.items())
     ]
+
+
+def _file_of(info: AircraftInfo, day: DayOutcome) -> str | None:
+    """An aeroplane's file as it stands in `judged_with`, however much of the way to it either of them gives."""
+    if info.path is None:
+        return None
+    wanted = info.path.replace("\\", "/").split("/")
+    for row in day.judged_with:
+        if row.kind == "aircraft" and row.path is not None:
+            there = row.path.split("/")
+            short = min(len(wanted), len(there))
+            if wanted[-short:] == there[-short:]:
+                return row.path
+    return None
 
 
 def _totals(recordings: list[Dict]) -> Dict:

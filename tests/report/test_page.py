@@ -133,6 +133,7 @@ def test_the_page_says_what_the_table_says(read: Reader) -> None:
         "mass between 640 and 960 kg (unknown)",
         "no limit",
         "Release reference",
+        "rules airframe e1e1e1e1e1e1e1e1; aircraft aircraft/larkspur.yaml e2e2e2e2e2e2e2e2; --mass 900 kg",
     ):
         assert said in text, said
     for caution in summarise(examples.empty_day())["cautions"]:

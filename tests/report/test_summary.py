@@ -209,3 +209,12 @@ def test_a_temperature_is_shown_from_its_own_zero() -> None:
     log = replace(log, findings=replace(log.findings, extremes=(found,)))
     row = summarise(DayOutcome((log,), ""))["recordings"][0]["flights"][0]["extremes"][0]
     assert (row["maximum"]["value"], row["minimum"]["value"], row["unit"]) == (15.0, -40.0, "degC")
+
+
+def test_an_aeroplanes_file_is_named_as_in_the_list_of_what_it_was_judged_with(summary: dict[str, Any]) -> None:
+    assert [row["path"] for row in summary["aircraft"]] == ["aircraft/larkspur.yaml", None]
+    log = examples.aerobatic()
+    assert log.aircraft is not None
+    log = replace(log, aircraft=replace(log.aircraft, path="/somewhere/else/aircraft/larkspur.yaml"))
+    made = summarise(replace(examples.day(), logs=(log,)))
+    assert made["aircraft"][0]["path"] == "aircraft/larkspur.yaml"
