@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import datetime
 import traceback
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -37,19 +37,17 @@ if TYPE_CHECKING:
 # every flight's extremes are given for these, as far as they can be had
 EXTREMES: tuple[str, ...] = (
     "load_factor",
-    "lateral_load_factor",
     "bank_angle",
-    "pitch_angle",
     "indicated_airspeed",
     "calibrated_airspeed",
     "true_airspeed",
-    "ground_speed",
     "mach",
     "pressure_altitude",
-    "vertical_speed",
     "stall_margin",
     "mass",
 )
+# and for these where a rule has their columns read anyway
+MORE_EXTREMES: tuple[str, ...] = ("lateral_load_factor", "pitch_angle", "vertical_speed", "ground_speed")
 # threads for blocks of one log; a log of fewer samples is not worth a second one
 THREADS = 2
 WORTH_THREADS = 200_000
@@ -66,12 +64,20 @@ class Assigned:
     notes: tuple[str, ...] = ()
 
 
-def scan(settings: Settings, progress: Callable[[int, int], None] | None = None) -> DayOutcome:
+def scan(
+    settings: Settings,
+    progress: Callable[[int, int], None] | None = None,
+    sift: Callable[[Sequence[LogPath]], tuple[list[LogPath], list[Skipped]]] | None = None,
+) -> DayOutcome:
     """The main job. Raises ExceedError for wrong wishes or documents; a log that fails is in the outcome.
 
     progress : called with (done, all) after each log.
+    sift : given the logs found, those to read and those to leave out with the reason.
     """
     logs, skipped = find_logs(settings.paths)
+    if sift is not None:
+        logs, known = sift(logs)
+        skipped = [*skipped, *known]
     run = prepare(settings, [(str(Path(log.location).parent), log.root) for log in logs])
     from exceed.batch import each
 
@@ -127,7 +133,8 @@ def _assess(log: LogPath, run: Run) -> LogOutcome:
     trace = build_trace(recording, member.aircraft, quantities=names, mass=run.mass, loading=list(member.loading))
     compiled = ready_rules(trace, member)
     threads = THREADS if len(recording.time) > WORTH_THREADS else 1
-    findings = judge(trace, compiled, [name for name in EXTREMES if trace.has(name)], threads=threads)
+    extremes = [name for name in (*EXTREMES, *MORE_EXTREMES) if name in names and trace.has(name)]
+    findings = judge(trace, compiled, extremes, threads=threads)
     plots = None
     if run.settings.plots:
         from exceed.drawing import log_plots
@@ -261,7 +268,7 @@ def trace_of(settings: Settings) -> tuple[Trace, LogOutcome]:
     assigned = assign(log, run)
     recording = read(assigned, None)
     trace = build_trace(recording, assigned.member.aircraft, mass=run.mass, loading=list(assigned.member.loading))
-    extremes = [name for name in EXTREMES if trace.has(name)]
+    extremes = [name for name in (*EXTREMES, *MORE_EXTREMES) if trace.has(name)]
     findings = judge(trace, [], extremes)
     return trace, outcome(log.shown, assigned.member, assigned.registration, trace, findings, [], notes=assigned.notes)
 
@@ -275,7 +282,7 @@ def describe(settings: Settings) -> tuple[LogOutcome, Survey, Recording]:
     recording = read(assigned, None)
     aircraft = assigned.member.aircraft
     trace = build_trace(recording, aircraft, mass=run.mass, loading=list(assigned.member.loading))
-    findings = judge(trace, [], [name for name in EXTREMES if trace.has(name)])
+    findings = judge(trace, [], [name for name in (*EXTREMES, *MORE_EXTREMES) if trace.has(name)])
     feeds = []
     for name in BUILT_IN:
         rules = load_rules(name)

@@ -1,0 +1,372 @@
+"""A summary into the ledger: what is new is added, what is known is left, what a newer judgement changed is said."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Iterable, Sequence
+from typing import Any
+
+from exceed.ledger import stretch as st
+from exceed.ledger.flights import BORNE, flight_of, place_flights
+from exceed.ledger.store import Ledger, Row, Table, chunks, named, utc_now
+
+_UNREAD = "not read or assessed, so not in the ledger"
+
+
+def record(ledger: Ledger, summary: Row) -> Row:
+    """Record one scan, whole or not at all. Raises ExceedError.
+
+    Returns a dict: `scan` (its key, None where nothing was added), `replaces` (the scan whose judgements the newest
+    ones here replace, or None), `recordings` {added, known, judged_anew}, `flights` {added, known, longer, clashes},
+    `events` {added, known}, `inspections` {added, known}, `changes` (list of added, removed, changed events of
+    judgements anew: kind, event, rule, title, registration, start, path, difference, decision), `left_out`
+    (path, reason).
+    """
+    return ledger.writing(lambda table: _Scan(table, summary).run())
+
+
+def known_digests(ledger: Ledger, digests: Iterable[str]) -> set[str]:
+    """Which of these SHA-256, of files as they lie or unpacked, are in the ledger."""
+    wanted = sorted(set(digests))
+
+    def look(table: Table) -> set[str]:
+        found: set[str] = set()
+        for piece in chunks(wanted):
+            places, values = named(piece)
+            for sql in (
+                f"SELECT sha256 AS d FROM copies WHERE sha256 IN ({places})",
+                f"SELECT content_sha256 AS d FROM recordings WHERE content_sha256 IN ({places})",
+            ):
+                found |= {row["d"] for row in table.rows(sql, **values)}
+        return found
+
+    return ledger.reading(look)
+
+
+class _Scan:
+    """One summary on its way into the ledger, inside one transaction."""
+
+    def __init__(self, table: Table, summary: Row) -> None:
+        self.table = table
+        self.summary = summary
+        self.tool = f"{summary['tool']['name']} {summary['tool']['version']}"
+        self.scan_id: int | None = None
+        self.scan_key: str | None = None
+        self.rows_of: dict[str, int] = {}  # event id of this summary -> row of the ledger
+        self.result: Row = {
+            "scan": None,
+            "replaces": None,
+            "recordings": {"added": 0, "known": 0, "judged_anew": 0},
+            "flights": {"added": 0, "known": 0, "longer": 0, "clashes": []},
+            "events": {"added": 0, "known": 0},
+            "inspections": {"added": 0, "known": 0},
+            "changes": [],
+            "left_out": [],
+        }
+
+    def run(self) -> Row:
+        for recording in self.summary["recordings"]:
+            if recording["status"] == "failed" or not recording["content_sha256"]:
+                self.result["left_out"].append({"path": recording["path"], "reason": _UNREAD})
+            else:
+                self._recording(recording)
+        for inspection in self.summary["inspections"]:
+            self._inspection(inspection)
+        self.result["scan"] = self.scan_key
+        return self.result
+
+    def _scan(self) -> int:
+        """The row of this scan, made when the first thing is added."""
+        if self.scan_id is None:
+            last = self.table.one("SELECT max(id) AS last FROM scans")
+            self.scan_key = st.short_name(self.summary["created"], (last or {}).get("last"), utc_now())
+            self.scan_id = self.table.add(
+                "scans", scan_key=self.scan_key, created=self.summary["created"], tool=self.tool,
+                operator=self.summary.get("operator"), added_at=utc_now(),
+            )  # fmt: skip
+        return self.scan_id
+
+    def _recording(self, recording: Row) -> None:
+        table, counts = self.table, self.result["recordings"]
+        found = table.one("SELECT id FROM recordings WHERE content_sha256 = :sha", sha=recording["content_sha256"])
+        if found is None:
+            clock = recording["clock"]
+            row = table.add(
+                "recordings", content_sha256=recording["content_sha256"], path=recording["path"],
+                row_count=recording["rows"], recorded_s=float(recording["recorded_s"]),
+                clock_start=st.epoch(clock["start"]) if clock is not None else None, scan_id=self._scan(),
+            )  # fmt: skip
+            counts["added"] += 1
+        else:
+            row = int(found["id"])
+        self._copy(row, recording["sha256"])
+        history = table.rows("SELECT * FROM judgements WHERE recording_id = :id ORDER BY turn", id=row)
+        rules = st.rules_digest(self.summary["judged_with"], recording["rule_sets"], self.tool)
+        outcome = st.result_digest(recording)
+        same = self._same(history, rules, outcome)
+        if same is not None:
+            counts["known"] += 1
+            self.result["flights"]["known"] += len(recording["flights"])
+            self._known_events(recording, row)
+            return
+        counts["judged_anew"] += bool(history)
+        self._judgement(recording, row, history, rules, outcome)
+
+    def _copy(self, recording_id: int, sha256: str | None) -> None:
+        if sha256 is None:
+            return
+        sql = "SELECT id FROM copies WHERE recording_id = :id AND sha256 = :sha"
+        if self.table.one(sql, id=recording_id, sha=sha256) is None:
+            self.table.add("copies", recording_id=recording_id, sha256=sha256)
+
+    def _same(self, history: Sequence[Row], rules: str, outcome: str) -> Row | None:
+        """The judgement that says just this and still holds for at least one of its rules."""
+        holds: dict[str, int] = {}
+        for judgement in history:
+            for rule in _rules(judgement):
+                holds[rule] = judgement["id"]
+        current = set(holds.values()) or {judgement["id"] for judgement in history[-1:]}
+        for judgement in reversed(history):
+            if judgement["id"] not in current and judgement is not history[-1]:
+                continue
+            if judgement["rules_sha256"] == rules and judgement["result_sha256"] == outcome:
+                before = json.loads(judgement["judged_with"])
+                if not st.documents_changed(before, self.summary["judged_with"]):
+                    return judgement
+        return None
+
+    def _known_events(self, recording: Row, recording_id: int) -> None:
+        """Find this summary's events among those that are there."""
+        for body in (*recording["events"], *recording["undecided"]):
+            found = self.table.one(
+                "SELECT e.id FROM events e JOIN judgements j ON j.id = e.judgement_id WHERE e.event_id = :name "
+                "AND j.recording_id = :recording ORDER BY e.id DESC",
+                name=body["id"], recording=recording_id,
+            ) or self.table.one(
+                "SELECT event_row AS id FROM sightings WHERE event_id = :name ORDER BY id DESC", name=body["id"]
+            )  # fmt: skip
+            if found is not None:
+                self.rows_of[body["id"]] = int(found["id"])
+                self.result["events"]["known"] += 1
+
+    def _judgement(self, recording: Row, row: int, history: Sequence[Row], rules: str, outcome: str) -> None:
+        table = self.table
+        assessment = recording["assessment"]
+        judged = {one["rule"] for one in assessment} | {one["rule"] for one in _events(recording)}
+        replaced = next((one for one in reversed(history) if judged & _rules(one) or not _rules(one)), None)
+        judgement = table.add(
+            "judgements", recording_id=row, turn=len(history) + 1, scan_id=self._scan(),
+            replaces=replaced["id"] if replaced is not None else None, registration=recording["registration"],
+            limits=recording["limits"], tool=self.tool, judged_with=_json(self.summary["judged_with"]),
+            rules_sha256=rules, result_sha256=outcome, assessment=_json(assessment),
+        )  # fmt: skip
+        if replaced is not None:
+            scan = table.one("SELECT scan_key FROM scans WHERE id = :id", id=replaced["scan_id"])
+            self.result["replaces"] = scan["scan_key"] if scan is not None else None
+        placed, counts = place_flights(table, recording, row, judgement)
+        for key in ("added", "known", "longer"):
+            self.result["flights"][key] += counts[key]
+        self.result["flights"]["clashes"] += [{"path": recording["path"], "flight": one} for one in counts["clashes"]]
+        if history and history[-1]["registration"] != recording["registration"] and recording["registration"]:
+            self._renamed(recording["registration"], placed)
+        self._events(recording, row, judgement, rules, placed, judged, anew=bool(history))
+
+    def _renamed(self, registration: str, placed: Sequence[Row]) -> None:
+        """The same recording was judged as another aeroplane's: its flights are that one's from now on."""
+        for flight in {one["flight_id"] for one in placed}:
+            self.table.add(
+                "reassignments", flight_id=flight, registration=registration,
+                reg_key=st.registration_key(registration), by_name=None,
+                note="the recording was judged anew under this registration", added_at=utc_now(),
+            )  # fmt: skip
+
+    def _events(
+        self,
+        recording: Row,
+        row: int,
+        judgement: int,
+        rules: str,
+        placed: Sequence[Row],
+        judged: set[str],
+        *,
+        anew: bool,
+    ) -> None:
+        """New events beside the old: the same occurrence succeeds, what is no longer found is removed (as a row)."""
+        key = st.registration_key(recording["registration"])
+        own = [old for old in self._own(row) if old["rule"] in judged] if anew else []
+        matched: set[int] = set()
+        for kind, body in _kinds(recording):
+            new = _event_row(kind, body, key)
+            fits = [old for old in own if st.same_occurrence(old, new, same_recording=True)]
+            matched |= {old["id"] for old in fits}
+            if not fits and key and new["start_at"] is not None:
+                twin = self._twin(new, key, row)
+                if twin is not None and not _supersedes(new, body, twin, rules):
+                    self.table.add("sightings", event_row=twin["id"], judgement_id=judgement, event_id=body["id"])
+                    self.rows_of[body["id"]] = int(twin["id"])
+                    self.result["events"]["known"] += 1
+                    continue
+                fits = [] if twin is None else [twin]
+            event = self.table.add(
+                "events", event_id=body["id"], judgement_id=judgement, flight_id=flight_of(placed, body),
+                registration=body["registration"], body=_json(body), **new,
+            )  # fmt: skip
+            self.rows_of[body["id"]] = event
+            for old in fits:
+                words = st.difference(json.loads(old["body"]), body, old["kind"], kind)
+                self._succeed(old, event, judgement, "changed" if words else "same", "; ".join(words))
+                if words:
+                    self._change("changed", body, recording["path"], "; ".join(words), old)
+            self.result["events"]["known" if fits else "added"] += 1
+            if anew and not fits:
+                self._change("added", body, recording["path"], "", None)
+        able = {one["rule"] for one in recording["assessment"] if one["flight"] is None and one["assessed_s"] > 0.0}
+        for old in own:
+            # a rule that could not be assessed this time takes nothing back
+            if old["id"] not in matched and old["rule"] in able:
+                self._succeed(old, None, judgement, "removed", "")
+                self._change("removed", json.loads(old["body"]), recording["path"], "", old)
+
+    def _own(self, recording_id: int) -> list[Row]:
+        return self.table.rows(
+            "SELECT e.* FROM events e JOIN judgements j ON j.id = e.judgement_id WHERE j.recording_id = :recording "
+            "AND NOT EXISTS (SELECT 1 FROM successions s WHERE s.earlier_id = e.id) ORDER BY e.id",
+            recording=recording_id,
+        )
+
+    def _twin(self, new: Row, key: str, recording_id: int) -> Row | None:
+        """The same occurrence as another recording of the same aeroplane has it."""
+        return self.table.one(
+            "SELECT e.*, j.rules_sha256 FROM events e JOIN judgements j ON j.id = e.judgement_id "
+            f"WHERE (e.reg_key = :reg OR e.flight_id IN {BORNE}) AND e.rule = :rule AND e.part = :part "
+            "AND e.start_at <= :last AND e.end_at >= :first AND j.recording_id <> :recording "
+            "AND NOT EXISTS (SELECT 1 FROM successions s WHERE s.earlier_id = e.id) ORDER BY e.id",
+            reg=key, rule=new["rule"], part=new["part"], first=new["start_at"] - st.SLACK,
+            last=new["end_at"] + st.SLACK, recording=recording_id,
+        )  # fmt: skip
+
+    def _succeed(self, old: Row, later: int | None, judgement: int, kind: str, words: str) -> None:
+        self.table.add("successions", earlier_id=old["id"], later_id=later, judgement_id=judgement, kind=kind,
+                       difference=words)  # fmt: skip
+
+    def _change(self, kind: str, body: Row, path: str, words: str, old: Row | None) -> None:
+        decision = None if old is None else _decision(self.table, old["id"])
+        self.result["changes"].append(
+            {
+                "kind": kind, "event": body["id"], "rule": body["rule"], "title": body["title"],
+                "severity": body["severity"], "registration": body["registration"], "start": body["start"],
+                "start_s": body["start_s"], "path": path, "difference": words, "decision": decision,
+            }
+        )  # fmt: skip
+
+    def _inspection(self, inspection: Row) -> None:
+        """An inspection is known by its rule, its task, and the occurrences that ask for it."""
+        rows = [self.rows_of[name] for name in inspection["events"] if name in self.rows_of]
+        there: dict[int, int] = {}
+        for row in rows:
+            found = self._asked(row, inspection)
+            if found is not None:
+                there[row] = found
+        fresh = [row for row in dict.fromkeys(rows) if row not in there]
+        if not fresh:
+            self.result["inspections"]["known"] += bool(rows)
+            return
+        still_open = [one for one in dict.fromkeys(there.values()) if not _closed(self.table, one)]
+        if still_open:
+            target = still_open[0]
+            self.result["inspections"]["known"] += 1
+        else:
+            target = self._new_inspection(inspection, fresh)
+            self.result["inspections"]["added"] += 1
+        for row in fresh:
+            self.table.add("inspection_events", inspection_row=target, event_row=row)
+
+    def _asked(self, row: int, inspection: Row) -> int | None:
+        """The inspection that this occurrence, in any of its judgements, has asked for already."""
+        for piece in chunks(sorted(lineage(self.table, row))):
+            places, values = named(piece)
+            found = self.table.one(
+                "SELECT i.id FROM inspections i JOIN inspection_events ie ON ie.inspection_row = i.id "
+                f"WHERE ie.event_row IN ({places}) AND i.rule = :rule AND i.task = :task ORDER BY i.id DESC",
+                rule=inspection["rule"], task=inspection["task"], **values,
+            )  # fmt: skip
+            if found is not None:
+                return int(found["id"])
+        return None
+
+    def _new_inspection(self, inspection: Row, fresh: Sequence[int]) -> int:
+        name = inspection["id"]
+        while self.table.one("SELECT id FROM inspections WHERE inspection_id = :name", name=name) is not None:
+            name = st.short_name(name, *fresh)
+        return self.table.add(
+            "inspections", inspection_id=name, registration=inspection["registration"],
+            reg_key=st.registration_key(inspection["registration"]), serial=inspection["serial"],
+            rule=inspection["rule"], task=inspection["task"], ata=inspection["ata"],
+            due_before=inspection.get("before"), added_at=utc_now(),
+        )  # fmt: skip
+
+
+def lineage(table: Table, row: int) -> set[int]:
+    """An event's row and those of all earlier and later judgements of the same occurrence."""
+    found, front = {row}, {row}
+    while front:
+        places, values = named(sorted(front)[:500])
+        rest = set(sorted(front)[500:])
+        links = table.rows(
+            f"SELECT earlier_id, later_id FROM successions WHERE earlier_id IN ({places}) OR later_id IN ({places})",
+            **values,
+        )
+        linked = {one[end] for one in links for end in ("earlier_id", "later_id") if one[end] is not None}
+        front = rest | (linked - found)
+        found |= linked
+    return found
+
+
+def _decision(table: Table, row: int) -> str | None:
+    places, values = named(sorted(lineage(table, row)))
+    found = table.one(f"SELECT verdict FROM decisions WHERE event_row IN ({places}) ORDER BY id DESC", **values)
+    return found["verdict"] if found is not None else None
+
+
+def _closed(table: Table, inspection: int) -> bool:
+    last = table.one("SELECT kind FROM inspection_acts WHERE inspection_row = :id ORDER BY id DESC", id=inspection)
+    return last is not None and last["kind"] == "close"
+
+
+def _supersedes(new: Row, body: Row, twin: Row, rules: str) -> bool:
+    """Does another download's view of a known event take its place: it says worse, sees more, or by other rules?"""
+    if st.worse(new, twin):
+        return True
+    old = json.loads(twin["body"])
+    broken = ("gap", "recording_start", "recording_end")
+    if old.get("cut_by") in broken and st.longer(new, twin):
+        return True
+    if st.worse(twin, new) and twin["rules_sha256"] == rules:
+        return False
+    return twin["rules_sha256"] != rules and not (body.get("cut_by") in broken and st.longer(twin, new))
+
+
+def _event_row(kind: str, body: Row, key: str) -> Row:
+    return {
+        "kind": kind, "rule": body["rule"], "part": st.part(body["quantity"]), "reg_key": key,
+        "start_s": float(body["start_s"]), "end_s": float(body["end_s"]), "start_at": st.epoch(body["start"]),
+        "end_at": st.epoch(body["end"]), "severity": body["severity"], "certainty": body["certainty"],
+    }  # fmt: skip
+
+
+def _kinds(recording: Row) -> Iterable[tuple[str, Row]]:
+    yield from (("event", body) for body in recording["events"])
+    yield from (("undecided", body) for body in recording["undecided"])
+
+
+def _events(recording: Row) -> Iterable[Row]:
+    return (body for _, body in _kinds(recording))
+
+
+def _rules(judgement: Row) -> set[str]:
+    return {row["rule"] for row in json.loads(judgement["assessment"])}
+
+
+def _json(data: Any) -> str:
+    # ASCII: a lone surrogate of a file name is written as an escape, which every database takes
+    return json.dumps(data, separators=(",", ":"), allow_nan=False)
