@@ -391,7 +391,7 @@ def _stuck(series: Series, others: Mapping[str, Series], out: Checked) -> None:
             there = other.values[a:b]
             there = there[np.isfinite(there)]
             moved += len(there) > 3 and float(np.ptp(there)) > _MOVED[name]
-        if moved >= 2:
+        if moved >= 2 or (moved == 1 and last - first >= 100 * usual):
             _reject(values, np.arange(first + 1, last + 1), "stuck", out)
         elif moved == 1:
             out.notes.append(f"the same figure for {end - begin:.0f} s while one other channel moved: kept")
