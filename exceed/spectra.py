@@ -202,7 +202,7 @@ def _count(
     mine = Growing(assigned.registration, logs=1, airborne=_in_air(trace, airborne))
     mine.derived = "load_factor" not in trace.leaves(["load_factor"])
     grid = trace.grid(["load_factor"])
-    gaps = _add_flights(mine, trace, grid, airborne, None if reference is None else float(reference))
+    gaps, edges = _add_flights(mine, trace, grid, airborne, None if reference is None else float(reference))
     mine.flights_known = trace.track.known
     mine.flights = sum(
         len(intersection(airborne, normal([flight.start], [flight.end]))) > 0 for flight in trace.track.flights
@@ -224,7 +224,7 @@ def _count(
         counted=mine.whole.seconds,
         stretches=mine.stretches,
         samples=mine.samples,
-        not_counted=_not_counted(trace, grid, airborne, again, gaps, mine),
+        not_counted=_not_counted(trace, airborne, again, gaps, edges, mine),
         at_end=_at_sensor_end(trace, airborne),
         status=about.status if mine.samples or again <= 0.0 else "not counted",
         notes=tuple(dict.fromkeys((*about.notes, *trace.track.notes, *trace.notes))),
@@ -264,8 +264,11 @@ def _in_air(trace: Trace, airborne: Intervals) -> float:
     return airborne.total - (intersection(airborne, seams).total if len(seams) else 0.0)
 
 
-def _add_flights(mine: Growing, trace: Trace, grid: Grid, airborne: Intervals, reference: float | None) -> float:
-    """Count every stretch of the airborne time; the seconds that gaps take."""
+def _add_flights(
+    mine: Growing, trace: Trace, grid: Grid, airborne: Intervals, reference: float | None
+) -> tuple[float, float]:
+    """Count every stretch of the airborne time; the seconds that gaps take, and those between a flight's ends and its
+    first and last sample."""
     weigh = _why_not_weighted(trace, reference)
     if weigh:
         mine.unweighted[weigh] = 1
@@ -273,15 +276,21 @@ def _add_flights(mine: Growing, trace: Trace, grid: Grid, airborne: Intervals, r
         why = f"gusts not told: {trace.missing.get('gust_velocity') or 'gust velocity not known'}"
         mine.untold[why] = 1
     gap = max(GAP_INTERVALS * grid.interval, GAP_LEAST)
-    lost = 0.0
+    lost = edges = 0.0
     for start, end in airborne:
         low, high = (int(np.searchsorted(grid.time, edge)) for edge in (start, end))
         if high <= low:
+            lost += end - start
             continue
         time = grid.time[low:high]
         values = _values(trace, grid, low, high)
         steps = np.diff(time)
         lost += float(steps[steps > gap].sum())
+        for edge in (float(time[0]) - start, end - float(time[-1])):
+            if edge > gap:
+                lost += edge
+            else:
+                edges += edge
         load = values["load_factor"]
         phases = trace.track.phases.at(time)
         causes = _causes(phases, values.get("gust_velocity"))
@@ -299,7 +308,7 @@ def _add_flights(mine: Growing, trace: Trace, grid: Grid, airborne: Intervals, r
                 mine.weighted.add(count_stretch(time[part], heavy[part], ()))
                 mine.weighted_cycles.add_history(heavy[part])
                 mine.weighted_logs, mine.reference_mass = 1, reference
-    return lost - (airborne.total - _in_air(trace, airborne))
+    return lost - (airborne.total - _in_air(trace, airborne)), edges
 
 
 def _values(trace: Trace, grid: Grid, low: int, high: int) -> dict[str, Array]:
@@ -326,15 +335,12 @@ def _why_not_weighted(trace: Trace, reference: float | None) -> str:
 
 
 def _not_counted(
-    trace: Trace, grid: Grid, airborne: Intervals, again: float, gaps: float, mine: Growing
+    trace: Trace, airborne: Intervals, again: float, gaps: float, edges: float, mine: Growing
 ) -> tuple[tuple[str, float], ...]:
-    """Why airborne time was not counted, the longest first."""
-    edges = grid.interval * 2.0 * len(airborne)
-    left = _in_air(trace, airborne) - mine.whole.seconds - max(gaps, 0.0)
-    rows = [("counted in an earlier log", again), ("gap", gaps), ("rejected, or no value", left)]
-    floor = {"counted in an earlier log": 1e-6, "gap": 1e-6, "rejected, or no value": edges}
-    kept = [(why, seconds) for why, seconds in rows if seconds > floor[why]]
-    return tuple(sorted(kept, key=lambda row: -row[1]))
+    """Why airborne time was not counted, the longest first; a flight's ends between two samples are no loss."""
+    left = _in_air(trace, airborne) - mine.whole.seconds - gaps - edges
+    rows = (("counted in an earlier log", again), ("gap", gaps), ("rejected, or no value", left))
+    return tuple(sorted((row for row in rows if row[1] > 1e-6), key=lambda row: -row[1]))
 
 
 def _at_sensor_end(trace: Trace, airborne: Intervals) -> int:
