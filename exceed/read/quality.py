@@ -13,7 +13,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from exceed.core.constants import STANDARD_GRAVITY
-from exceed.core.intervals import runs
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array
 
@@ -400,6 +399,5 @@ def _stuck(series: Series, others: Mapping[str, Series], out: Checked) -> None:
 def _usual_run(values: Array) -> float:
     """How many samples in a row are usually equal (99 of 100 runs are shorter)."""
     some = values[: 1 << 16]
-    equal = some[1:] == some[:-1]
-    lengths = np.diff(runs(equal), axis=1).ravel() + 1
-    return float(np.percentile(lengths, 99)) if len(lengths) else 1.0
+    changes = np.flatnonzero(some[1:] != some[:-1])
+    return float(np.percentile(np.diff(changes), 99)) if len(changes) > 2 else float(len(some))
