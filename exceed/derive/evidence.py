@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from exceed.core.constants import EARTH_RADIUS
-from exceed.core.intervals import normal
+from exceed.core.intervals import normal, runs
 from exceed.core.recording import Array, Recording
 from exceed.derive.coarse import Coarse
 from exceed.physics.airspeed import calibrated_airspeed_from_impact_pressure
@@ -31,10 +31,12 @@ TOUCH = 90.0  # s: a touch-and-go stays on the runway no longer than this
 BREAK = 1800.0  # s without a sample: what comes after is another flight
 GROUND_WITH_HEIGHT = 8.0  # s of slow and level that make a landing
 GROUND_WITHOUT_HEIGHT = 25.0  # s of slow that make a landing where height cannot confirm it: stall turns are shorter
+AT_AN_END = 0.25  # of these for a run that the recording's end cuts
 AIR_WITH_HEIGHT = 5.0
 AIR_WITHOUT_HEIGHT = 20.0  # a rejected take-off is shorter
 CLIMBED = 15.0  # m: a flight rises at least so far
 SETTLED = 1.0  # m/s: less vertical speed than this over ten seconds is level
+HARDEST_STOP = 7.0  # m/s2: brakes, soft ground and reverse thrust give less
 LEAST_SPEED = 16.0  # m/s: nothing that flies in these logs lifts off slower
 
 
@@ -180,7 +182,7 @@ def air_by_speed(signals: Signals, limits: Thresholds, notes: list[str]) -> list
     evidence = np.zeros(len(coarse), dtype=np.int8)
     with np.errstate(invalid="ignore"):
         evidence[speed > limits.airborne] = 1
-        slow = speed < limits.ground
+        slow = (speed < limits.ground) & ~_failed(coarse, speed, limits, notes)
         if climb is not None:
             # climbing or sinking steadily is flying, however slow: a spin, a hover in wave
             evidence[np.abs(climb) > 2.5 * SETTLED] = 1
@@ -191,13 +193,41 @@ def air_by_speed(signals: Signals, limits: Thresholds, notes: list[str]) -> list
     least_ground = GROUND_WITH_HEIGHT if with_height else GROUND_WITHOUT_HEIGHT
     stretches = _settled(coarse, evidence, least_air, least_ground)
     kept = []
+    rejected: list[str] = []
     for stretch in stretches:
         _refine(stretch, signals, limits)
         if with_height and stretch.start_seen and stretch.end_seen and not _climbed(stretch, signals):
-            notes.append(f"fast on the ground without a climb at {stretch.start:.0f} s: taken as a rejected take-off")
+            rejected.append(
+                f"fast on the ground without a climb at {stretch.start:.0f} s: taken as a rejected take-off"
+            )
             continue
         kept.append(stretch)
+    notes.extend(_told(rejected))
     return kept
+
+
+def _failed(coarse: Coarse, speed: Array, limits: Thresholds, notes: list[str]) -> NDArray[np.bool_]:
+    """Slow stretches that began more suddenly than any aeroplane stops: a blocked pitot, a lost fix. No landing is."""
+    failed = np.zeros(len(coarse), dtype=bool)
+    time = coarse.time
+    told: list[str] = []
+    for first, stop in runs(speed < limits.ground).tolist():
+        before = coarse.part(time[first] - 4.0, time[first])
+        after = slice(first, min(first + 2, stop))
+        if before.stop == before.start or time[first] - time[first - 1] > 2.0:
+            continue
+        fastest = speed[before][np.isfinite(speed[before])]
+        if len(fastest) and float(np.max(fastest)) - float(np.min(speed[after])) > 4.0 * HARDEST_STOP:
+            failed[first:stop] = True
+            text = f"speed fell from {np.max(fastest):.0f} to {np.min(speed[after]):.0f} m/s within seconds"
+            told.append(f"{text} at {time[first]:.0f} s: taken for a failed reading, no landing")
+    notes.extend(_told(told))
+    return failed
+
+
+def _told(notes: list[str]) -> list[str]:
+    """The first of many notes alike, and how many more there are."""
+    return notes if len(notes) <= 1 else [f"{notes[0]} (and {len(notes) - 1} more)"]
 
 
 def _settled(coarse: Coarse, evidence: NDArray[np.int8], least_air: float, least_ground: float) -> list[Stretch]:
@@ -211,30 +241,27 @@ def _settled(coarse: Coarse, evidence: NDArray[np.int8], least_air: float, least
     # a run's own time is that between its first and last evidence; between two runs lies what is not told
     first = np.concatenate([[0], change + 1])
     last = np.concatenate([change, [len(known) - 1]])
-    runs = [
-        [bool(state[f]), float(time[known[f]]), float(time[known[e]] + coarse.step[known[e]])]
-        for f, e in zip(first.tolist(), last.tolist(), strict=True)
-    ]
+    air, begin, stop = state[first], time[known[first]], time[known[last]] + coarse.step[known[last]]
     end = float(time[-1])
-    while len(runs) > 1:
-        spans = []
-        for place, (air, begin, stop) in enumerate(runs):
-            least = least_air if air else least_ground
-            outer = place == 0 or (place == len(runs) - 1 and stop >= end - 3.0)
-            # at an end of the recording the run may have lasted longer than was recorded
-            spans.append((stop - begin) / (0.25 * least if outer else least))
-        place = int(np.argmin(spans))
-        if spans[place] >= 1.0:
+    while len(air) > 1:
+        least = np.where(air, least_air, least_ground)
+        # at an end of the recording the run may have lasted longer than was recorded
+        least[0] *= AT_AN_END
+        least[-1] *= AT_AN_END if stop[-1] >= end - 3.0 else 1.0
+        share = (stop - begin) / least
+        # the shortest of their neighbourhood yield, all at once: no two of them touch
+        yields = (share < 1.0) & (share < np.append(np.inf, share[:-1])) & (share <= np.append(share[1:], np.inf))
+        if not yields.any():
             break
-        low, high = max(place - 1, 0), min(place + 1, len(runs) - 1)
-        other = not runs[place][0]
-        runs[low : high + 1] = [[other, runs[low][1], runs[high][2]]]
+        air = air ^ yields
+        opens = np.flatnonzero(np.concatenate([[True], air[1:] != air[:-1]]))
+        closes = np.append(opens[1:], len(air)) - 1
+        air, begin, stop = air[opens], begin[opens], stop[closes]
     found = []
-    for place, (air, begin, stop) in enumerate(runs):
-        if air:
-            start_seen, end_seen = place > 0, place < len(runs) - 1
-            begin, stop = begin if start_seen else float(time[0]), stop if end_seen else end
-            found.append(Stretch(begin, stop, start_seen, end_seen))
+    for place in np.flatnonzero(air).tolist():
+        start_seen, end_seen = place > 0, place < len(air) - 1
+        since, until = float(begin[place]) if start_seen else float(time[0]), float(stop[place]) if end_seen else end
+        found.append(Stretch(since, until, start_seen, end_seen))
     return found
 
 

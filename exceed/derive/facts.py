@@ -91,7 +91,7 @@ def facts_of(aircraft: Aircraft | None) -> Facts:
         if value is not None:
             values[name] = float(value)
     sensor = aircraft.recorder.accelerometer
-    if sensor is not None and sensor.position is not None:
+    if sensor is not None and sensor.position is not None and any(float(x) != 0.0 for x in sensor.position):
         values["accelerometer_position"] = np.array([float(x) for x in sensor.position])
     missing = {name: f"the aircraft file has no {words}" for name, words in WORDS.items() if name not in values}
     return Facts(

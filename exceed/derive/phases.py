@@ -34,6 +34,7 @@ MANOEUVRE_LEAST, MANOEUVRE_JOIN, MANOEUVRE_PAD = 1.5, 30.0, 5.0  # s
 MOVING = 1.0  # m/s over the ground
 CRAWL = 8.0  # m/s: below, an airspeed indicator says nothing of movement
 SLIVER = 5.0  # s
+LONGEST_CIRCUIT = 600.0  # s
 AROUND = 120.0  # s before and after a flight that belong to its runs on the ground
 ROLLING_FAST = 15.0  # m/s: the landing roll ends, the take-off run begins
 
@@ -56,6 +57,7 @@ def phases_of(coarse: Coarse, signals: Signals, found: Found) -> tuple[PhaseTrac
     manoeuvring, told = _manoeuvring(coarse, climb)
     if not told:
         notes.append("no bank, pitch or load factor: manoeuvring cannot be told")
+    passes = np.sort(np.array(found.passes))
     for flight in found.flights:
         cells = coarse.part(flight.start - AROUND, flight.end + AROUND)
         time, code = coarse.time[cells], codes[cells]
@@ -65,13 +67,12 @@ def phases_of(coarse: Coarse, signals: Signals, found: Found) -> tuple[PhaseTrac
         _ends(coarse, signals, flight, cells, inside, code)
         low = np.isin(code, [PHASE_CODE["take-off"], PHASE_CODE["landing"]])
         code[inside & manoeuvring[cells] & ~low] = PHASE_CODE["manoeuvring"]
-        for when in found.passes:
-            if flight.start < when < flight.end:
-                _low_pass(signals, time, cells, when, inside, code, touched=False)
+        for when in passes[slice(*np.searchsorted(passes, [flight.start, flight.end]).tolist())].tolist():
+            _low_pass(coarse, signals, flight, when, codes, touched=False)
         for when in flight.touchdowns:
             if when < flight.end - AROUND / 2.0:
-                _low_pass(signals, time, cells, when, inside, code, touched=True)
-            code[(time >= when - 2.0) & (time < min(when + 8.0, flight.end))] = PHASE_CODE["landing"]
+                _low_pass(coarse, signals, flight, when, codes, touched=True)
+            codes[coarse.part(when - 2.0, min(when + 8.0, flight.end))] = PHASE_CODE["landing"]
         _rolls(signals, flight, time, cells, code)
         _without_slivers(time, code, inside)
     if not found.known:
@@ -196,22 +197,26 @@ def _ends(
 
 
 def _low_pass(
-    signals: Signals, time: Array, cells: slice, when: float, inside: Mask, codes: NDArray[np.int8], *, touched: bool
+    coarse: Coarse, signals: Signals, flight: Flight, when: float, codes: NDArray[np.int8], touched: bool
 ) -> None:
-    """A touch-and-go, or a missed approach, which belongs to the approach until it is back in the circuit."""
+    """A touch-and-go, or a missed approach, which belongs to the approach until it is back in the circuit.
+
+    codes : (m,) of all cells.
+    """
     if signals.height is None or signals.climb is None:
         return
-    height, climb = signals.height[cells], signals.climb[cells]
-    above = height - signals.coarse.median_near(signals.height, when, 2.0)
+    cells = coarse.part(max(when - LONGEST_CIRCUIT, flight.start), min(when + LONGEST_CIRCUIT, flight.end))
+    time, height, climb, code = coarse.time[cells], signals.height[cells], signals.climb[cells], codes[cells]
+    above = height - coarse.median_near(signals.height, when, 2.0)
     backwards = -time[::-1]
-    before = _until(backwards, ((above > CIRCUIT) | (climb > CLIMBING))[::-1], -when, 600.0)[::-1] & inside
-    codes[before] = PHASE_CODE["approach"]
+    before = _until(backwards, ((above > CIRCUIT) | (climb > CLIMBING))[::-1], -when, LONGEST_CIRCUIT)[::-1]
+    code[before] = PHASE_CODE["approach"]
     levelled = (above > SCREEN) & (climb < LEVELLED) & (time > when + 20.0)
-    after = _until(time, (above > CIRCUIT) | levelled, when, 600.0) & inside
-    codes[after] = PHASE_CODE["initial climb" if touched else "approach"]
+    after = _until(time, (above > CIRCUIT) | levelled, when, LONGEST_CIRCUIT)
+    code[after] = PHASE_CODE["initial climb" if touched else "approach"]
     if touched:
-        codes[_until(backwards, (above > FLARE)[::-1], -when, 60.0)[::-1] & inside] = PHASE_CODE["landing"]
-        codes[_until(time, above > SCREEN, when, 60.0) & inside] = PHASE_CODE["take-off"]
+        code[_until(backwards, (above > FLARE)[::-1], -when, 60.0)[::-1]] = PHASE_CODE["landing"]
+        code[_until(time, above > SCREEN, when, 60.0)] = PHASE_CODE["take-off"]
 
 
 def _without_slivers(time: Array, codes: NDArray[np.int8], inside: Mask) -> None:

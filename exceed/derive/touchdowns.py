@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from bisect import bisect_left, bisect_right
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
@@ -112,6 +113,7 @@ def go_arounds(
         depth = float(np.nanmin(signals.height[part]))
         around = signals.height[max(part.start - 180, 0) : part.start], signals.height[part.stop : part.stop + 180]
         far = all(len(side) and np.isfinite(side).any() and np.nanmax(side) > depth + 0.75 * LOW for side in around)
-        if far and not any(low <= when <= high for when in touchdowns):
+        touched = bisect_left(touchdowns, low) < bisect_right(touchdowns, high)
+        if far and not touched:
             found.append(float(time[part][np.nanargmin(signals.height[part])]))
     return found

@@ -79,7 +79,7 @@ def test_a_bare_accelerometer_is_corrected_only_for_a_large_datum_error() -> Non
 
 @pytest.mark.parametrize("with_bank", [True, False])
 def test_a_steep_turn_held_for_long_is_no_datum_error(with_bank: bool) -> None:
-    """Two short level stretches about a turn of 45 degrees (eased to 1.21 g), as quiet as they are and four times as long."""
+    """Two short level stretches about a turn of 45 degrees (eased to 1.21 g), as quiet and four times as long."""
     time = np.arange(0.0, 200.0, 0.125)
     turning = (time > 25.0) & (time < 170.0)
     noise = 0.01 * np.random.default_rng(1).standard_normal(len(time))

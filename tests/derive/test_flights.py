@@ -303,3 +303,19 @@ def test_ground_time_and_airborne_time_do_not_overlap() -> None:
     both = normal(np.concatenate([found.ground.start, found.airborne.start]),
                   np.concatenate([found.ground.end, found.airborne.end]))  # fmt: skip
     assert both.total == pytest.approx(found.ground.total + found.airborne.total)
+
+
+def test_a_blocked_pitot_in_cruise_is_no_landing() -> None:
+    """The reading falls to nothing within a second, for two minutes, in level flight."""
+    recording = profile(CIRCUIT)
+    speed = recording.channels["indicated_airspeed"].values.copy()
+    speed[(recording.time > 330) & (recording.time < 450)] = 0.0
+    height = recording.channels["pressure_altitude"].values
+    level = np.where((recording.time > 300) & (recording.time < 480), 400.0, height)
+    channels = {"indicated_airspeed": channel_of("indicated_airspeed", speed, None, recording.time),
+                "pressure_altitude": channel_of("pressure_altitude", level, None, recording.time)}  # fmt: skip
+    for one in (make(recording.time, channels), only(make(recording.time, channels), "indicated_airspeed")):
+        found = flights(one, STALL)
+        assert len(found.flights) == 1
+        assert found.airborne.contains(np.array([400.0])).all()
+        assert any("failed reading" in note for note in found.notes)
