@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from typing import Any
 
+from exceed.report.gather import certainty_rank, severity_rank
 from exceed.report.layout import Screen
 from exceed.report.show import elapsed, local_text, number
-from exceed.report.summary import certainty_rank, severity_rank
 
 Dict = dict[str, Any]
 

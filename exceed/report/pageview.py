@@ -8,6 +8,7 @@ from typing import Any
 from exceed.core.findings import SEVERITIES
 from exceed.report import sections, unassessed
 from exceed.report.arrange import flight_order, flight_times, grouped, limit_source, share_text, titles
+from exceed.report.gather import certainty_rank
 from exceed.report.layout import Screen
 from exceed.report.show import (
     STATES,
@@ -21,7 +22,6 @@ from exceed.report.show import (
     shown,
     words,
 )
-from exceed.report.summary import certainty_rank
 
 Dict = dict[str, Any]
 _SECTIONS = {"not_assessed": unassessed.not_assessed, "quality": sections.quality}

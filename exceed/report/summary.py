@@ -8,14 +8,14 @@ from __future__ import annotations
 import hashlib
 import math
 from collections.abc import Iterable, Mapping
-from functools import lru_cache
 from typing import Any
 
 from exceed import __version__
-from exceed.core.findings import CAUTIONS, CERTAINTIES, SEVERITIES, Coverage, Event, Extreme, RejectedFinding
-from exceed.core.outcome import AircraftInfo, ChannelRow, DayOutcome, FlightRow, LogOutcome, MethodRow
+from exceed.core.findings import CAUTIONS, Coverage, Event, Extreme, RejectedFinding
+from exceed.core.outcome import ChannelRow, DayOutcome, FlightRow, LogOutcome, MethodRow
 from exceed.core.quantities import QUANTITIES
 from exceed.core.units import UNITS
+from exceed.report.gather import aircraft_rows, inspection_rows, ordered_events, plain_registration, seconds, totals_of
 from exceed.report.show import iso_utc
 
 Dict = dict[str, Any]
@@ -75,7 +75,7 @@ def summarise(day: DayOutcome) -> Dict:
             else {"kind": row.kind, "name": row.name, "value": row.value}
             for row in day.judged_with
         ],
-        "aircraft": _aircraft(day, logs),
+        "aircraft": aircraft_rows(day, logs),
         "rules": [
             {
                 "set": row.name,
@@ -89,8 +89,8 @@ def summarise(day: DayOutcome) -> Dict:
         ],
         "recordings": recordings,
         "skipped": [{"path": path, "reason": reason} for path, reason in sorted(day.skipped)],
-        "totals": _totals(recordings),
-        "inspections": _inspections(logs, recordings),
+        "totals": totals_of(recordings),
+        "inspections": inspection_rows(logs, recordings),
         "notes": list(day.notes),
     }
 
@@ -100,8 +100,8 @@ def _recording(log: LogOutcome) -> Dict:
     findings = log.findings
     start = log.clock.start if log.clock is not None else None
     used: set[str] = set()
-    events = [_event(log, event, scales, start, used) for event in _ordered(findings.events)]
-    undecided = [_event(log, event, scales, start, used) for event in _ordered(findings.undecided)]
+    events = [_event(log, event, scales, start, used) for event in ordered_events(findings.events)]
+    undecided = [_event(log, event, scales, start, used) for event in ordered_events(findings.undecided)]
     recorded = seconds(log.recorded)
     clock = log.clock
     return {
@@ -162,11 +162,6 @@ class _Scales(dict[str, Scale]):
         return scale
 
 
-def seconds(value: float) -> float:
-    """A time in s to the millisecond; 0 for what is not finite, which no time of an axis is."""
-    return round(value, 3) + 0.0 if math.isfinite(value) else 0.0
-
-
 def _seconds_or_none(value: float | None) -> float | None:
     return None if value is None or not math.isfinite(value) else round(value, 3) + 0.0
 
@@ -179,15 +174,6 @@ def _probability(p: float | None) -> float | None:
         if all((p >= step) == (rounded >= step) for step in _STEPS):
             return rounded
     return p
-
-
-def _ordered(events: Iterable[Event]) -> list[Event]:
-    return sorted(events, key=lambda event: (event.start, event.rule, event.row, event.quantity))
-
-
-def plain_registration(registration: str | None) -> str:
-    """A registration without case and punctuation, as registrations are compared."""
-    return "".join(letter for letter in (registration or "").upper() if letter.isalnum())
 
 
 def event_id(registration: str | None, rule: str, digest: str, row: int, turn: int = 0) -> str:
@@ -383,109 +369,3 @@ def _coverage(row: Coverage, recorded: float) -> Dict:
         "shortest_seen_s": _seconds_or_none(row.shortest_seen),
         "reasons": [{"reason": reason, "seconds": seconds(time)} for reason, time in row.reasons],
     }
-
-
-def _aircraft(day: DayOutcome, logs: Iterable[LogOutcome]) -> list[Dict]:
-    found: dict[str, AircraftInfo] = {}
-    gathered = [log.aircraft for log in logs if log.aircraft is not None]
-    for info in [*day.aircraft, *gathered]:
-        if info.registration is not None:
-            key = plain_registration(info.registration)
-            known = found.get(key)
-            # the one with limits says more than one that was met in a log without
-            if known is None or (known.limits == "none" and info.limits != "none"):
-                found[key] = info
-    return [
-        {
-            "registration": info.registration,
-            "serial": info.serial,
-            "type": info.type,
-            "category": info.category,
-            "limits": info.limits,
-            "source": info.source,
-            "recorder": dict(info.recorder),
-            "path": _file_of(info, day),
-        }
-        for _, info in sorted(found.items())
-    ]
-
-
-def _file_of(info: AircraftInfo, day: DayOutcome) -> str | None:
-    """An aeroplane's file as it stands in `judged_with`, however much of the way to it either of them gives."""
-    if info.path is None:
-        return None
-    wanted = info.path.replace("\\", "/").split("/")
-    for row in day.judged_with:
-        if row.kind == "aircraft" and row.path is not None:
-            there = row.path.split("/")
-            short = min(len(wanted), len(there))
-            if wanted[-short:] == there[-short:]:
-                return row.path
-    return None
-
-
-def _totals(recordings: list[Dict]) -> Dict:
-    events = [event for recording in recordings for event in recording["events"]]
-    flights = [flight for recording in recordings for flight in recording["flights"]]
-    return {
-        "recordings": len(recordings),
-        "failed": sum(recording["status"] == "failed" for recording in recordings),
-        "flights": sum(flight["flight"] is not None for flight in flights),
-        "flight_s": seconds(sum(flight["end_s"] - flight["start_s"] for flight in flights)),
-        "events": {severity: sum(event["severity"] == severity for event in events) for severity in SEVERITIES},
-        "near_limit": sum(not event["limit_exceeded"] for event in events),
-        "doubtful": sum(event["certainty"] == "doubtful" for event in events),
-        "undecided": sum(len(recording["undecided"]) for recording in recordings),
-    }
-
-
-@lru_cache(maxsize=16)
-def certainty_rank(certainty: str) -> int:
-    """Place of a certainty in its order, doubtful 0."""
-    return CERTAINTIES.index(certainty)
-
-
-@lru_cache(maxsize=16)
-def severity_rank(severity: str) -> int:
-    """Place of a severity in its order, advisory 0."""
-    return SEVERITIES.index(severity)
-
-
-def _inspections(logs: list[LogOutcome], recordings: list[Dict]) -> list[Dict]:
-    """What is due, one row per aeroplane, rule and task: to be decided where only undecided stretches ask for it."""
-    rows: dict[tuple[str, str, str], Dict] = {}
-    for log, recording in zip(logs, recordings, strict=True):
-        for status, found, shown in (
-            ("due", log.findings.events, recording["events"]),
-            ("to_be_decided", log.findings.undecided, recording["undecided"]),
-        ):
-            for event, written in zip(_ordered(found), shown, strict=True):
-                if event.task is None or not event.task.wanted:
-                    continue
-                # logs without a registration may come from different aeroplanes
-                owner = plain_registration(log.registration) or f"log {log.path}"
-                row = rows.setdefault(
-                    (owner, event.rule, event.task.text),
-                    {
-                        "id": "",
-                        "registration": log.registration,
-                        "serial": log.aircraft.serial if log.aircraft is not None else None,
-                        "task": event.task.text,
-                        "ata": event.task.ata,
-                        "before": event.task.before,
-                        "status": status,
-                        "certainty": event.certainty,
-                        "rule": event.rule,
-                        "events": [],
-                    },
-                )
-                if written["id"] not in row["events"]:  # the same content may lie in the folder twice
-                    row["events"].append(written["id"])
-                if status == "due":
-                    row["status"] = "due"
-                if certainty_rank(event.certainty) > certainty_rank(row["certainty"]):
-                    row["certainty"] = event.certainty
-    for (owner, rule, task), row in rows.items():
-        text = "\x1f".join([owner, rule, task, row["events"][0]])
-        row["id"] = hashlib.sha256(text.encode()).hexdigest()[:12]
-    return [row for _, row in sorted(rows.items(), key=lambda item: (item[0][0], item[1]["status"], item[0][1:]))]

@@ -11,6 +11,7 @@ from typing import Any
 
 from exceed.report import sections, unassessed
 from exceed.report.arrange import aeroplane, flight_times, grouped, limit_source
+from exceed.report.gather import certainty_rank, severity_rank
 from exceed.report.layout import Column, Screen, columns, on_point
 from exceed.report.show import (
     MARKS,
@@ -22,7 +23,6 @@ from exceed.report.show import (
     peak_texts,
     probability,
 )
-from exceed.report.summary import certainty_rank, severity_rank
 
 Dict = dict[str, Any]
 Group = tuple[Dict, int | None, list[Dict]]
