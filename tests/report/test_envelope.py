@@ -94,6 +94,18 @@ def test_the_manuals_manoeuvring_speed_is_kept_apart_from_the_meeting_point() ->
     assert "at the manual's V_A the wing stalls at 5.47 g, 1.07 g beyond the limit" in found["notes"]
 
 
+def test_a_manoeuvring_speed_goes_with_the_root_of_mass_only_where_the_manual_says_so() -> None:
+    table = "{over: mass, points: [[700 kg, 110 KIAS], [960 kg, 128 KIAS]]}"
+    for form, expected in (
+        ("{value: 128 KIAS, mass: 960 kg, scale: sqrt_mass}", 128.0 * math.sqrt(540.0 / 960.0)),
+        ("{value: 128 KIAS, mass: 960 kg}", 128.0),
+        (table, 110.0),  # the ends of a table are held
+    ):
+        found = envelope_summary(envelope_of(load_aircraft(LARKSPUR.replace(table, form)), mass=540.0))
+        assert speed(found, "V_A")["indicated_airspeed_kt"] == pytest.approx(expected, abs=0.001)
+        assert speed(found, "V_A")["notes"]
+
+
 def test_mass_and_altitude_move_stall_limit_and_speed_limit() -> None:
     found = envelope_summary(envelope_of(load_aircraft(LARKSPUR), mass=860.0, pressure_altitude=5000.0 * FT))
     stall = 55.0 * math.sqrt(860.0 / 960.0)
