@@ -12,7 +12,18 @@ if TYPE_CHECKING:
     from exceed.read.find import LogPath, Skipped
     from exceed.read.look import Survey
 
-__all__ = ["LogFacts", "LogPath", "Skipped", "Survey", "channels_file", "describe", "find_logs", "load", "read_log", "survey"]
+__all__ = [
+    "LogFacts",
+    "LogPath",
+    "Skipped",
+    "Survey",
+    "channels_file",
+    "describe",
+    "find_logs",
+    "load",
+    "read_log",
+    "survey",
+]
 
 _WHERE = {"LogFacts": "describing", "LogPath": "find", "Skipped": "find", "Survey": "look"}
 
@@ -34,7 +45,10 @@ def survey(path: Any, *, channels: object | None = None, declared: Mapping[str, 
 
 
 def load(
-    survey: Survey, wanted: set[str] | frozenset[str] | None = None, *, ranges: Mapping[str, tuple[float, float]] | None = None
+    survey: Survey,
+    wanted: set[str] | frozenset[str] | None = None,
+    *,
+    ranges: Mapping[str, tuple[float, float]] | None = None,
 ) -> Recording:
     """Read the columns of the wanted quantities; see `loading.load`."""
     from exceed.read.loading import load as read

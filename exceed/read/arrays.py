@@ -43,13 +43,19 @@ def numbers_of_text(
             text = pc.replace_substring(text, mark, "")
     if decimal == ",":
         text = pc.replace_substring(text, ",", ".")
-    text = pc.replace_substring_regex(text, r"^([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*[A-Za-z°%µ/²]{1,7}[2]?$", r"\1")
+    text = pc.replace_substring_regex(
+        text, r"^([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*[A-Za-z°%µ/²]{1,7}[2]?$", r"\1"
+    )
     text = pc.utf8_ltrim(text, "+")
     good = pc.match_substring_regex(text, r"^-?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?$")
     good = pc.fill_null(good, False)
     values, _ = floats(pc.cast(pc.if_else(good, text, pa.scalar(None, pa.large_string())), pa.float64()))
     odd = pc.and_(pc.invert(good), pc.is_valid(column))
-    places = np.flatnonzero(np.asarray(odd.to_numpy() if isinstance(odd, pa.ChunkedArray) else odd.to_numpy(zero_copy_only=False), dtype=bool))
+    places = np.flatnonzero(
+        np.asarray(
+            odd.to_numpy() if isinstance(odd, pa.ChunkedArray) else odd.to_numpy(zero_copy_only=False), dtype=bool
+        )
+    )
     cells = column.take(pa.array(places)).to_pylist() if len(places) else []
     keep = [k for k, cell in enumerate(cells) if not is_missing(cell, missing)]
     return values, places[keep], [cells[k].strip() for k in keep]

@@ -34,9 +34,7 @@ class Axis:
     notes: list[str] = field(default_factory=list)
 
 
-def build(
-    readings: Array, *, kind: str, slowest: int = 1, origin: float = 0.0, resolution: float = 0.0
-) -> Axis:
+def build(readings: Array, *, kind: str, slowest: int = 1, origin: float = 0.0, resolution: float = 0.0) -> Axis:
     """Readings in seconds, NaN where a row has none, in the order of the file -> the axis.
 
     Parameters
@@ -73,10 +71,14 @@ def build(
             keep[wrong] = False
             rows = np.flatnonzero(keep) if rows is None else rows[keep]
             readings = readings[keep]
-            notes.append(f"{astray} row{'s' * (astray != 1)} with a stamp out of order {'are' if astray != 1 else 'is'} left out")
+            notes.append(
+                f"{astray} row{'s' * (astray != 1)} with a stamp out of order {'are' if astray != 1 else 'is'} left out"
+            )
         steps = np.diff(readings)
     if len(readings) == 0:
-        return Axis(np.empty(0), rows if rows is not None else np.empty(0, np.int64), origin, without=without, notes=notes)
+        return Axis(
+            np.empty(0), rows if rows is not None else np.empty(0, np.int64), origin, without=without, notes=notes
+        )
     doubled = np.empty(0, np.int64)
     seams: tuple[tuple[float, float], ...] = ()
     resets = 0
@@ -122,7 +124,9 @@ def _rolled(readings: Array) -> tuple[Array, int]:
         return readings, 0
     rise = np.diff(readings) > DAY_S / 2
     # a wrong stamp falls and rises again: count both ways
-    return readings + DAY_S * np.concatenate([[0], np.cumsum(falls.astype(np.int64) - rise.astype(np.int64))]), days - int(rise.sum())
+    return readings + DAY_S * np.concatenate(
+        [[0], np.cumsum(falls.astype(np.int64) - rise.astype(np.int64))]
+    ), days - int(rise.sum())
 
 
 def _astray(readings: Array) -> NDArray[np.int64]:
@@ -141,7 +145,11 @@ def _astray(readings: Array) -> NDArray[np.int64]:
         after = readings[at + 2] if at + 2 <= last else np.inf
         if at > 0 and before <= readings[at + 1] <= before + 10 * usual and readings[at] - before > 2.5 * usual:
             wrong.append(at)
-        elif at + 2 <= last and readings[at] <= after <= readings[at] + 10 * usual and after - readings[at + 1] > 2.5 * usual:
+        elif (
+            at + 2 <= last
+            and readings[at] <= after <= readings[at] + 10 * usual
+            and after - readings[at + 1] > 2.5 * usual
+        ):
             wrong.append(at + 1)
     return np.unique(np.array(wrong, dtype=np.int64))
 
@@ -202,7 +210,9 @@ def _spread(readings: Array) -> tuple[Array, str]:
     return out, f"stamps are coarser than the rows: about {per:.3g} rows share one and are spread evenly over it"
 
 
-def _parted(readings: Array, steps: Array, back: NDArray[np.int64], slowest: int) -> tuple[Array, tuple[tuple[float, float], ...]]:
+def _parted(
+    readings: Array, steps: Array, back: NDArray[np.int64], slowest: int
+) -> tuple[Array, tuple[tuple[float, float], ...]]:
     """Each stretch after a reset is placed behind the one before, a seam between them."""
     positive = steps[steps > 0]
     usual = float(np.median(positive)) if len(positive) else 1.0

@@ -7,15 +7,21 @@ from collections.abc import Sequence
 
 from exceed.core.units import UNITS
 from exceed.read.cells import NUMBER_COMMA, NUMBER_DOT, is_missing
+from exceed.read.look import Column
 from exceed.read.recognise import is_clock
 from exceed.read.stamps import DATE, FULL, TIME, ClockPlan, one_date, zone_offset
-from exceed.read.look import Column
 from exceed.read.units_in_text import unit_in
 
 # seconds since 1970 of 1990 and 2100: a number between them, in its unit, is an epoch
 _EPOCH_FROM, _EPOCH_TO = 6.3e8, 4.1e9
-_FRAME_RATE = re.compile(r"(frame|sample|sampling|record|recording|data|log|logging|scan|update|row|acquisition)s?[ _-]*(rate|frequency|freq)|^rate$|^frequency$|hz", re.I)
-_FRAME_PERIOD = re.compile(r"(frame|sample|sampling|record|recording|log|logging|data|scan|row)[ _-]*(interval|period|time|length|duration)|^interval$|^period$", re.I)
+_FRAME_RATE = re.compile(
+    r"(frame|sample|sampling|record|recording|data|log|logging|scan|update|row|acquisition)s?[ _-]*(rate|frequency|freq)|^rate$|^frequency$|hz",
+    re.I,
+)
+_FRAME_PERIOD = re.compile(
+    r"(frame|sample|sampling|record|recording|log|logging|data|scan|row)[ _-]*(interval|period|time|length|duration)|^interval$|^period$",
+    re.I,
+)
 
 
 def _numbers(cells: Sequence[str], decimal: str) -> list[float]:
@@ -76,7 +82,9 @@ def find_clock(
     if plan is None or counting is None:
         return plan or counting  # type: ignore[return-value]
     # stamps that are as fine as the rows carry their own date; coarse ones only anchor a finer counter
-    sample = [cell for cell in cells[plan.columns[-1] if plan.kind != "iso" else plan.columns[0]] if not is_missing(cell)]
+    sample = [
+        cell for cell in cells[plan.columns[-1] if plan.kind != "iso" else plan.columns[0]] if not is_missing(cell)
+    ]
     fine = len(set(sample)) > 0.9 * len(sample)
     if fine or counting.kind in ("frame", "row") or plan.kind == "time_of_day":
         if not fine and counting.kind == "elapsed":
@@ -98,13 +106,21 @@ def _facts(facts: Sequence[tuple[str, str]]) -> tuple[int | None, str, list[str]
     day, zone, notes = None, "", []
     for key, value in facts:
         plain = key.strip().lower()
-        if day is None and re.search(r"date|start|begin|day|flight|recorded", plain) and not re.search(r"calib|expir|install|manufact|firmware|software|version|build|birth|service", plain):
+        if (
+            day is None
+            and re.search(r"date|start|begin|day|flight|recorded", plain)
+            and not re.search(r"calib|expir|install|manufact|firmware|software|version|build|birth|service", plain)
+        ):
             found, open_date = one_date(value)
             if found is not None:
                 day = found
             elif open_date:
                 notes.append(f"the preamble's date '{value}' may be day first or month first")
-        if re.search(r"zone|utc|gmt|\btz\b", plain) and not zone and (zone_offset(value) is not None or re.search(r"zone|\btz\b", plain)):
+        if (
+            re.search(r"zone|utc|gmt|\btz\b", plain)
+            and not zone
+            and (zone_offset(value) is not None or re.search(r"zone|\btz\b", plain))
+        ):
             zone = value.strip()
     return day, zone, notes
 
@@ -124,13 +140,20 @@ def _absolute(
         def merit(index: int) -> tuple[int, int, int]:
             filled = [cell for cell in cells[index] if not is_missing(cell)]
             zoned = any(m.group("zone") for cell in filled[:20] if (m := FULL.fullmatch(cell.strip())))
-            return int(zoned) + 2 * (heading_zone(index) == "UTC") - 2 * (heading_zone(index) == "local"), len(set(filled)), -index
+            return (
+                int(zoned) + 2 * (heading_zone(index) == "UTC") - 2 * (heading_zone(index) == "local"),
+                len(set(filled)),
+                -index,
+            )
 
         index = max(full, key=merit)
         sample = [cell.strip() for cell in cells[index] if not is_missing(cell)]
         matches = [FULL.fullmatch(text) for text in sample]
         zoned = any(m and m.group("zone") for m in matches)
-        iso = all(re.fullmatch(r"\d{4}-\d{2}-\d{2}[T ]\d{2}:\d{2}(:\d{2}(\.\d{1,9})?)?(Z|[+-]\d{2}(:?\d{2})?)?", text) for text in sample)
+        iso = all(
+            re.fullmatch(r"\d{4}-\d{2}-\d{2}[T ]\d{2}:\d{2}(:\d{2}(\.\d{1,9})?)?(Z|[+-]\d{2}(:?\d{2})?)?", text)
+            for text in sample
+        )
         every = all(m and m.group("zone") for m in matches)
         typed = ("stamp_zone" if every else "text" if zoned else "stamp") if iso else "text"
         return ClockPlan("iso", (index,), zone="in the cells" if zoned else heading_zone(index) or zone, typed=typed, day=day,
@@ -145,11 +168,23 @@ def _absolute(
         if dates:
             same = [i for i in dates if heading_zone(i) == heading_zone(index)]
             date = (same or dates)[0]
-            picked = (date, index, *offsets[:1]) if heading_zone(index) != "UTC" and heading_zone(date) != "UTC" else (date, index)
+            picked = (
+                (date, index, *offsets[:1])
+                if heading_zone(index) != "UTC" and heading_zone(date) != "UTC"
+                else (date, index)
+            )
             roles = ("date", "time", "offset")[: len(picked)]
             where = "in the cells" if len(picked) == 3 else heading_zone(index) or heading_zone(date) or zone
             return ClockPlan("date_time", picked, zone=where, typed=typed, day=day, roles=roles, notes=tuple(notes))
-        return ClockPlan("time_of_day", (index,), zone=heading_zone(index) or zone, typed=typed, day=day, roles=("time",), notes=tuple(notes))
+        return ClockPlan(
+            "time_of_day",
+            (index,),
+            zone=heading_zone(index) or zone,
+            typed=typed,
+            day=day,
+            roles=("time",),
+            notes=tuple(notes),
+        )
     return None
 
 
@@ -174,17 +209,25 @@ def _numeric(
         top = max(values)
         epoch = [s for s in (1.0, 1e-3, 1e-6, 1e-9) if _EPOCH_FROM <= top * s <= _EPOCH_TO]
         named = re.search(r"epoch|unix|posix", column.name, re.I)
-        if epoch and (unit is None or named or any(abs(unit / s - 1) < 1e-9 for s in epoch)) and (top > 1e8 and (unit != 1e-9 or epoch[0] == 1e-9)):
+        if (
+            epoch
+            and (unit is None or named or any(abs(unit / s - 1) < 1e-9 for s in epoch))
+            and (top > 1e8 and (unit != 1e-9 or epoch[0] == 1e-9))
+        ):
             scale = next((s for s in epoch if unit is not None and abs(unit / s - 1) < 1e-9), epoch[0])
             if unit is None or abs(unit / scale - 1) < 1e-9 or named:
-                return ClockPlan("epoch", (index,), unit=scale, zone="UTC", typed="number", roles=("number",), notes=tuple(notes))
+                return ClockPlan(
+                    "epoch", (index,), unit=scale, zone="UTC", typed="number", roles=("number",), notes=tuple(notes)
+                )
         more = list(notes)
         if unit is None:
             unit, said = _unit_by_steps(values, steps)
             more.append(said)
         distinct = len(set(values)) / len(values)
         score = distinct + (0.1 if stated else 0.0)
-        plan = ClockPlan("elapsed", (index,), unit=unit, zone=zone, typed="number", day=None, roles=("number",), notes=tuple(more))
+        plan = ClockPlan(
+            "elapsed", (index,), unit=unit, zone=zone, typed="number", day=None, roles=("number",), notes=tuple(more)
+        )
         if best is None or score > best[0]:
             best = (score, plan)
     if best is not None:
@@ -222,7 +265,10 @@ def _unit_by_steps(values: Sequence[float], steps: Sequence[float]) -> tuple[flo
         return 1e-3, f"no unit of time is written: the step of {step:g} is taken as milliseconds"
     if whole and step >= 2e4:
         factor = 1e-6 if step < 5e6 else 1e-9
-        return factor, f"no unit of time is written: the step of {step:g} is taken as {'micro' if factor == 1e-6 else 'nano'}seconds"
+        return (
+            factor,
+            f"no unit of time is written: the step of {step:g} is taken as {'micro' if factor == 1e-6 else 'nano'}seconds",
+        )
     if whole and step >= 10.0:
         return 1e-3, f"no unit of time is written: the step of {step:g} is taken as milliseconds"
     return 1.0, f"no unit of time is written: the step of {step:g} is taken as seconds"
@@ -247,7 +293,9 @@ def stated_period(facts: Sequence[tuple[str, str]]) -> float | None:
     return None
 
 
-def _first_rising(columns: Sequence[Column], cells: Sequence[Sequence[str]], decimal: str, notes: list[str]) -> ClockPlan | None:
+def _first_rising(
+    columns: Sequence[Column], cells: Sequence[Sequence[str]], decimal: str, notes: list[str]
+) -> ClockPlan | None:
     """A first column that rises evenly is the clock even if its heading does not say so."""
     for column in columns[:2]:
         if column.quantity or column.form != "number" or column.ignored:
@@ -259,7 +307,12 @@ def _first_rising(columns: Sequence[Column], cells: Sequence[Sequence[str]], dec
         middle = sorted(steps)[len(steps) // 2]
         if sum(abs(step - middle) <= 0.2 * middle for step in steps) < 0.8 * len(steps):
             continue
-        if all(v == int(v) for v in values) and middle == 1.0 and values[0] in (0.0, 1.0) and column.name.startswith("column ") is False:
+        if (
+            all(v == int(v) for v in values)
+            and middle == 1.0
+            and values[0] in (0.0, 1.0)
+            and column.name.startswith("column ") is False
+        ):
             return None  # a counter without a rate
         unit, said = _unit_by_steps(values, steps)
         note = f"'{column.name}' rises evenly and is taken as the clock; {said}"
@@ -272,4 +325,6 @@ def _rows_as_clock(facts: Sequence[tuple[str, str]], notes: list[str]) -> ClockP
     if period is not None:
         note = f"no clock column: rows are counted, {1.0 / period:g} a second as the preamble says"
         return ClockPlan("frame", (), unit=period, roles=("row",), notes=(*notes, note))
-    return ClockPlan("none", problem="no clock: no column of time was found, and no frame rate is stated", notes=tuple(notes))
+    return ClockPlan(
+        "none", problem="no clock: no column of time was found, and no frame rate is stated", notes=tuple(notes)
+    )

@@ -65,11 +65,25 @@ def describe(survey: Survey, recording: Recording) -> LogFacts:
                             channel.datum, channel.resolution, channel.noise, channel.valid_share, channel.notes)
             )  # fmt: skip
         elif column.part >= 0:
-            rows.append(ColumnFacts(column.name, survey.columns[column.part].quantity, "", None, "name", "a sub-frame of the column before", ""))
+            rows.append(
+                ColumnFacts(
+                    column.name,
+                    survey.columns[column.part].quantity,
+                    "",
+                    None,
+                    "name",
+                    "a sub-frame of the column before",
+                    "",
+                )
+            )
         else:
             said = open_columns.get(column.name)
             reason = said.reason if said else column.problem or "not read"
-            rows.append(ColumnFacts(column.name, None, column.unit_text, None, "", reason, said.question if said else column.question))
+            rows.append(
+                ColumnFacts(
+                    column.name, None, column.unit_text, None, "", reason, said.question if said else column.question
+                )
+            )
     layout = survey.layout
     return LogFacts(
         survey.path, "parquet" if survey.source.parquet else survey.source.packed or "plain", survey.source.encoding,
@@ -84,7 +98,8 @@ def _channels_by_index(survey: Survey, recording: Recording) -> dict[int, Channe
     return {
         column.index: names[column.name]
         for column in survey.columns
-        if column.name in names and (names[column.name].quantity == column.quantity or column.quantity is None or column.alternatives)
+        if column.name in names
+        and (names[column.name].quantity == column.quantity or column.quantity is None or column.alternatives)
     }
 
 

@@ -77,7 +77,9 @@ class Evidence:
                 if one.quantity == quantity and not one.problem and not one.raw.column.alternatives and (one.unit or not known)
             ]  # fmt: skip
             if found:
-                return max(found, key=lambda one: (bool(one.raw.column.unit_text), one.raw.column.score, len(one.raw.values)))
+                return max(
+                    found, key=lambda one: (bool(one.raw.column.unit_text), one.raw.column.score, len(one.raw.values))
+                )
         return None
 
     def si(self, one: Settled) -> Array:
@@ -98,8 +100,19 @@ def is_open(column: Column) -> bool:
     """Does a column leave something open that other columns may settle?"""
     quantity = column.quantity or ""
     # a sense can be the other way round even where the unit is written
-    signs = (*LOADS, "bank_angle", "pitch_angle", "roll_rate", "pitch_rate", "yaw_rate", "weight_on_wheels", "gear_down")
-    return column.unit is None or bool(column.alternatives) or (quantity in signs and column.found_by != "channels file")
+    signs = (
+        *LOADS,
+        "bank_angle",
+        "pitch_angle",
+        "roll_rate",
+        "pitch_rate",
+        "yaw_rate",
+        "weight_on_wheels",
+        "gear_down",
+    )
+    return (
+        column.unit is None or bool(column.alternatives) or (quantity in signs and column.found_by != "channels file")
+    )
 
 
 def settle(raws: Sequence[RawChannel], time: Array, declared: Mapping[str, str]) -> list[Settled]:
@@ -133,7 +146,13 @@ def settle(raws: Sequence[RawChannel], time: Array, declared: Mapping[str, str])
 
 def _begin(raw: RawChannel) -> Settled:
     column = raw.column
-    one = Settled(raw, column.quantity or "", found_by=column.found_by, reason=column.reason, forced=column.found_by == "channels file")
+    one = Settled(
+        raw,
+        column.quantity or "",
+        found_by=column.found_by,
+        reason=column.reason,
+        forced=column.found_by == "channels file",
+    )
     if len(raw.values) == 0:
         one.problem = "holds no value"
         return one

@@ -66,13 +66,17 @@ def find_logs(paths: Iterable[str | os.PathLike[str]]) -> tuple[list[LogPath], l
             found += _remote(text, skipped)
             continue
         if not text.strip():
-            problems.append(Problem("", "an empty path is given", "a file, a folder or a pattern", "give the path of a log"))
+            problems.append(
+                Problem("", "an empty path is given", "a file, a folder or a pattern", "give the path of a log")
+            )
             continue
         here: list[str] = [text]
         if not os.path.lexists(text) and glob.has_magic(text):
             here = sorted(glob.glob(text, recursive=True))
             if not here:
-                problems.append(Problem(text, "matches no file", "a pattern that fits a log", "check the pattern and its quotes"))
+                problems.append(
+                    Problem(text, "matches no file", "a pattern that fits a log", "check the pattern and its quotes")
+                )
                 continue
             base = _fixed_part(text)
         else:
@@ -205,11 +209,17 @@ def _remote(address: str, skipped: list[Skipped]) -> list[LogPath]:
         if info.type == fs.FileType.File:
             return [LogPath(path.rsplit("/", 1)[-1], address, address.rsplit("/", 1)[0])]
         if info.type == fs.FileType.NotFound:
-            raise LogError(Problem(address, "there is nothing at this address", "an object or a prefix that holds some", "check it"))
+            raise LogError(
+                Problem(
+                    address, "there is nothing at this address", "an object or a prefix that holds some", "check it"
+                )
+            )
         inside = system.get_file_info(fs.FileSelector(path, recursive=True))
     except (pa.ArrowException, OSError, ValueError) as error:
         text = " ".join(str(error).split())[:160]
-        raise LogError(Problem(address, f"cannot be opened: {text}", "an address that you may read", "check it")) from error
+        raise LogError(
+            Problem(address, f"cannot be opened: {text}", "an address that you may read", "check it")
+        ) from error
     found = []
     scheme = address.split("://", 1)[0]
     for one in inside:

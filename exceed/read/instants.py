@@ -11,10 +11,23 @@ from numpy.typing import NDArray
 from exceed.core.recording import Array, Rejected
 from exceed.read import arrays, axis
 from exceed.read.container import fail
+from exceed.read.look import Survey
 from exceed.read.parse import Parsed
 from exceed.read.raw import RawChannel
-from exceed.read.stamps import DATE, DAY, FULL, SECOND, TIME, UNKNOWN, ClockPlan, Stamps, date_order, days_of, parse, zone_offset
-from exceed.read.look import Survey
+from exceed.read.stamps import (
+    DATE,
+    DAY,
+    FULL,
+    SECOND,
+    TIME,
+    UNKNOWN,
+    ClockPlan,
+    Stamps,
+    date_order,
+    days_of,
+    parse,
+    zone_offset,
+)
 
 
 @dataclass(slots=True)
@@ -173,7 +186,9 @@ def _place(name: str) -> float | None:
     return winter.total_seconds() if winter is not None and winter == summer else None
 
 
-def _full(column: object, plan: ClockPlan, notes: list[str]) -> tuple[NDArray[np.int64], NDArray[np.bool_], NDArray[np.int64], bool, str]:
+def _full(
+    column: object, plan: ClockPlan, notes: list[str]
+) -> tuple[NDArray[np.int64], NDArray[np.bool_], NDArray[np.int64], bool, str]:
     import pyarrow as pa
 
     kind = column.type  # type: ignore[attr-defined]
@@ -273,7 +288,9 @@ def _offsets(column: object, notes: list[str]) -> tuple[NDArray[np.int64], bool]
     return table.astype(np.int64)[codes], True
 
 
-def _anchored(survey: Survey, parsed: Parsed, plan: ClockPlan, made: axis.Axis, notes: list[str]) -> tuple[float | None, str]:
+def _anchored(
+    survey: Survey, parsed: Parsed, plan: ClockPlan, made: axis.Axis, notes: list[str]
+) -> tuple[float | None, str]:
     """UTC of time 0, from a coarser column of stamps beside an elapsed clock: the latest start that no stamp forbids."""
     assert plan.anchor is not None
     column = parsed.columns.pop(plan.anchor, None)
@@ -327,4 +344,6 @@ def _doubled(survey: Survey, made: axis.Axis, raws: list[RawChannel], time: Arra
     place = np.clip(place - 1, 0, len(made.time) - 1)
     first, last = int(place[0]) * fold, int(place[-1]) * fold
     name = survey.columns[survey.clock.columns[-1]].name if survey.clock.columns else ""
-    return Rejected("time", name, float(time[first]), float(time[last]), len(made.doubled), "duplicate_time", None, (first, last))
+    return Rejected(
+        "time", name, float(time[first]), float(time[last]), len(made.doubled), "duplicate_time", None, (first, last)
+    )

@@ -12,9 +12,9 @@ from exceed.read import probe, settle
 from exceed.read.container import fail
 from exceed.read.evidence import Settled
 from exceed.read.instants import Instants, instants
+from exceed.read.look import Column, Survey
 from exceed.read.parse import Parsed, Reader
 from exceed.read.raw import raw_channels
-from exceed.read.look import Column, Survey
 
 # quantities that settle what other columns leave open, cheap to read along when something is open
 WITNESSES = (
@@ -104,7 +104,9 @@ def parse_text(survey: Survey, chosen: list[Column], data: bytes | None = None) 
     if not types:
         # only the rows are counted
         types[0] = "text"
-    return Reader(survey.source, survey.layout, tuple(getattr(survey.channels, "missing", None) or ()), data).read(types)
+    return Reader(survey.source, survey.layout, tuple(getattr(survey.channels, "missing", None) or ()), data).read(
+        types
+    )
 
 
 def _type_of(survey: Survey, column: Column) -> str:
@@ -112,8 +114,15 @@ def _type_of(survey: Survey, column: Column) -> str:
     quantity = QUANTITIES.get(column.quantity or "")
     if quantity is not None and quantity.discrete and column.form != "number":
         return "word"
-    if survey.layout.grouping or column.form == "mixed" or (column.unit_text and any(ch.isalpha() for ch in "".join(column.sample[:3]))
-                                                            and not any("e" in c.lower() or "n" in c.lower() for c in column.sample[:3])):
+    if (
+        survey.layout.grouping
+        or column.form == "mixed"
+        or (
+            column.unit_text
+            and any(ch.isalpha() for ch in "".join(column.sample[:3]))
+            and not any("e" in c.lower() or "n" in c.lower() for c in column.sample[:3])
+        )
+    ):
         return "text"
     if survey.layout.decimal == "," and survey.layout.delimiter == ",":
         return "text"
@@ -125,7 +134,9 @@ def _recording(
     notes: list[str], cells: list[tuple[Column, Any, list[str], str]], ranges: Mapping[str, tuple[float, float]],
 ) -> Recording:  # fmt: skip
     result = settle.finish(survey, settled, wanted, time, ranges, cells)
-    unresolved = [Unresolved(c.name, c.problem, c.question) for c in survey.columns if c.problem and c.question and not c.ignored]
+    unresolved = [
+        Unresolved(c.name, c.problem, c.question) for c in survey.columns if c.problem and c.question and not c.ignored
+    ]
     unresolved += result.unresolved
     said = {row.column for row in unresolved}
     clock_columns = {*survey.clock.columns} | ({survey.clock.anchor} if survey.clock.anchor is not None else set())
@@ -134,8 +145,11 @@ def _recording(
     for column in survey.columns:
         if column.index in clock_columns or column.index in used or column.name in said:
             continue
-        if column.quantity and not column.problem and not column.ignored and (
-            wanted is not None and column.quantity not in wanted
+        if (
+            column.quantity
+            and not column.problem
+            and not column.ignored
+            and (wanted is not None and column.quantity not in wanted)
         ):
             continue
         unused.append(column.name)

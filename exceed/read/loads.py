@@ -34,16 +34,22 @@ def _normal(evidence: Evidence, one: Settled) -> None:
     if stated and any(unit == stated for unit, _ in fits):
         fits = [(unit, sign) for unit, sign in fits if unit == stated]
     total_possible = bool(fits) and column.datum != "increment"
-    near_zero = abs(level) * (UNITS[stated].factor if stated else 1.0) <= 0.25 and (bool(stated) or abs(level) <= 0.25 * _spread_g(figures))
+    near_zero = abs(level) * (UNITS[stated].factor if stated else 1.0) <= 0.25 and (
+        bool(stated) or abs(level) <= 0.25 * _spread_g(figures)
+    )
     if stated and near_zero and fits and not (one.forced and column.datum):
         # an increment with a bias, or a total under a wrong unit? turns tell; else a level reading of 1.00 is no bias
         shown = _increment_unit(evidence, figures - level)
-        near_zero = not (shown == fits[0][0] or (shown is None and abs(abs(level) * UNITS[fits[0][0]].factor - 1.0) < 0.06))
+        near_zero = not (
+            shown == fits[0][0] or (shown is None and abs(abs(level) * UNITS[fits[0][0]].factor - 1.0) < 0.06)
+        )
     if total_possible and (not stated or fits[0][0] == stated or not near_zero):
         unit, sign = fits[0]
         if stated and unit != stated:
             if one.forced:
-                one.notes.append(f"the channels file says {stated}, but the level reading of {level:.3g} is that of {unit}")
+                one.notes.append(
+                    f"the channels file says {stated}, but the level reading of {level:.3g} is that of {unit}"
+                )
                 return
             one.notes.append(f"'{column.unit_text}' is written, but the level reading of {level:.3g} is that of {unit}")
         why = f"level flight and standing read {level:.3g}: {unit}, total, positive {'up' if sign > 0 else 'down'}"
@@ -66,13 +72,18 @@ def _normal(evidence: Evidence, one: Settled) -> None:
         # a log of one long turn has no level reading; the unit may still be plain, and the mean of n is never below 1
         wide = [unit for unit in _UNITS if 0.5 <= abs(level) * UNITS[unit].factor <= 2.6]
         if (stated and stated in wide) or (not stated and len(wide) == 1):
-            one.take(stated or wide[0], f"its median of {level:.3g} is that of a total in {stated or wide[0]}, though of no level flight")
+            one.take(
+                stated or wide[0],
+                f"its median of {level:.3g} is that of a total in {stated or wide[0]}, though of no level flight",
+            )
             one.scale = -one.scale if level < 0 and not column.positive else one.scale
             one.sign = one.sign or ("up" if level > 0 else "down")
             one.datum = one.datum or "total"
             one.notes.append("no long level flight in this log: unit, sign and datum rest on its median alone")
             return
-        one.problem = f"its level reading of {level:.3g} is neither that of a total nor of an increment in g, m/s2 or ft/s2"
+        one.problem = (
+            f"its level reading of {level:.3g} is neither that of a total nor of an increment in g, m/s2 or ft/s2"
+        )
         one.question = "Which unit and datum has it?"
         return
     _increment(evidence, one, figures, level)
@@ -181,12 +192,17 @@ def companions(evidence: Evidence) -> None:
         if one.quantity == "longitudinal_load_factor" and pitch is not None:
             ratio, alike, _ = slope(np.sin(evidence.si(pitch)), figures)
         if one.open:
-            fits = [unit for unit in _UNITS if 0.5 <= abs(ratio) * UNITS[unit].factor <= 2.0] if abs(alike) > 0.6 else []
+            fits = (
+                [unit for unit in _UNITS if 0.5 <= abs(ratio) * UNITS[unit].factor <= 2.0] if abs(alike) > 0.6 else []
+            )
             largest = float(np.max(np.abs(finite)))
             if len(fits) == 1:
                 one.take(fits[0], f"it moves with the pitch angle as {fits[0]} would")
             elif normal is not None and not normal.raw.column.unit_text and normal.unit:
-                one.take(normal.unit, f"no unit is written on '{normal.raw.column.name}' either, which the data show in {normal.unit}")
+                one.take(
+                    normal.unit,
+                    f"no unit is written on '{normal.raw.column.name}' either, which the data show in {normal.unit}",
+                )
             elif normal is not None and largest * UNITS["g"].factor > 4.0 and normal.unit == "m/s2":
                 one.take("m/s2", "its figures are too large for g")
         if one.unit and not one.raw.column.positive and abs(alike) > 0.6:

@@ -9,7 +9,9 @@ from functools import lru_cache
 from exceed.read.synonyms import CLOCK_NAMES, OPEN_SPEED, PHRASES, REFUSED, SIDE, WORDS
 from exceed.read.units_in_text import split_unit
 
-_CAMEL = re.compile(r"(?<=[a-z0-9])(?=[A-Z])|(?<=[A-Z])(?=[A-Z][a-z]{2,})|(?<=[A-Za-z]{2})(?=\d)|(?<=\d)(?=[A-Za-z]{2})")
+_CAMEL = re.compile(
+    r"(?<=[a-z0-9])(?=[A-Z])|(?<=[A-Z])(?=[A-Z][a-z]{2,})|(?<=[A-Za-z]{2})(?=\d)|(?<=\d)(?=[A-Za-z]{2})"
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,7 +93,12 @@ def meanings(name: str) -> tuple[tuple[Meaning, ...], str]:
                 if len(rest) > 1 or (size == 1 and (len(phrase) < 3 or score < 0.8)):
                     continue
                 best.append(
-                    Meaning(quantity, score * 0.6, f"'{phrase}' stands in the name; '{' '.join(rest)}' was not understood", side)
+                    Meaning(
+                        quantity,
+                        score * 0.6,
+                        f"'{phrase}' stands in the name; '{' '.join(rest)}' was not understood",
+                        side,
+                    )
                 )
         if best:
             break
@@ -128,7 +135,11 @@ def clock_name(name: str) -> str | None:
     if " ".join(bare) in CLOCK_NAMES and bare != words:
         return CLOCK_NAMES[" ".join(bare)]
     if "time" in words or "timestamp" in words:
-        return "time" if not any(word in REFUSED or word in ("to", "engine", "remaining", "flown", "left") for word in words) else None
+        return (
+            "time"
+            if not any(word in REFUSED or word in ("to", "engine", "remaining", "flown", "left") for word in words)
+            else None
+        )
     return None
 
 

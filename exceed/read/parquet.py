@@ -42,15 +42,30 @@ def survey_parquet(source: Source, channels: object | None, declared: dict[str, 
     if len(schema) == 0 or file.metadata.num_rows == 0:
         raise fail(source.shown, "holds no rows", expected="a table of recorded samples", do="check the export")
     if len(schema) > MOST_COLUMNS:
-        raise fail(source.shown, f"has {len(schema)} columns", expected=f"at most {MOST_COLUMNS}", do="export fewer channels")
+        raise fail(
+            source.shown, f"has {len(schema)} columns", expected=f"at most {MOST_COLUMNS}", do="export fewer channels"
+        )
     nested = [not _flat(field.type) for field in schema]
-    cells = _cells(source, file, [field.name for field, deep in zip(schema, nested, strict=True) if not deep], schema, nested)
+    cells = _cells(
+        source, file, [field.name for field, deep in zip(schema, nested, strict=True) if not deep], schema, nested
+    )
     units = [_unit(field) for field in schema]
     columns = columns_of([field.name for field in schema], units, [""] * len(schema), cells, declared)
     columns = [_typed(column, schema.field(k), nested[k]) for k, column in enumerate(columns)]
     facts = _facts(schema, file)
     return assemble(
-        source, None, columns, cells, facts, registration_in(facts), serial_in(facts), channels, declared, ".", (), rows=file.metadata.num_rows
+        source,
+        None,
+        columns,
+        cells,
+        facts,
+        registration_in(facts),
+        serial_in(facts),
+        channels,
+        declared,
+        ".",
+        (),
+        rows=file.metadata.num_rows,
     )
 
 
@@ -59,7 +74,12 @@ def _flat(kind: Any) -> bool:
 
     if pa.types.is_dictionary(kind):
         kind = kind.value_type
-    return not (pa.types.is_nested(kind) or pa.types.is_binary(kind) or pa.types.is_large_binary(kind) or pa.types.is_fixed_size_binary(kind))
+    return not (
+        pa.types.is_nested(kind)
+        or pa.types.is_binary(kind)
+        or pa.types.is_large_binary(kind)
+        or pa.types.is_fixed_size_binary(kind)
+    )
 
 
 def _typed(column: Column, field: Any, deep: bool) -> Column:
@@ -67,7 +87,13 @@ def _typed(column: Column, field: Any, deep: bool) -> Column:
 
     kind = field.type
     if deep:
-        return column.with_(quantity=None, problem=f"nested or binary ({kind}): not read", question="", form="mixed", field_type=str(kind))
+        return column.with_(
+            quantity=None,
+            problem=f"nested or binary ({kind}): not read",
+            question="",
+            form="mixed",
+            field_type=str(kind),
+        )
     if pa.types.is_boolean(kind):
         column = column.with_(form="number")
     if pa.types.is_timestamp(kind) or pa.types.is_time(kind) or pa.types.is_date(kind):
@@ -159,7 +185,9 @@ def read_columns(survey: Survey, chosen: Sequence[Column]) -> Parsed:
     digest = None if is_uri(survey.source.location) else Digest(survey.source.location)
     names = {place: survey.columns[place].name for place in places}
     if len(set(names.values())) < len(names):
-        raise fail(survey.path, "has two columns of one name", expected="columns with names of their own", do="rename them")
+        raise fail(
+            survey.path, "has two columns of one name", expected="columns with names of their own", do="rename them"
+        )
     try:
         table = file.read(columns=list(names.values()), use_threads=True)
     except (pa.ArrowException, OSError, NotImplementedError) as error:

@@ -116,7 +116,11 @@ class Reader:
                 parsed = self._once(types, mend)
             except _Retry as retry:
                 # one column first; if a third fails, most probably all have the same stray rows
-                failing = [retry.column] if attempt < 2 and retry.column in types else [p for p, k in types.items() if k != "text"]
+                failing = (
+                    [retry.column]
+                    if attempt < 2 and retry.column in types
+                    else [p for p, k in types.items() if k != "text"]
+                )
                 for place in failing:
                     types[place] = "text"
                     texts.add(place)
@@ -127,7 +131,9 @@ class Reader:
             parsed.texts = texts
             parsed.digest = digest
             return parsed
-        raise fail(self.source.shown, "its columns cannot be read as numbers or as text", do="export the log as CSV again")
+        raise fail(
+            self.source.shown, "its columns cannot be read as numbers or as text", do="export the log as CSV again"
+        )
 
     def _once(self, types: dict[int, str], mend: bool) -> Parsed:
         import pyarrow as pa
@@ -158,7 +164,9 @@ class Reader:
         try:
             table = arrow_csv.read_csv(
                 handle,
-                arrow_csv.ReadOptions(column_names=[str(k) for k in range(layout.width)], skip_rows=skip, block_size=BLOCK),
+                arrow_csv.ReadOptions(
+                    column_names=[str(k) for k in range(layout.width)], skip_rows=skip, block_size=BLOCK
+                ),
                 arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven),
                 arrow_csv.ConvertOptions(
                     column_types={str(k): kinds[kind] for k, kind in types.items()},
@@ -195,7 +203,10 @@ class Reader:
         text = " ".join(str(error).split())
         if "straddling" in text or "block" in text:
             return fail(
-                self.source.shown, f"a line is longer than {BLOCK >> 20} MB", expected="one row a line", do="export the log as CSV again"
+                self.source.shown,
+                f"a line is longer than {BLOCK >> 20} MB",
+                expected="one row a line",
+                do="export the log as CSV again",
             )
         return fail(self.source.shown, f"cannot be read as a table: {text[:160]}", do="export the log as CSV again")
 

@@ -18,7 +18,13 @@ WINDOW = 48 << 10
 def worth_it(survey: Survey) -> bool:
     """Is the log so large that reading more columns than wanted costs more than reading windows?"""
     layout = survey.layout
-    return survey.source.direct and survey.source.size > LARGE and layout is not None and not layout.squeeze and not layout.uneven
+    return (
+        survey.source.direct
+        and survey.source.size > LARGE
+        and layout is not None
+        and not layout.squeeze
+        and not layout.uneven
+    )
 
 
 def windows(survey: Survey) -> bytes:

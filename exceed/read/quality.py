@@ -48,13 +48,22 @@ PHYSICS: dict[str, tuple[float, float, float]] = {
     "flap_angle": (6.0 * _DEG, 15.0 * _DEG, 1.1),
 }
 _WRAPS = frozenset({"heading", "track_angle", "bank_angle", "longitude"})
-_LIVELY = frozenset({"load_factor", "longitudinal_load_factor", "lateral_load_factor", "roll_rate", "pitch_rate", "yaw_rate", "bank_angle",
-                     "pitch_angle", "indicated_airspeed", "calibrated_airspeed", "true_airspeed", "angle_of_attack"})  # fmt: skip
 _CLIPS = frozenset({"load_factor", "longitudinal_load_factor", "lateral_load_factor", "roll_rate", "pitch_rate", "yaw_rate",
                     "angle_of_attack", "indicated_airspeed"})  # fmt: skip
-# what a companion must move through for a stretch to count as flown, SI
-_MOVED = {"bank_angle": 12.0 * _DEG, "pitch_angle": 6.0 * _DEG, "indicated_airspeed": 6.0, "calibrated_airspeed": 6.0, "true_airspeed": 6.0,
-          "pressure_altitude": 60.0, "heading": 20.0 * _DEG, "load_factor": 0.4, "roll_rate": 10.0 * _DEG, "pitch_rate": 6.0 * _DEG}  # fmt: skip
+# a figure that does not change is stuck only if others say that it must have: for each quantity the seconds it has to
+# last, the largest size of a figure that could be a true standstill (SI), and the companions' movements, all of a group
+STUCK: dict[str, tuple[float, float, tuple[tuple[tuple[str, float], ...], ...]]] = {
+    "load_factor": (10.0, np.inf, ((("bank_angle", 40.0 * _DEG),), (("pitch_rate", 8.0 * _DEG),))),
+    "bank_angle": (10.0, np.inf, ((("roll_rate", 12.0 * _DEG),),)),
+    "pitch_angle": (10.0, np.inf, ((("pitch_rate", 6.0 * _DEG), ("pressure_altitude", 60.0)),)),
+    "roll_rate": (5.0, 2.0 * _DEG, ((("bank_angle", 20.0 * _DEG),),)),
+    "pitch_rate": (5.0, 1.0 * _DEG, ((("pitch_angle", 10.0 * _DEG),),)),
+    "indicated_airspeed": (20.0, np.inf, ((("pitch_angle", 12.0 * _DEG), ("pressure_altitude", 100.0)),)),
+    "calibrated_airspeed": (20.0, np.inf, ((("pitch_angle", 12.0 * _DEG), ("pressure_altitude", 100.0)),)),
+    "true_airspeed": (20.0, np.inf, ((("pitch_angle", 12.0 * _DEG), ("pressure_altitude", 100.0)),)),
+    "angle_of_attack": (10.0, np.inf, ((("load_factor", 0.6),),)),
+    "pressure_altitude": (30.0, np.inf, ((("vertical_speed", 5.0), ("pitch_angle", 8.0 * _DEG)),)),
+}
 
 Found = tuple[int, int, int, str, float | None]
 
@@ -151,10 +160,12 @@ def check(series: Series, sensor: tuple[float, float] | None, others: Mapping[st
         _clipped(series, out)
     if series.quantity in PHYSICS:
         _spikes(series, others, out)
-    if series.quantity in _LIVELY:
+    if series.quantity in STUCK:
         _stuck(series, others, out)
     if series.quantity == "load_factor" and series.interval > 0.26:
-        out.notes.append(f"recorded every {series.interval:.3g} s: peaks shorter than about {4 * series.interval:.2g} s are not sized")
+        out.notes.append(
+            f"recorded every {series.interval:.3g} s: peaks shorter than about {4 * series.interval:.2g} s are not sized"
+        )
     out.lost = sum(samples for _, _, samples, _, _ in out.rejected)
     return out
 
@@ -184,7 +195,11 @@ def _out_of_range(series: Series, sensor: tuple[float, float] | None, out: Check
             return
         low, high = float(np.nanmin(values)), float(np.nanmax(values))
     row = QUANTITIES.get(series.quantity)
-    bounds = sorted((row.unit.to_si(row.plausible[0]), row.unit.to_si(row.plausible[1]))) if row is not None else [-np.inf, np.inf]
+    bounds = (
+        sorted((row.unit.to_si(row.plausible[0]), row.unit.to_si(row.plausible[1])))
+        if row is not None
+        else [-np.inf, np.inf]
+    )
     if sensor is not None:
         # a sample at the end of the range, a step or a hundredth of it beyond, is clipped and stays
         slack = max(2 * series.step, 0.01 * (sensor[1] - sensor[0]))
@@ -299,7 +314,10 @@ def _load_verdict(series: Series, moment: float, size: float, others: Mapping[st
         return "doubt"
     if series.quantity != "load_factor":
         return "spike" if series.interval <= 0.15 and abs(size) > 2.0 else "doubt"
-    speed = next((others[name] for name in ("true_airspeed", "calibrated_airspeed", "indicated_airspeed") if name in others), None)
+    speed = next(
+        (others[name] for name in ("true_airspeed", "calibrated_airspeed", "indicated_airspeed") if name in others),
+        None,
+    )
     fast = 60.0
     if speed is not None:
         there = speed.near(moment, 2 * speed.interval + 0.5)
@@ -347,53 +365,52 @@ def _near_ground(moment: float, others: Mapping[str, Series], size: float) -> bo
     speed = others.get("indicated_airspeed") or others.get("ground_speed")
     if speed is not None:
         there = speed.near(moment, 4.0)
-        return len(there) == 0 or bool(np.median(there) < 0.6 * float(np.nanpercentile(speed.values[:: max(1, len(speed.values) // 5000)], 90)))
+        return len(there) == 0 or bool(
+            np.median(there) < 0.6 * float(np.nanpercentile(speed.values[:: max(1, len(speed.values) // 5000)], 90))
+        )
     return size < 6.0
 
 
 def _stuck(series: Series, others: Mapping[str, Series], out: Checked) -> None:
-    """The very same figure for long, from a channel that is never still, while others move."""
+    """The very same figure for long, from a channel that is otherwise seldom still, while others say that it moved."""
     values = series.values
-    lasting = 5.0 if series.quantity.endswith("load_factor") or series.quantity.endswith("rate") else 30.0
+    lasting, still, groups = STUCK[series.quantity]
+    groups = tuple(group for group in groups if all(name in others for name, _ in group))
     long = int(max(lasting / max(series.interval, 1e-6), 20))
-    if len(values) < 3 * long:
+    if len(values) < 3 * long or not groups:
         return
     # a stretch longer than twice the spacing of these probes shows equal figures at two of them
-    probes = values[:: max(1, long // 2)]
-    same = np.flatnonzero(probes[1:] == probes[:-1])
-    if len(same) == 0:
-        return
     step = max(1, long // 2)
-    spans = []
-    for place in same.tolist():
+    probes = values[::step]
+    spans: list[tuple[int, int]] = []
+    for place in np.flatnonzero(probes[1:] == probes[:-1]).tolist():
         first, last = place * step, min((place + 1) * step, len(values) - 1)
-        if spans and first <= spans[-1]:
+        if (spans and first <= spans[-1][1]) or not np.all(values[first : last + 1] == values[first]):
             continue
-        if not np.all(values[first : last + 1] == values[first]):
-            continue
+        # the run's ends, looked for a stretch at a time
         while first > 0 and values[first - 1] == values[first]:
             first -= 1
         while last + 1 < len(values) and values[last + 1] == values[last]:
             last += 1
-        spans += [first, last]
+        spans.append((first, last))
+    if not spans:
+        return
     usual = _usual_run(values)
     when = series.at()
-    for first, last in zip(spans[0::2], spans[1::2], strict=True):
-        if last - first < max(long, 20 * usual):
+    for first, last in spans:
+        if last - first < max(long, 20 * usual) or abs(float(values[first])) > still:
             continue
         begin, end = float(when[first]), float(when[last])
-        moved = 0
-        for name, other in others.items():
-            if name == series.quantity or name not in _MOVED:
-                continue
-            a, b = np.searchsorted(other.at(), (begin, end))
-            there = other.values[a:b]
-            there = there[np.isfinite(there)]
-            moved += len(there) > 3 and float(np.ptp(there)) > _MOVED[name]
-        if moved >= 2 or (moved == 1 and last - first >= 100 * usual):
+        if any(all(_moved(others[name], begin, end) > least for name, least in group) for group in groups):
             _reject(values, np.arange(first + 1, last + 1), "stuck", out)
-        elif moved == 1:
-            out.notes.append(f"the same figure for {end - begin:.0f} s while one other channel moved: kept")
+
+
+def _moved(other: Series, begin: float, end: float) -> float:
+    """Range of a companion within a stretch."""
+    first, last = np.searchsorted(other.at(), (begin, end))
+    there = other.values[first:last]
+    there = there[np.isfinite(there)]
+    return float(np.ptp(there)) if len(there) > 3 else 0.0
 
 
 def _usual_run(values: Array) -> float:

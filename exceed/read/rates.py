@@ -29,12 +29,18 @@ def groups(columns: Sequence[Column]) -> list[Column]:
         name = split_unit(column.name)[0]
         match = _SUFFIX.match(name) or _SUFFIX.match(column.name)
         if match and match.group(1).strip():
-            bases.setdefault((match.group(1).strip().lower(), column.quantity), []).append((int(match.group(2)), column))
+            bases.setdefault((match.group(1).strip().lower(), column.quantity), []).append(
+                (int(match.group(2)), column)
+            )
     out = list(columns)
     for members in bases.values():
         members.sort(key=lambda item: item[0])
         numbers = [number for number, _ in members]
-        if len(members) < 2 or numbers[0] not in (0, 1) or numbers != list(range(numbers[0], numbers[0] + len(numbers))):
+        if (
+            len(members) < 2
+            or numbers[0] not in (0, 1)
+            or numbers != list(range(numbers[0], numbers[0] + len(numbers)))
+        ):
             continue
         places = tuple(column.index for _, column in members)
         lead = places[0]

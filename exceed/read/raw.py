@@ -5,7 +5,6 @@ from __future__ import annotations
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,8 +13,8 @@ from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array
 from exceed.read import arrays, states
 from exceed.read.container import LogError, Utf8Stream
-from exceed.read.parse import Parsed, Reader
 from exceed.read.look import Column, Survey
+from exceed.read.parse import Parsed, Reader
 from exceed.read.table import Layout, split
 
 OddCells = tuple[Column, NDArray[np.int64], list[str], str]
@@ -131,7 +130,11 @@ def _unfolded(survey: Survey, column: Column, pieces: list[Array]) -> list[RawCh
     if _redundant(pieces):
         members = [survey.columns[place] for place in column.group]
         return [
-            RawChannel(member.with_(group=(), part=-1), piece, notes=["one of several columns for the same quantity at the same instants"])
+            RawChannel(
+                member.with_(group=(), part=-1),
+                piece,
+                notes=["one of several columns for the same quantity at the same instants"],
+            )
             for member, piece in zip(members, pieces, strict=True)
         ]
     values = np.stack(pieces, axis=1).reshape(-1)

@@ -8,8 +8,8 @@ from collections.abc import Mapping, Sequence
 from exceed.core.quantities import QUANTITIES
 from exceed.core.units import UNITS, units_of
 from exceed.read.cells import form, is_missing
-from exceed.read.names import Meaning, clock_name, meanings, words_of
 from exceed.read.look import Column
+from exceed.read.names import Meaning, clock_name, meanings, words_of
 from exceed.read.synonyms import SIDE, WORDS
 from exceed.read.units_in_text import RAW, plain, says_nothing, split_unit, unit_in
 
@@ -97,13 +97,19 @@ def column_form(cells: Sequence[str]) -> str:
 
 
 def columns_of(
-    names: Sequence[str], units: Sequence[str], sources: Sequence[str], cells: Sequence[Sequence[str]], declared: Mapping[str, str]
+    names: Sequence[str],
+    units: Sequence[str],
+    sources: Sequence[str],
+    cells: Sequence[Sequence[str]],
+    declared: Mapping[str, str],
 ) -> list[Column]:
     """Recognise every column on its own. `cells[k]` are sample cells of column k."""
     made = []
     for index, name in enumerate(names):
         source = sources[index] if index < len(sources) else ""
-        made.append(recognise(index, name, units[index] if index < len(units) else "", source, tuple(cells[index]), declared))
+        made.append(
+            recognise(index, name, units[index] if index < len(units) else "", source, tuple(cells[index]), declared)
+        )
     return made
 
 
@@ -127,7 +133,11 @@ def recognise(
     found, why = ((own,), "") if own else meanings(bare)
     whole, _ = meanings(name) if not own else ((), "")
     # a unit may be part of the name after all: `E1 RPM`, `LONG G`, `G`
-    if whole and (not found or whole[0].score > found[0].score + 0.1 or (bare != name and whole[0].score >= found[0].score and not unit_cell)):
+    if whole and (
+        not found
+        or whole[0].score > found[0].score + 0.1
+        or (bare != name and whole[0].score >= found[0].score and not unit_cell)
+    ):
         found = whole
     if not found and source:
         found, _ = meanings(source)
@@ -184,12 +194,17 @@ def _with_unit(
                         quantity=other, unit=unit, score=meaning.score, found_by="name and unit",
                         reason=f"{meaning.reason}; its unit {unit_text} makes it {other}",
                     )  # fmt: skip
-        mismatch = f"named like {first.quantity}, but its unit '{unit_text}' is not one of {kind_of(first.quantity, declared)}"
+        mismatch = (
+            f"named like {first.quantity}, but its unit '{unit_text}' is not one of {kind_of(first.quantity, declared)}"
+        )
     elif unit_text and not says_nothing(unit_text):
         # a unit row's text that is no unit we know: data may still settle it, but say so
         mismatch = f"its unit '{unit_text}' is not known"
     if mismatch:
-        return column.with_(problem=mismatch, question=f"Which quantity is it, and in which unit? ({', '.join(m.quantity for m in found[:3])})")
+        return column.with_(
+            problem=mismatch,
+            question=f"Which quantity is it, and in which unit? ({', '.join(m.quantity for m in found[:3])})",
+        )
     if len(found) > 1 and found[1].score >= found[0].score:
         names = tuple(m.quantity for m in found if m.score >= found[0].score)
         return column.with_(
@@ -205,24 +220,44 @@ def _with_unit(
         )  # fmt: skip
     if first.quantity in declared:
         return column.with_(
-            quantity=first.quantity, units=units, score=first.score, reason=first.reason, found_by="name and data", declared=True
+            quantity=first.quantity,
+            units=units,
+            score=first.score,
+            reason=first.reason,
+            found_by="name and data",
+            declared=True,
         )
     return _open(column, first).with_(
-        quantity=first.quantity, units=units, score=first.score, reason=f"{first.reason}; no unit is written", found_by="name and data"
+        quantity=first.quantity,
+        units=units,
+        score=first.score,
+        reason=f"{first.reason}; no unit is written",
+        found_by="name and data",
     )
 
 
 def _open(column: Column, meaning: Meaning) -> Column:
     """A speed that does not say which: kept as a candidate, with the question."""
     if meaning.open:
-        return column.with_(alternatives=("indicated_airspeed", "ground_speed"), question="Is it indicated airspeed, true airspeed or ground speed?")
+        return column.with_(
+            alternatives=("indicated_airspeed", "ground_speed"),
+            question="Is it indicated airspeed, true airspeed or ground speed?",
+        )
     return column
 
 
 def _state(column: Column, meaning: Meaning, stated: object, unit_text: str) -> Column:
-    if stated is not None and "state" not in getattr(stated, "units", ()) and "%" not in getattr(stated, "units", ()) and "deg" not in getattr(stated, "units", ()) and "1" not in getattr(stated, "units", ()):
+    if (
+        stated is not None
+        and "state" not in getattr(stated, "units", ())
+        and "%" not in getattr(stated, "units", ())
+        and "deg" not in getattr(stated, "units", ())
+        and "1" not in getattr(stated, "units", ())
+    ):
         return column.with_(problem=f"named like {meaning.quantity}, but its unit '{unit_text}' is none of a state")
-    return column.with_(quantity=meaning.quantity, unit="state", score=meaning.score, reason=meaning.reason, found_by="name")
+    return column.with_(
+        quantity=meaning.quantity, unit="state", score=meaning.score, reason=meaning.reason, found_by="name"
+    )
 
 
 def _unit_of_cells(cells: Sequence[str]) -> tuple[str, str]:
@@ -260,13 +295,17 @@ def _own_words(text: str) -> tuple[frozenset[str], str]:
             continue
         words.append({"t": "temperature", "p": "pressure", "rpm": "speed"}.get(word, WORDS.get(word, word)))
     # every engine quantity is of an engine; every reading is a value
-    kept = frozenset(w for w in words if w not in ("engine", "e", "number", "cylinder") and not (w in SIDE and w not in ("a",)))
+    kept = frozenset(
+        w for w in words if w not in ("engine", "e", "number", "cylinder") and not (w in SIDE and w not in ("a",))
+    )
     return kept or frozenset(words), "_".join(numbers)
 
 
 _LONG_FORMS = {
     frozenset({"egt"}): frozenset({"exhaust", "gas", "temperature"}),
-    frozenset({"cht"}): frozenset({"heading", "temperature"}),  # 'head' reads as heading, 'cylinder' goes without saying
+    frozenset({"cht"}): frozenset(
+        {"heading", "temperature"}
+    ),  # 'head' reads as heading, 'cylinder' goes without saying
     frozenset({"itt"}): frozenset({"interstage", "turbine", "temperature"}),
     frozenset({"tit"}): frozenset({"turbine", "inlet", "temperature"}),
     frozenset({"map"}): frozenset({"manifold", "pressure"}),
@@ -287,7 +326,12 @@ def _declared(bare: str, name: str, declared: Mapping[str, str]) -> Meaning | No
         for quantity in declared:
             own, own_number = _own_words(quantity)
             if _same_words(words, own) and (number == own_number or not own_number):
-                return Meaning(quantity, 0.95, f"named like the declared quantity {quantity}", side=(number,) if number != own_number else ())
+                return Meaning(
+                    quantity,
+                    0.95,
+                    f"named like the declared quantity {quantity}",
+                    side=(number,) if number != own_number else (),
+                )
     return None
 
 
@@ -303,7 +347,9 @@ def indexed(columns: Sequence[Column], declared: dict[str, str]) -> list[Column]
         if column.problem or column.ignored or column.found_by == "channels file":
             continue
         if quantity in _ENGINE_ROWS or (quantity in declared and quantity not in QUANTITIES):
-            by_quantity.setdefault(quantity, []).append((_own_words(split_unit(column.name)[0] or column.name)[1], column))
+            by_quantity.setdefault(quantity, []).append(
+                (_own_words(split_unit(column.name)[0] or column.name)[1], column)
+            )
     for quantity, members in by_quantity.items():
         numbers = [number or _own_words(column.name)[1] for number, column in members]
         if len(members) < 2 or len(set(numbers)) < len(numbers) or len(members) > 16:
@@ -324,9 +370,31 @@ def tanks(columns: Sequence[Column]) -> list[Column]:
         if column.quantity not in ("fuel_mass", "fuel_volume") or column.problem or column.found_by == "channels file":
             continue
         words = set(words_of(split_unit(column.name)[0]))
-        if words & {"l", "r", "left", "right", "lh", "rh", "aux", "main", "centre", "center", "ctr", "tip", "inner", "outer", "1", "2", "3", "4", "wing"}:
+        if words & {
+            "l",
+            "r",
+            "left",
+            "right",
+            "lh",
+            "rh",
+            "aux",
+            "main",
+            "centre",
+            "center",
+            "ctr",
+            "tip",
+            "inner",
+            "outer",
+            "1",
+            "2",
+            "3",
+            "4",
+            "wing",
+        }:
             out[column.index] = column.with_(
-                quantity=None, problem="one tank's fuel, not all that is on board", question="Which column is the fuel on board?"
+                quantity=None,
+                problem="one tank's fuel, not all that is on board",
+                question="Which column is the fuel on board?",
             )
     return out
 

@@ -53,7 +53,9 @@ def alternatives(evidence: Evidence) -> None:
             _which_speed(evidence, one)
         else:
             kinds = [UNITS[unit].name for unit in column.units]
-            one.problem = f"{', '.join(kinds[:-1])} or {kinds[-1]} cannot be told" if kinds else "what it is cannot be told"
+            one.problem = (
+                f"{', '.join(kinds[:-1])} or {kinds[-1]} cannot be told" if kinds else "what it is cannot be told"
+            )
             one.question = column.question or "Which quantity is it, and in which unit?"
 
 
@@ -63,13 +65,22 @@ def _long(evidence: Evidence, one: Settled) -> None:
     finite = figures[np.isfinite(figures)]
     moves = evidence.grid.rate(one.raw)
     creep = middle(np.abs(moves))
-    if len(finite) and (np.max(np.abs(finite)) > 12.0 or (creep < 2e-3 and np.ptp(finite) < 3.0 and abs(middle(finite)) > 3 * np.ptp(finite))):
-        one.quantity, one.raw.column = "longitude", one.raw.column.with_(quantity="longitude", alternatives=(), units=("deg", "rad"))
+    if len(finite) and (
+        np.max(np.abs(finite)) > 12.0
+        or (creep < 2e-3 and np.ptp(finite) < 3.0 and abs(middle(finite)) > 3 * np.ptp(finite))
+    ):
+        one.quantity, one.raw.column = (
+            "longitude",
+            one.raw.column.with_(quantity="longitude", alternatives=(), units=("deg", "rad")),
+        )
     elif len(finite) and abs(middle(finite)) < 2.0:
         one.quantity = "longitudinal_load_factor"
         one.raw.column = one.raw.column.with_(quantity=one.quantity, alternatives=(), units=("g", "m/s2", "ft/s2"))
     else:
-        one.problem, one.question = "longitudinal acceleration or longitude cannot be told", "Which quantity is it, and in which unit?"
+        one.problem, one.question = (
+            "longitudinal acceleration or longitude cannot be told",
+            "Which quantity is it, and in which unit?",
+        )
 
 
 def _which_speed(evidence: Evidence, one: Settled) -> None:
@@ -189,7 +200,13 @@ def _estimates(evidence: Evidence, one: Settled) -> list[tuple[Array, str, float
         elif at is not None:
             out.append((_calibrated(number, _pressure(at)), "the recorded Mach number and altitude", 0.05, 0.08))
     for other in evidence.all:
-        if other is one or other.open or other.problem or other.quantity not in SPEEDS or other.quantity == "ground_speed":
+        if (
+            other is one
+            or other.open
+            or other.problem
+            or other.quantity not in SPEEDS
+            or other.quantity == "ground_speed"
+        ):
             continue
         speed = evidence.si(other)
         if quantity == other.quantity or {quantity, other.quantity} <= {"indicated_airspeed", "calibrated_airspeed"}:
@@ -231,7 +248,9 @@ def _turning(evidence: Evidence) -> Array | None:
         return None
     angle, rate = np.abs(evidence.si(bank)), np.abs(evidence.si_rate(heading, wraps=True))
     rolling = np.abs(evidence.si_rate(bank))
-    steady = (angle > np.radians(12)) & (angle < np.radians(50)) & (rate > np.radians(0.8)) & (rolling < np.radians(2.0))
+    steady = (
+        (angle > np.radians(12)) & (angle < np.radians(50)) & (rate > np.radians(0.8)) & (rolling < np.radians(2.0))
+    )
     with np.errstate(invalid="ignore", divide="ignore"):
         return np.where(steady, _G * np.tan(angle) / rate, np.nan)
 
@@ -270,15 +289,23 @@ def _angle(evidence: Evidence, one: Settled) -> None:
             one.take(good[0], f"the rate of turn fits a bank in {good[0]}")
         return
     if one.quantity == "pitch_angle":
-        height, speed = evidence.of("pressure_altitude", "geometric_altitude", known=False), evidence.of(*SPEEDS[3::-1], known=False)
+        height, speed = (
+            evidence.of("pressure_altitude", "geometric_altitude", known=False),
+            evidence.of(*SPEEDS[3::-1], known=False),
+        )
         if height is None or speed is None:
             return
         with np.errstate(invalid="ignore", divide="ignore"):
-            path = evidence.grid.rate(height.raw) / np.where(evidence.grid.value(speed.raw) > 0, evidence.grid.value(speed.raw), np.nan)
+            path = evidence.grid.rate(height.raw) / np.where(
+                evidence.grid.value(speed.raw) > 0, evidence.grid.value(speed.raw), np.nan
+            )
         moves, alike, _ = slope(evidence.grid.value(one.raw), path)
         if abs(alike) > 0.5:
             # whatever the units of height and speed, radians give 0.25 to 3.3 and degrees 57 times less
-            one.take("rad" if abs(moves) > 0.12 else "deg", "climb and speed fit a pitch in " + ("rad" if abs(moves) > 0.12 else "deg"))
+            one.take(
+                "rad" if abs(moves) > 0.12 else "deg",
+                "climb and speed fit a pitch in " + ("rad" if abs(moves) > 0.12 else "deg"),
+            )
 
 
 _DERIVATIVE = {"roll_rate": ("bank_angle",), "pitch_rate": ("pitch_angle",), "yaw_rate": ("heading", "track_angle"),
@@ -317,7 +344,12 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
                 return
     climb = evidence.grid.rate(one.raw)
     for other in evidence.all:
-        if other is one or other.open or other.problem or other.quantity not in ("pressure_altitude", "geometric_altitude"):
+        if (
+            other is one
+            or other.open
+            or other.problem
+            or other.quantity not in ("pressure_altitude", "geometric_altitude")
+        ):
             continue
         ratio, alike, _ = origin_slope(evidence.si_rate(other), climb)
         if alike > 0.8:
@@ -330,20 +362,30 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
         ratio, alike, _ = ratio_of(evidence.grid.long_mean(rise.raw), evidence.grid.long_rate(one.raw))
         if abs(alike) > 0.7 and ratio:
             if rise.unit:
-                unit = _decide({u: np.log(abs(ratio) / UNITS[rise.unit].factor * UNITS[u].factor) for u in ("ft", "m")}, 0.3, 0.5)
+                unit = _decide(
+                    {u: np.log(abs(ratio) / UNITS[rise.unit].factor * UNITS[u].factor) for u in ("ft", "m")}, 0.3, 0.5
+                )
                 if unit:
                     one.take(unit, f"the vertical speed fits {unit}")
                     return
             else:
                 # both open: the ratio names the pair, if only one pair has it
-                pairs = {("ft", "ft/min"): 1 / 60, ("m", "m/s"): 1.0, ("m", "ft/min"): 0.3048 / 60, ("ft", "m/s"): 1 / 0.3048}
+                pairs = {
+                    ("ft", "ft/min"): 1 / 60,
+                    ("m", "m/s"): 1.0,
+                    ("m", "ft/min"): 0.3048 / 60,
+                    ("ft", "m/s"): 1 / 0.3048,
+                }
                 near = _decide({f"{a} {b}": np.log(abs(ratio) / value) for (a, b), value in pairs.items()}, 0.3, 0.5)
                 if near in ("ft ft/min", "m ft/min", "ft m/s"):
                     unit, other_unit = near.split(" ")
                     one.take(unit, f"altitude and vertical speed fit only as {unit} and {other_unit}")
                     rise.take(other_unit, f"altitude and vertical speed fit only as {unit} and {other_unit}")
                     return
-    slow, fast = evidence.of("indicated_airspeed", "calibrated_airspeed", known=False), evidence.of("true_airspeed", known=False)
+    slow, fast = (
+        evidence.of("indicated_airspeed", "calibrated_airspeed", known=False),
+        evidence.of("true_airspeed", known=False),
+    )
     same_unit = slow is not None and fast is not None and (slow.unit == fast.unit)
     if same_unit and slow is not None and fast is not None and one.quantity != "height_above_ground":
         a, b = evidence.grid.value(slow.raw), evidence.grid.value(fast.raw)
@@ -408,7 +450,11 @@ def _air_temperature(evidence: Evidence, one: Settled) -> None:
     figures, standard = evidence.grid.value(one.raw), _temperature(evidence.si(height))
     off = {unit: figures * UNITS[unit].factor + UNITS[unit].offset - standard for unit in ("degC", "degF")}
     # no air is 40 K off the standard at every height, and none is 60 K off anywhere
-    good = [u for u, gap in off.items() if np.isfinite(gap).any() and abs(middle(gap)) < 35.0 and np.nanmax(np.abs(gap)) < 55.0]
+    good = [
+        u
+        for u, gap in off.items()
+        if np.isfinite(gap).any() and abs(middle(gap)) < 35.0 and np.nanmax(np.abs(gap)) < 55.0
+    ]
     if len(good) == 1:
         one.take(good[0], f"only {good[0]} lies near the air of that height")
         return
@@ -425,7 +471,13 @@ def _by_ground_pressure(evidence: Evidence, one: Settled) -> None:
         return
     top = float(np.max(finite))
     # at the aerodrome, from sea level to some 3,000 m
-    for unit, low, high in (("Pa", 68e3, 107e3), ("hPa", 680.0, 1075.0), ("kPa", 68.0, 107.0), ("inHg", 20.0, 31.9), ("psi", 9.9, 15.6)):
+    for unit, low, high in (
+        ("Pa", 68e3, 107e3),
+        ("hPa", 680.0, 1075.0),
+        ("kPa", 68.0, 107.0),
+        ("inHg", 20.0, 31.9),
+        ("psi", 9.9, 15.6),
+    ):
         if low <= top <= high:
             one.take(unit, f"its highest figure of {top:.4g} is air pressure near the ground in {unit}")
             return
@@ -459,7 +511,11 @@ def last_resort(evidence: Evidence, one: Settled) -> None:
         family = ("latitude", "longitude")
     else:
         return
-    known = {other.unit.split("/")[0]: other for other in evidence.all if other.quantity in family and other.unit and not other.problem}
+    known = {
+        other.unit.split("/")[0]: other
+        for other in evidence.all
+        if other.quantity in family and other.unit and not other.problem
+    }
     if len(known) == 1:
         unit, witness = next(iter(known.items()))
         unit = unit + ("/s" if one.quantity in RATES else "")

@@ -15,7 +15,12 @@ def settle(evidence: Evidence) -> None:
     """Signs of angles and rates first, since others lean on them; then the discrete channels."""
     _bank(evidence)
     _pitch(evidence)
-    for rate, angle in (("roll_rate", "bank_angle"), ("pitch_rate", "pitch_angle"), ("yaw_rate", "heading"), ("turn_rate", "heading")):
+    for rate, angle in (
+        ("roll_rate", "bank_angle"),
+        ("pitch_rate", "pitch_angle"),
+        ("yaw_rate", "heading"),
+        ("turn_rate", "heading"),
+    ):
         for one in _all(evidence, rate):
             _rate(evidence, one, angle)
     for one in _all(evidence, "vertical_speed"):

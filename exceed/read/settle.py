@@ -13,9 +13,9 @@ from exceed.core.recording import Array, Channel, Index, Rejected, Unresolved, f
 from exceed.core.units import UNITS
 from exceed.read import evidence, probe, quality, rates
 from exceed.read.instants import Instants
+from exceed.read.look import Column, Survey
 from exceed.read.raw import OddCells, RawChannel
 from exceed.read.recognise import QUESTIONS, kind_of
-from exceed.read.look import Column, Survey
 
 
 @dataclass(slots=True)
@@ -176,7 +176,11 @@ def _series(one: evidence.Settled, quantity: str, time: Instants) -> quality.Ser
 
 
 def _channel(
-    one: evidence.Settled, series: quality.Series, time: Instants, sensor: tuple[float, float] | None, others: Mapping[str, quality.Series]
+    one: evidence.Settled,
+    series: quality.Series,
+    time: Instants,
+    sensor: tuple[float, float] | None,
+    others: Mapping[str, quality.Series],
 ) -> tuple[Channel, list[Rejected]]:
     raw, column = one.raw, one.raw.column
     checked = quality.check(series, sensor, others)
@@ -185,8 +189,14 @@ def _channel(
         at = series.at()
         for first, last, samples, reason, extreme in checked.rejected:
             rows = (first, last) if raw.rows is None else (int(raw.rows[first]), int(raw.rows[last]))
-            rejected.append(Rejected(series.quantity, column.name, float(at[first]), float(at[last]), samples, reason, extreme, rows))
-    expected = len(time.time) / max(1, round(series.interval / median_interval(time.time))) if len(time.time) > 1 else 1.0
+            rejected.append(
+                Rejected(
+                    series.quantity, column.name, float(at[first]), float(at[last]), samples, reason, extreme, rows
+                )
+            )
+    expected = (
+        len(time.time) / max(1, round(series.interval / median_interval(time.time))) if len(time.time) > 1 else 1.0
+    )
     share = min(1.0, (len(series.values) - checked.lost) / max(1.0, expected))
     return Channel(
         quantity=series.quantity, column=column.name if not column.group else f"{column.name} (+{len(column.group) - 1})",
@@ -212,7 +222,16 @@ def _not_numbers(column: Column, places: Any, texts: list[str], name: str, time:
     first, last = first * time.fold, last * time.fold
     last = min(last, len(time.time) - 1)
     first = min(first, last)
-    return Rejected(column.quantity or "", name, float(time.time[first]), float(time.time[last]), len(places), "not_a_number", None, (first, last))
+    return Rejected(
+        column.quantity or "",
+        name,
+        float(time.time[first]),
+        float(time.time[last]),
+        len(places),
+        "not_a_number",
+        None,
+        (first, last),
+    )
 
 
 def faulty(survey: Survey, time: Instants) -> list[tuple[str, float, float, str]]:
@@ -226,7 +245,9 @@ def faulty(survey: Survey, time: Instants) -> list[tuple[str, float, float, str]
         start = _moment(getattr(entry, "start", None), time, first)
         end = _moment(getattr(entry, "end", None), time, last)
         if end > first - 1e-9 and start < last + 1e-9:
-            out.append((column.quantity, max(start, first), min(end, last), str(getattr(entry, "reason", "") or "faulty")))
+            out.append(
+                (column.quantity, max(start, first), min(end, last), str(getattr(entry, "reason", "") or "faulty"))
+            )
     return out
 
 

@@ -88,7 +88,9 @@ def days_of(year: Whole, month: Whole, day: Whole) -> Whole:
     of_year = (153 * (month + np.where(month > 2, -3, 9)) + 2) // 5 + day - 1
     out = era * 146097 + of_era * 365 + of_era // 4 - of_era // 100 + of_year - 719468
     leap = (year % 4 == 0) & ((year % 100 != 0) | (year % 400 == 0))
-    length = np.array([0, 31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31])[np.clip(month, 0, 12)] + (leap & (month == 2))
+    length = np.array([0, 31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31])[np.clip(month, 0, 12)] + (
+        leap & (month == 2)
+    )
     good = (month >= 1) & (month <= 12) & (day >= 1) & (day <= length)
     return np.where(good, out, UNKNOWN).astype(np.int64)
 
@@ -107,7 +109,11 @@ def _bytes_of(array: object) -> tuple[NDArray[np.uint8], Whole, NDArray[np.bool_
         array = array.cast(pa.large_string())  # type: ignore[attr-defined]
     _, ends, data = array.buffers()  # type: ignore[attr-defined]
     count, shift = len(array), array.offset  # type: ignore[arg-type, attr-defined]
-    offsets = np.frombuffer(ends, dtype=np.int64)[shift : shift + count + 1] if ends is not None else np.zeros(count + 1, np.int64)
+    offsets = (
+        np.frombuffer(ends, dtype=np.int64)[shift : shift + count + 1]
+        if ends is not None
+        else np.zeros(count + 1, np.int64)
+    )
     raw = np.frombuffer(data, dtype=np.uint8) if data is not None and data.size else np.zeros(0, np.uint8)
     valid = np.asarray(array.is_valid().to_numpy(zero_copy_only=False), dtype=bool)  # type: ignore[attr-defined]
     return raw, offsets, valid
@@ -213,7 +219,11 @@ def _fill(out: Stamps, rows: Whole, letters: NDArray[np.uint8], match: re.Match[
         out.zoned = True
         if zone[0] in "+-":
             start, end = spans["zone"]
-            figures = [letters[:, place].astype(np.int64) - 48 for place in range(start + 1, end) if chr(letters[0, place]) != ":"]
+            figures = [
+                letters[:, place].astype(np.int64) - 48
+                for place in range(start + 1, end)
+                if chr(letters[0, place]) != ":"
+            ]
             hours = figures[0] * 10 + figures[1] if len(figures) > 1 else figures[0]
             minutes = figures[2] * 10 + figures[3] if len(figures) > 3 else np.zeros(len(rows), np.int64)
             sign = -1 if zone[0] == "-" else 1
@@ -231,9 +241,19 @@ def date_order(first: Whole, second: Whole) -> str | None:
         return "mdy"
     # a log that runs past midnight steps its day by one
     step_first, step_second = np.diff(first), np.diff(second)
-    if step_first.any() and not step_second.any() and set(np.unique(step_first[step_first != 0])) == {1} and np.count_nonzero(step_first) == 1:
+    if (
+        step_first.any()
+        and not step_second.any()
+        and set(np.unique(step_first[step_first != 0])) == {1}
+        and np.count_nonzero(step_first) == 1
+    ):
         return "dmy"
-    if step_second.any() and not step_first.any() and set(np.unique(step_second[step_second != 0])) == {1} and np.count_nonzero(step_second) == 1:
+    if (
+        step_second.any()
+        and not step_first.any()
+        and set(np.unique(step_second[step_second != 0])) == {1}
+        and np.count_nonzero(step_second) == 1
+    ):
         return "mdy"
     return None
 

@@ -8,14 +8,47 @@ from collections.abc import Sequence
 from exceed.read.cells import is_missing
 from exceed.read.names import words_of
 
-_TRUE = frozenset("1 1.0 on true yes y t active act set high hi".split())
-_FALSE = frozenset("0 0.0 off false no n f inactive reset low clear".split())
+_TRUE = frozenset(["1", "1.0", "on", "true", "yes", "y", "t", "active", "act", "set", "high", "hi"])
+_FALSE = frozenset(["0", "0.0", "off", "false", "no", "n", "f", "inactive", "reset", "low", "clear"])
 
 # words that name the state itself, whatever the heading
 _OWN: dict[str, tuple[frozenset[str], frozenset[str]]] = {
     "gear_down": (
-        frozenset(["down", "dn", "ext", "extended", "dnlk", "locked", "down locked", "dn lk", "dn locked", "gear down", "lowered", "d"]),
-        frozenset(["up", "ret", "retr", "retracted", "uplk", "up locked", "transit", "in transit", "trans", "moving", "gear up", "u", "not down", "unlocked", "not locked"]),
+        frozenset(
+            [
+                "down",
+                "dn",
+                "ext",
+                "extended",
+                "dnlk",
+                "locked",
+                "down locked",
+                "dn lk",
+                "dn locked",
+                "gear down",
+                "lowered",
+                "d",
+            ]
+        ),
+        frozenset(
+            [
+                "up",
+                "ret",
+                "retr",
+                "retracted",
+                "uplk",
+                "up locked",
+                "transit",
+                "in transit",
+                "trans",
+                "moving",
+                "gear up",
+                "u",
+                "not down",
+                "unlocked",
+                "not locked",
+            ]
+        ),
     ),
     "airbrakes_out": (
         frozenset(["out", "ext", "extended", "open", "deployed", "depl", "full", "half", "opened"]),
@@ -29,7 +62,10 @@ _OWN: dict[str, tuple[frozenset[str], frozenset[str]]] = {
         frozenset(["warn", "warning", "stall", "alert", "shake", "shaker", "alarm", "stall warning"]),
         frozenset(["norm", "normal", "ok", "none", "no stall", "quiet", "no warning", "nowarn"]),
     ),
-    "on_tow": (frozenset(["tow", "on tow", "attached", "hooked", "towed"]), frozenset(["free", "released", "free flight", "release"])),
+    "on_tow": (
+        frozenset(["tow", "on tow", "attached", "hooked", "towed"]),
+        frozenset(["free", "released", "free flight", "release"]),
+    ),
 }
 # words in a heading that turn the figure's meaning round
 _INVERTS: dict[str, frozenset[str]] = {
@@ -42,7 +78,24 @@ _INVERTS: dict[str, frozenset[str]] = {
 # headings whose figures say by themselves what 1 means
 _SAYS: dict[str, frozenset[str]] = {
     "gear_down": frozenset(["down", "dn", "extended", "ext", "dnlk", "locked", "lock", "lk"]),
-    "airbrakes_out": frozenset(["out", "extended", "ext", "deployed", "open", "airbrake", "airbrakes", "speedbrake", "speedbrakes", "spoiler", "spoilers", "spdbrk", "brake", "brakes"]),
+    "airbrakes_out": frozenset(
+        [
+            "out",
+            "extended",
+            "ext",
+            "deployed",
+            "open",
+            "airbrake",
+            "airbrakes",
+            "speedbrake",
+            "speedbrakes",
+            "spoiler",
+            "spoilers",
+            "spdbrk",
+            "brake",
+            "brakes",
+        ]
+    ),
     "weight_on_wheels": frozenset(["wow", "ground", "gnd", "wheels", "squat", "weight", "oleo", "compressed"]),
     "stall_warning": frozenset(["stall", "shaker", "stallwarn", "warning"]),
     "on_tow": frozenset(["tow", "towing"]),
@@ -53,11 +106,23 @@ def heading_sense(quantity: str, name: str) -> int:
     """+1: a figure of 1 means our 1; -1: it means our 0; 0: the heading does not say."""
     words = set(words_of(name))
     if quantity == "weight_on_wheels":
-        if words & {"airborne", "inflight"} or ("air" in words and not words & {"gnd", "ground", "grnd", "grd"}) or (
-            "flight" in words
-        ) or ("off" in words and words & {"wheels", "weight"}):
+        if (
+            words & {"airborne", "inflight"}
+            or ("air" in words and not words & {"gnd", "ground", "grnd", "grd"})
+            or ("flight" in words)
+            or ("off" in words and words & {"wheels", "weight"})
+        ):
             return -1
-        if ("air" in words or words & {"airgnd", "gndair", "airgrnd"}) and words & {"gnd", "ground", "airgnd", "gndair", "grnd", "airgrnd", "grd", "air"}:
+        if ("air" in words or words & {"airgnd", "gndair", "airgrnd"}) and words & {
+            "gnd",
+            "ground",
+            "airgnd",
+            "gndair",
+            "grnd",
+            "airgrnd",
+            "grd",
+            "air",
+        }:
             return 0
     if words & _INVERTS.get(quantity, frozenset()) and not words & {"down", "dn", "out"}:
         return -1

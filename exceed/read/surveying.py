@@ -8,10 +8,10 @@ from collections.abc import Mapping, Sequence
 from exceed.core.units import AIRSPEED_UNITS
 from exceed.read.clock import find_clock, stated_period
 from exceed.read.container import Source, open_source
+from exceed.read.look import Column, Survey
 from exceed.read.rates import groups
 from exceed.read.recognise import columns_of, indexed, is_clock, tanks
 from exceed.read.stamps import ClockPlan
-from exceed.read.look import Column, Survey
 from exceed.read.table import layout, registration_in, serial_in
 
 
@@ -43,7 +43,9 @@ def survey(
     cells = [[row[k] if k < len(row) else "" for row in found.sample] for k in range(found.width)]
     columns = columns_of(found.names, found.units, found.sources, cells, known)
     registration, serial = registration_in(found.facts), serial_in(found.facts)
-    return assemble(source, found, columns, cells, found.facts, registration, serial, channels, known, found.decimal, found.notes)
+    return assemble(
+        source, found, columns, cells, found.facts, registration, serial, channels, known, found.decimal, found.notes
+    )
 
 
 def _address(path: object) -> tuple[str, str]:
@@ -79,20 +81,42 @@ def assemble(
     more: list[str] = []
     if channels is not None:
         columns, more = apply_channels(columns, channels, declared, source.shown)
-    plan = (told_clock(columns, channels, cells, decimal, source.shown, stated_period(facts)) if channels is not None else None) or clock or find_clock(
-        columns, facts, decimal, cells
+    plan = (
+        (
+            told_clock(columns, channels, cells, decimal, source.shown, stated_period(facts))
+            if channels is not None
+            else None
+        )
+        or clock
+        or find_clock(columns, facts, decimal, cells)
     )
-    columns = [c.with_(quantity=None, problem="") if c.index in plan.columns or c.index == plan.anchor else c for c in columns]
+    columns = [
+        c.with_(quantity=None, problem="") if c.index in plan.columns or c.index == plan.anchor else c for c in columns
+    ]
     columns = groups(indexed(tanks(columns), declared))
     registration = registration or _in_column(columns, cells)
-    return Survey(source, found, tuple(columns), plan, tuple(facts), registration, serial, channels, declared, rows, (*notes, *more))  # type: ignore[arg-type]
+    return Survey(
+        source,
+        found,
+        tuple(columns),
+        plan,
+        tuple(facts),
+        registration,
+        serial,
+        channels,
+        declared,
+        rows,
+        (*notes, *more),
+    )  # type: ignore[arg-type]
 
 
 def _without_clocks(columns: Sequence[Column]) -> list[Column]:
     """A column of stamps is no quantity, whatever a synonym says; a counter named like one neither."""
     out = []
     for column in columns:
-        if column.form == "stamp" or (is_clock(column) and column.score < 0.9 and column.unit in (None, "s", "ms", "us", "ns", "h", "min")):
+        if column.form == "stamp" or (
+            is_clock(column) and column.score < 0.9 and column.unit in (None, "s", "ms", "us", "ns", "h", "min")
+        ):
             column = column.with_(quantity=None, problem=column.problem or "a column of time", question="")
         out.append(column)
     return out

@@ -93,24 +93,12 @@ WORDS: dict[str, str] = {
 
 # words that only say which sensor, side or system it is
 SIDE = frozenset(
-    "l r left right lh rh capt captain fo pilot copilot main aux primary secondary prim sec adc adc1 adc2 adiru irs ahrs ads "
-    "air_data efis dfdr fdr qar body axis cg c g sensor sns system sys aircraft ac plane a recorded rec value val measured meas "
-    "data actual act current cur raw std qne corrected corr filtered filt filtd smoothed of the in on at no nr number lo hi "
-    "channel chan ch signal sig mean_sea_level msl indicator disc discrete state status flag input fine coarse "
-    "inertial calibrated".split()
+    ["l", "r", "left", "right", "lh", "rh", "capt", "captain", "fo", "pilot", "copilot", "main", "aux", "primary", "secondary", "prim", "sec", "adc", "adc1", "adc2", "adiru", "irs", "ahrs", "ads", "air_data", "efis", "dfdr", "fdr", "qar", "body", "axis", "cg", "c", "g", "sensor", "sns", "system", "sys", "aircraft", "ac", "plane", "a", "recorded", "rec", "value", "val", "measured", "meas", "data", "actual", "act", "current", "cur", "raw", "std", "qne", "corrected", "corr", "filtered", "filt", "filtd", "smoothed", "of", "the", "in", "on", "at", "no", "nr", "number", "lo", "hi", "channel", "chan", "ch", "signal", "sig", "mean_sea_level", "msl", "indicator", "disc", "discrete", "state", "status", "flag", "input", "fine", "coarse", "inertial", "calibrated"]
 )
 
 # words that make a name something else: a setting, a statistic, a system's own pressure
 REFUSED = frozenset(
-    "selected sel slct target tgt commanded command cmd cmnd bug mcp fcu preset limit lim max maximum min minimum avg average "
-    "std_dev stddev peak trend error err valid validity fail failure fault test spare desired demand dmd reference ref "
-    "cabin cab manifold hydraulic hyd brake wind wnd gust crosswind headwind autopilot ap fd director trim tab elevator elev "
-    "aileron ail rudder rud stick yoke column wheel_pos pedal throttle lever handle hdl nav dme vor ils gs_dev glideslope "
-    "localizer loc deviation dev waypoint wpt distance dist bearing brg magvar variation hdop vdop sats satellites "
-    "battery bat volt volts voltage amps current_a bus vibration vib humidity dew dewpoint stby_flag selected_alt tape mode armed "
-    "engaged bleed valve cowl icing ice pitot_heat heat transponder xpdr squawk radio1 com freq frequency decision dh mda "
-    "accuracy hacc vacc sacc hfom vfom pdop tdop counter crc checksum used flown economy endurance range eta ete "
-    "sigma uncertainty quality qual age cost slat slats ".split()
+    ["selected", "sel", "slct", "target", "tgt", "commanded", "command", "cmd", "cmnd", "bug", "mcp", "fcu", "preset", "limit", "lim", "max", "maximum", "min", "minimum", "avg", "average", "std_dev", "stddev", "peak", "trend", "error", "err", "valid", "validity", "fail", "failure", "fault", "test", "spare", "desired", "demand", "dmd", "reference", "ref", "cabin", "cab", "manifold", "hydraulic", "hyd", "brake", "wind", "wnd", "gust", "crosswind", "headwind", "autopilot", "ap", "fd", "director", "trim", "tab", "elevator", "elev", "aileron", "ail", "rudder", "rud", "stick", "yoke", "column", "wheel_pos", "pedal", "throttle", "lever", "handle", "hdl", "nav", "dme", "vor", "ils", "gs_dev", "glideslope", "localizer", "loc", "deviation", "dev", "waypoint", "wpt", "distance", "dist", "bearing", "brg", "magvar", "variation", "hdop", "vdop", "sats", "satellites", "battery", "bat", "volt", "volts", "voltage", "amps", "current_a", "bus", "vibration", "vib", "humidity", "dew", "dewpoint", "stby_flag", "selected_alt", "tape", "mode", "armed", "engaged", "bleed", "valve", "cowl", "icing", "ice", "pitot_heat", "heat", "transponder", "xpdr", "squawk", "radio1", "com", "freq", "frequency", "decision", "dh", "mda", "accuracy", "hacc", "vacc", "sacc", "hfom", "vfom", "pdop", "tdop", "counter", "crc", "checksum", "used", "flown", "economy", "endurance", "range", "eta", "ete", "sigma", "uncertainty", "quality", "qual", "age", "cost", "slat", "slats"]
 )
 
 Phrase = tuple[str, str, float]

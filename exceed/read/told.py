@@ -11,8 +11,8 @@ from exceed.core.units import AIRSPEED_UNITS, UNITS
 from exceed.errors import LogError, Problem
 from exceed.read.cells import is_missing
 from exceed.read.clock import _numbers
-from exceed.read.stamps import DATE, FULL, TIME, ClockPlan, zone_offset
 from exceed.read.look import Column
+from exceed.read.stamps import DATE, FULL, TIME, ClockPlan, zone_offset
 
 # which words of `positive` are the quantity's own sense; their opposites turn the sign
 OPPOSITE = {"down": "up", "aft": "forward", "left": "right"}
@@ -44,7 +44,10 @@ def apply_channels(
         found = matching(out, entry.column)
         if not found:
             near = difflib.get_close_matches(entry.column, [c.name for c in out], n=1)
-            notes.append(f"the channels file names column '{entry.column}', which is not in the log" + (f"; it has '{near[0]}'" if near else ""))
+            notes.append(
+                f"the channels file names column '{entry.column}', which is not in the log"
+                + (f"; it has '{near[0]}'" if near else "")
+            )
             continue
         column = found[0]
         unit = getattr(entry, "unit", None) or None
@@ -68,7 +71,9 @@ def apply_channels(
         taken.add(quantity)
     for name in getattr(channels, "ignore", None) or ():
         for column in matching(out, name):
-            out[column.index] = out[column.index].with_(ignored=True, quantity=None, problem="ignored by the channels file", question="")
+            out[column.index] = out[column.index].with_(
+                ignored=True, quantity=None, problem="ignored by the channels file", question=""
+            )
     return out, notes
 
 
@@ -83,7 +88,12 @@ def _si(accuracy: Any) -> float | None:
 
 
 def told_clock(
-    columns: Sequence[Column], channels: Any, cells: Sequence[Sequence[str]], decimal: str, shown: str, period: float | None = None
+    columns: Sequence[Column],
+    channels: Any,
+    cells: Sequence[Sequence[str]],
+    decimal: str,
+    shown: str,
+    period: float | None = None,
 ) -> ClockPlan | None:
     """The clock that the channels file names."""
     clock = getattr(channels, "clock", None)
@@ -120,9 +130,13 @@ def told_clock(
                          roles=(role,), notes=("the clock is the channels file's",))  # fmt: skip
     if len(places) == 1:
         some = [cell for cell in cells[places[0]] if not is_missing(cell)]
-        full = sum(bool(FULL.fullmatch(cell.strip())) for cell in some) >= sum(bool(TIME.fullmatch(cell.strip())) for cell in some)
+        full = sum(bool(FULL.fullmatch(cell.strip())) for cell in some) >= sum(
+            bool(TIME.fullmatch(cell.strip())) for cell in some
+        )
         roles: tuple[str, ...] = ("full",) if full else ("time",)
-        made = ClockPlan("iso" if full else "time_of_day", tuple(places), zone=zone, offset=offset, typed="text", roles=roles)
+        made = ClockPlan(
+            "iso" if full else "time_of_day", tuple(places), zone=zone, offset=offset, typed="text", roles=roles
+        )
         return made.with_(notes=("the clock is the channels file's",))
     first = [cell.strip() for cell in cells[places[0]] if not is_missing(cell)]
     if first and not DATE.fullmatch(first[0]) and TIME.fullmatch(first[0]):

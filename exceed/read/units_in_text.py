@@ -227,8 +227,8 @@ def split_unit(name: str) -> tuple[str, str]:
                 key = plain(joined)
                 if (
                     joined[0].isdigit()
-                    or key in ("1", "-", "m", "c", "f", "k", "g's", "l", "h", "in", "s", "g", "min")
-                    and count > 1
+                    or (key in ("1", "-", "m", "c", "f", "k", "g's", "l", "h", "in", "s", "g", "min")
+                    and count > 1)
                 ):
                     continue
                 found = unit_in(joined)

@@ -6,13 +6,13 @@ from functools import lru_cache
 from pathlib import Path
 
 import numpy as np
-
-from exceed.core.recording import Recording
-from exceed.read import read_log
 from scenario import manoeuvres as do
 from scenario.airframes import FENWICK
 from scenario.dialects import Truth, truth_from_flight
 from scenario.flight import Flight, fly
+
+from exceed.core.recording import Recording
+from exceed.read import read_log
 
 NAMES = [
     "load_factor", "indicated_airspeed", "pressure_altitude", "bank_angle", "pitch_angle", "heading", "roll_rate", "pitch_rate",
@@ -72,7 +72,9 @@ def rows(count: int = 200, step: float = 0.125) -> list[tuple[float, float, floa
     ]  # fmt: skip
 
 
-def simple(count: int = 200, heading: str = "time [s],NZ [g],IAS [kt],PALT [ft]", stamps: list[str] | None = None) -> str:
+def simple(
+    count: int = 200, heading: str = "time [s],NZ [g],IAS [kt],PALT [ft]", stamps: list[str] | None = None
+) -> str:
     """A plain log; `stamps` replace the time's cells."""
     lines = [heading]
     for k, (when, load, speed, height) in enumerate(rows(count)):

@@ -7,9 +7,9 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from read.made import log, simple
 
 from exceed.errors import LogError
-from read.made import log, simple
 
 UTC = datetime.UTC
 START = datetime.datetime(2031, 5, 2, 9, 2, 11, tzinfo=UTC)
@@ -47,7 +47,15 @@ def test_absolute_stamps_of_many_forms(tmp_path: Path, heading: str, cells: list
 
 @pytest.mark.parametrize(
     ("heading", "factor"),
-    [("time [s]", 1.0), ("Elapsed (ms)", 1e3), ("t_us", 1e6), ("TIME", 1e3), ("Elapsed", 1e6), ("time_min", 1 / 60), ("time_s", 1.0)],
+    [
+        ("time [s]", 1.0),
+        ("Elapsed (ms)", 1e3),
+        ("t_us", 1e6),
+        ("TIME", 1e3),
+        ("Elapsed", 1e6),
+        ("time_min", 1 / 60),
+        ("time_s", 1.0),
+    ],
 )
 def test_elapsed_time_in_its_unit(tmp_path: Path, heading: str, factor: float) -> None:
     whole = factor > 1
@@ -59,7 +67,9 @@ def test_elapsed_time_in_its_unit(tmp_path: Path, heading: str, factor: float) -
 
 
 def test_zone_offsets_are_taken_off(tmp_path: Path) -> None:
-    recording = log(tmp_path, simple(heading="t,NZ [g],IAS [kt],PALT [ft]", stamps=stamps("%Y-%m-%dT%H:%M:%S.@@@+05:30")))
+    recording = log(
+        tmp_path, simple(heading="t,NZ [g],IAS [kt],PALT [ft]", stamps=stamps("%Y-%m-%dT%H:%M:%S.@@@+05:30"))
+    )
     assert recording.clock.start == pytest.approx(START.timestamp() - 5.5 * 3600)
 
 
@@ -79,7 +89,8 @@ def test_no_zone_is_said(tmp_path: Path) -> None:
 def split_log(dates: list[str], times: list[str], extra: str = "", cells: list[str] | None = None) -> str:
     heading = f"Date,Time{extra},NZ [g]"
     lines = [heading] + [
-        f"{dates[k]},{times[k]}{',' + cells[k] if cells else ''},{1 + 0.2 * np.sin(k / 9):.3f}" for k in range(len(dates))
+        f"{dates[k]},{times[k]}{',' + cells[k] if cells else ''},{1 + 0.2 * np.sin(k / 9):.3f}"
+        for k in range(len(dates))
     ]
     return "\n".join(lines) + "\n"
 
@@ -134,7 +145,9 @@ def test_time_of_day_alone_is_not_absolute(tmp_path: Path) -> None:
 
 def test_time_of_day_with_the_preambles_date_is_absolute_and_passes_midnight(tmp_path: Path) -> None:
     begin = datetime.datetime(2031, 5, 2, 23, 59, 50, tzinfo=UTC)
-    text = "# Date: 2031-05-02\n" + simple(heading="TIME,NZ [g],IAS [kt],PALT [ft]", stamps=stamps("%H:%M:%S.@@@", start=begin))
+    text = "# Date: 2031-05-02\n" + simple(
+        heading="TIME,NZ [g],IAS [kt],PALT [ft]", stamps=stamps("%H:%M:%S.@@@", start=begin)
+    )
     recording = log(tmp_path, text)
     assert recording.clock.start == pytest.approx(begin.timestamp())
     assert np.allclose(recording.time, np.arange(200) / 8)
@@ -165,7 +178,7 @@ def test_a_reset_starts_a_new_stretch_behind_a_seam(tmp_path: Path) -> None:
     cells = [f"{k * 0.125:.3f}" for k in range(120)] + [f"{k * 0.125:.3f}" for k in range(80)]
     recording = log(tmp_path, simple(stamps=cells))
     assert recording.clock.resets == 1
-    (start, end), = recording.seams
+    ((start, end),) = recording.seams
     assert (start, end - start) == (pytest.approx(119 * 0.125), pytest.approx(60.0))
     assert recording.duration == pytest.approx(119 * 0.125 + 79 * 0.125)
     assert np.all(np.diff(recording.time) > 0)
@@ -186,12 +199,20 @@ def test_doubled_stamps_keep_the_first_and_are_listed(tmp_path: Path) -> None:
     recording = log(tmp_path, simple(stamps=cells))
     assert len(recording.time) == 199
     (row,) = recording.rejected
-    assert (row.quantity, row.reason, row.samples, row.start) == ("time", "duplicate_time", 1, pytest.approx(59 * 0.125))
+    assert (row.quantity, row.reason, row.samples, row.start) == (
+        "time",
+        "duplicate_time",
+        1,
+        pytest.approx(59 * 0.125),
+    )
 
 
 @pytest.mark.parametrize(("per", "offset"), [(8, 0), (8, 3), (4, 1), (2, 0), (16, 5)])
 def test_coarse_stamps_are_spread(tmp_path: Path, per: int, offset: int) -> None:
-    cells = [f"12:00:{(k + offset) // per:02d}" if (k + offset) // per < 60 else f"12:01:{(k + offset) // per - 60:02d}" for k in range(200)]
+    cells = [
+        f"12:00:{(k + offset) // per:02d}" if (k + offset) // per < 60 else f"12:01:{(k + offset) // per - 60:02d}"
+        for k in range(200)
+    ]
     recording = log(tmp_path, simple(heading="TIME,NZ [g],IAS [kt],PALT [ft]", stamps=cells))
     assert np.allclose(recording.time, np.arange(200) / per, atol=1e-9)
     assert any("stamps are coarser than the rows" in note for note in recording.clock.notes)
@@ -214,7 +235,10 @@ def test_a_gap_stays_a_gap(tmp_path: Path) -> None:
 
 def test_a_coarse_date_beside_a_fine_counter_anchors_it(tmp_path: Path) -> None:
     lines = ["elapsed [s],UTC,NZ [g]"]
-    lines += [f"{k * 0.125:.3f},{(START + datetime.timedelta(seconds=k // 8)).isoformat().replace('+00:00', 'Z')},{1 + 0.1 * np.sin(k):.3f}" for k in range(200)]
+    lines += [
+        f"{k * 0.125:.3f},{(START + datetime.timedelta(seconds=k // 8)).isoformat().replace('+00:00', 'Z')},{1 + 0.1 * np.sin(k):.3f}"
+        for k in range(200)
+    ]
     recording = log(tmp_path, "\n".join(lines) + "\n")
     assert np.allclose(recording.time, np.arange(200) / 8)
     assert recording.clock.start == pytest.approx(START.timestamp())

@@ -6,7 +6,6 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-
 from read.made import DEG, FT, G0, KT, log, of_flight, si
 
 NZ = si("load_factor")
@@ -43,7 +42,9 @@ def test_increment_with_its_sign_by_what_else_moved(tmp_path: Path, sign: int, w
 
 def test_an_increment_without_unit_takes_it_from_turns(tmp_path: Path) -> None:
     for scale, unit in ((1.0, "g"), (G0, "m/s2")):
-        channel = log(tmp_path, of_flight({"NORM ACC": scale * (NZ - 1.0), "ROLL [deg]": si("bank_angle") / DEG})).channels["load_factor"]
+        channel = log(
+            tmp_path, of_flight({"NORM ACC": scale * (NZ - 1.0), "ROLL [deg]": si("bank_angle") / DEG})
+        ).channels["load_factor"]
         assert (channel.unit, channel.datum) == (unit, "increment")
         assert np.allclose(channel.values, NZ, atol=1e-5)
 
@@ -65,7 +66,10 @@ def test_a_bare_speed_is_never_guessed(tmp_path: Path) -> None:
 
 
 def test_an_airspeed_without_unit_and_witness_is_asked_about(tmp_path: Path) -> None:
-    recording = log(tmp_path, of_flight({"NZ [g]": NZ, "IAS": si("indicated_airspeed") / KT, "PALT [ft]": si("pressure_altitude") / FT}))
+    recording = log(
+        tmp_path,
+        of_flight({"NZ [g]": NZ, "IAS": si("indicated_airspeed") / KT, "PALT [ft]": si("pressure_altitude") / FT}),
+    )
     (row,) = recording.unresolved
     assert (row.column, row.reason, row.question) == (
         "IAS", "kt, km/h, mph or m/s cannot be told", "Is it in kt, km/h, mph or m/s?",
@@ -86,7 +90,9 @@ def test_an_airspeed_follows_from_turns(tmp_path: Path, unit: str, factor: float
 
 @pytest.mark.parametrize(("height", "factor"), [("ft", FT), ("m", 1.0)])
 @pytest.mark.parametrize(("rise", "step"), [("ft/min", FT / 60), ("m/s", 1.0)])
-def test_altitude_and_vertical_speed_settle_each_other(tmp_path: Path, height: str, factor: float, rise: str, step: float) -> None:
+def test_altitude_and_vertical_speed_settle_each_other(
+    tmp_path: Path, height: str, factor: float, rise: str, step: float
+) -> None:
     recording = log(tmp_path, of_flight({"ALT": si("pressure_altitude") / factor, "VS": si("vertical_speed") / step}))
     if (height, rise) == ("m", "m/s"):
         # ft with ft/s would look the same
@@ -121,7 +127,12 @@ def test_signs_that_are_the_other_way_round(tmp_path: Path) -> None:
         "PALT [ft]": si("pressure_altitude") / FT, "ROLL RATE [deg/s]": -si("roll_rate") / DEG, "VS [ft/min]": -si("vertical_speed") / FT * 60,
     }  # fmt: skip
     recording = log(tmp_path, of_flight(columns))
-    for name, sign in (("bank_angle", "left"), ("pitch_angle", "down"), ("roll_rate", "left"), ("vertical_speed", "down")):
+    for name, sign in (
+        ("bank_angle", "left"),
+        ("pitch_angle", "down"),
+        ("roll_rate", "left"),
+        ("vertical_speed", "down"),
+    ):
         channel = recording.channels[name]
         assert channel.sign == sign, name
         assert np.allclose(channel.values, si(name), atol=2e-4), name
@@ -156,7 +167,13 @@ def test_static_pressure_settles_the_altitude(tmp_path: Path) -> None:
 
 def test_weight_on_wheels_the_other_way_round(tmp_path: Path) -> None:
     wheels, speed = si("weight_on_wheels"), si("indicated_airspeed") / KT
-    for name, written in (("WOW", wheels), ("WOW", 1 - wheels), ("AIR/GND", wheels), ("AIR_GND", 1 - wheels), ("AIRBORNE", 1 - wheels)):
+    for name, written in (
+        ("WOW", wheels),
+        ("WOW", 1 - wheels),
+        ("AIR/GND", wheels),
+        ("AIR_GND", 1 - wheels),
+        ("AIRBORNE", 1 - wheels),
+    ):
         recording = log(tmp_path, of_flight({name: written, "IAS [kt]": speed}))
         assert np.array_equal(recording.channels["weight_on_wheels"].values, wheels), name
     recording = log(tmp_path, of_flight({"AIR/GND": wheels}))
@@ -166,7 +183,13 @@ def test_weight_on_wheels_the_other_way_round(tmp_path: Path) -> None:
 def test_gear_by_what_it_shows_on_the_ground(tmp_path: Path) -> None:
     speed = si("indicated_airspeed") / KT
     down = (si("pressure_altitude") < 300.0).astype(float)
-    for name, written in (("GEAR", down), ("GEAR", 1 - down), ("GEAR UP", 1 - down), ("GEAR DOWN", down), ("LDG GEAR [%]", 100 * down)):
+    for name, written in (
+        ("GEAR", down),
+        ("GEAR", 1 - down),
+        ("GEAR UP", 1 - down),
+        ("GEAR DOWN", down),
+        ("LDG GEAR [%]", 100 * down),
+    ):
         recording = log(tmp_path, of_flight({name: written, "IAS [kt]": speed}))
         assert np.array_equal(recording.channels["gear_down"].values, down), name
     recording = log(tmp_path, of_flight({"GEAR": down}))

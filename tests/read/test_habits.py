@@ -6,11 +6,11 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-
-from exceed.read import read_log
 from read.made import NAMES, OURS, si, truth
 from scenario.dialects import Habit, write
 from scenario.habits import HABITS
+
+from exceed.read import read_log
 
 # what no data can tell where no unit is written, and of what a question has to be asked
 UNTOLD = {

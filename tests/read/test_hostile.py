@@ -15,10 +15,10 @@ import numpy as np
 import pyarrow as pa
 import pyarrow.parquet as pq
 import pytest
+from read.made import log, simple, written
 
 from exceed.errors import LogError
 from exceed.read import container, read_log
-from read.made import log, simple, written
 
 
 def refused(path: Path) -> str:
@@ -79,7 +79,9 @@ def test_a_huge_line_in_the_middle_is_refused(tmp_path: Path) -> None:
 def test_a_bomb_is_refused_before_it_bursts(tmp_path: Path, packing: str, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(container, "RATIO_FROM", 4 << 20)
     row = b"0,1,2,3\n" * (1 << 20)
-    data = {"gz": gzip.compress, "bz2": bz2.compress, "xz": lzma.compress}[packing](b"time [s],NZ [g],IAS [kt],PALT [ft]\n" + row * 2)
+    data = {"gz": gzip.compress, "bz2": bz2.compress, "xz": lzma.compress}[packing](
+        b"time [s],NZ [g],IAS [kt],PALT [ft]\n" + row * 2
+    )
     path = written(tmp_path, data, f"log.csv.{packing}")
     assert "MB from" in refused(path)
     assert refused(path).endswith("do: unpack it by hand and look at it, if you trust it")
@@ -120,7 +122,10 @@ def test_zip_holds_one_log(tmp_path: Path) -> None:
     data = zipped(("log.csv", simple().encode()), ("__MACOSX/._log.csv", b"junk"))
     assert len(log(tmp_path, data, "log.zip").time) == 200
     path = written(tmp_path, zipped(("a.csv", simple().encode()), ("b.csv", b"")), "two.zip")
-    assert refused(path) == "FILE: holds 2 files (a.csv, b.csv)\n  expected: a zip file with one log in it\n  do: unpack it into a folder"
+    assert (
+        refused(path)
+        == "FILE: holds 2 files (a.csv, b.csv)\n  expected: a zip file with one log in it\n  do: unpack it into a folder"
+    )
 
 
 def test_a_last_line_cut_in_its_last_cell_gives_no_wrong_number(tmp_path: Path) -> None:
@@ -139,7 +144,9 @@ def test_a_last_line_cut_in_its_last_cell_gives_no_wrong_number(tmp_path: Path) 
 def test_a_last_line_cut_earlier_is_left_out(tmp_path: Path) -> None:
     recording = log(tmp_path, simple()[:-9])
     assert len(recording.time) == 199
-    assert any(note.startswith("1 line with another number of cells than the headings is left out") for note in recording.notes)
+    assert any(
+        note.startswith("1 line with another number of cells than the headings is left out") for note in recording.notes
+    )
 
 
 def test_cells_that_are_no_numbers_are_found_and_missing(tmp_path: Path) -> None:
@@ -150,8 +157,17 @@ def test_cells_that_are_no_numbers_are_found_and_missing(tmp_path: Path) -> None
     load = recording.channels["load_factor"]
     assert len(load.values) == 198
     (row,) = recording.rejected
-    assert (row.reason, row.samples, row.quantity, row.start, row.end) == ("not_a_number", 2, "load_factor", 6.125, 8.625)
-    assert f"{recording.path}:51:2: '1.0o5' in column 'NZ [g]' is not a number (2 cells): taken as missing" in recording.notes
+    assert (row.reason, row.samples, row.quantity, row.start, row.end) == (
+        "not_a_number",
+        2,
+        "load_factor",
+        6.125,
+        8.625,
+    )
+    assert (
+        f"{recording.path}:51:2: '1.0o5' in column 'NZ [g]' is not a number (2 cells): taken as missing"
+        in recording.notes
+    )
 
 
 def test_infinite_cells_are_rejected(tmp_path: Path) -> None:
@@ -170,7 +186,9 @@ def test_extreme_figures_do_not_warn(tmp_path: Path) -> None:
 
 
 def test_parquet_with_nested_columns_says_so_and_reads_the_rest(tmp_path: Path) -> None:
-    table = pa.table({"time_s": np.arange(100) / 8, "nz_g": np.ones(100) + 0.01 * np.arange(100), "raw": [[1, 2]] * 100})
+    table = pa.table(
+        {"time_s": np.arange(100) / 8, "nz_g": np.ones(100) + 0.01 * np.arange(100), "raw": [[1, 2]] * 100}
+    )
     pq.write_table(table, tmp_path / "a.parquet")
     recording = read_log(tmp_path / "a.parquet")
     assert set(recording.channels) == {"load_factor"}
@@ -179,7 +197,10 @@ def test_parquet_with_nested_columns_says_so_and_reads_the_rest(tmp_path: Path) 
 
 def test_an_empty_parquet_is_refused(tmp_path: Path) -> None:
     pq.write_table(pa.table({"time_s": pa.array([], pa.float64())}), tmp_path / "a.parquet")
-    assert refused(tmp_path / "a.parquet") == "FILE: holds no rows\n  expected: a table of recorded samples\n  do: check the export"
+    assert (
+        refused(tmp_path / "a.parquet")
+        == "FILE: holds no rows\n  expected: a table of recorded samples\n  do: check the export"
+    )
 
 
 def test_no_such_file_a_folder_and_a_pipe(tmp_path: Path) -> None:
