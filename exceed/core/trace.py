@@ -142,6 +142,18 @@ class Trace:
         step = self.steps[name]
         return step.reach + max((self.reach(value) for value in step.inputs.values()), default=0.0)
 
+    def smoothing(self, name: str) -> float:
+        """How far to either side a value is smoothed over, s: an excursion shorter than that is not seen whole.
+
+        What only corrects a value (an accelerometer moved by differentiated rates) smooths nothing of it.
+        """
+        if name == TIME or name.startswith("recorded:"):
+            return 0.0
+        step = self.steps[name]
+        if step.main:
+            return max((self.smoothing(source) for source in step.main if source in self.steps), default=0.0)
+        return step.reach + max((self.smoothing(source) for source in step.inputs.values()), default=0.0)
+
     def grid(self, names: Iterable[str]) -> Grid:
         """The instants of the fastest channel that these quantities use (of equally fast ones the first by name)."""
         leaves = self.leaves(names, main_only=True)

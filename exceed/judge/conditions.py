@@ -72,6 +72,9 @@ def compile_condition(condition: Any, trace: Trace, aircraft: Aircraft | None) -
         return Condition(frozenset(), _never_known)
     row = QUANTITIES.get(name)
     sided = row is not None and row.sided
+    if row is not None and row.momentary:
+        # none at this moment is no gust, no touchdown: the condition is known not to hold
+        return _at_moments(_compare(condition, lambda block: block.values[name], frozenset({name}), sided))
     if condition.rate:
         return _compare(condition, lambda block: block.rate(name), frozenset({name}), sided)
     return _compare(condition, lambda block: block.values[name], frozenset({name}), sided)
@@ -79,6 +82,14 @@ def compile_condition(condition: Any, trace: Trace, aircraft: Aircraft | None) -
 
 def _never_known(block: Block) -> tuple[Mask, Mask]:
     return np.zeros(len(block), dtype=bool), np.zeros(len(block), dtype=bool)
+
+
+def _at_moments(condition: Condition) -> Condition:
+    def of(block: Block) -> tuple[Mask, Mask]:
+        holds, known = condition.of(block)
+        return holds & known, np.ones(len(block), dtype=bool)
+
+    return Condition(condition.names, of)
 
 
 def _state(holds: bool) -> Condition:

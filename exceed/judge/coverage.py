@@ -12,7 +12,7 @@ from exceed.core.trace import Grid, Trace
 from exceed.judge import certainty
 from exceed.judge.block import Block, gap_of
 from exceed.judge.compiled import Compiled
-from exceed.judge.scan import REASONS, ExtremeScan, RuleScan
+from exceed.judge.scan import MUST_SEE_TOLERANCE, REASONS, ExtremeScan, RuleScan
 from exceed.judge.sizing import levels_at
 
 
@@ -53,7 +53,9 @@ def _row(trace: Trace, rule: Compiled, scan: RuleScan, grid: Grid, number: int |
         if code and seconds[code] > 1e-9:
             reasons[name] = float(seconds[code])
     assessed = max(recorded - sum(reasons.values()), 0.0)
-    if assessed > 0.0 and _one_sided(trace, rule):
+    shortest = max(certainty.shortest_sized(grid.interval), 2.0 * _smoothing(trace, rule))
+    blind = rule.must_see is not None and 2.0 * _smoothing(trace, rule) > rule.must_see * MUST_SEE_TOLERANCE
+    if assessed > 0.0 and (blind or _one_sided(trace, rule)):
         reasons["method"] = assessed
         assessed = 0.0
     return Coverage(
@@ -62,7 +64,7 @@ def _row(trace: Trace, rule: Compiled, scan: RuleScan, grid: Grid, number: int |
         assessed=assessed,
         unassessed=recorded - assessed,
         not_applicable=0.0,
-        shortest_seen=certainty.shortest_sized(grid.interval),
+        shortest_seen=shortest,
         reasons=tuple(sorted(reasons.items(), key=lambda item: (-item[1], item[0]))),
     )
 
@@ -79,6 +81,11 @@ def _owned_ends(trace: Trace, grid: Grid) -> float:
 def _without_seams(trace: Trace, start: float, end: float) -> float:
     cut = sum(max(min(end, b) - max(start, a), 0.0) for a, b in trace.recording.seams)
     return end - start - cut
+
+
+def _smoothing(trace: Trace, rule: Compiled) -> float:
+    name = rule.judged.removeprefix("rate_of:")
+    return trace.smoothing(name) if trace.has(name) else 0.0
 
 
 def _one_sided(trace: Trace, rule: Compiled) -> bool:

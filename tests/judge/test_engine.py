@@ -155,6 +155,17 @@ def test_a_level_turn_can_show_but_never_clear():
     assert "level coordinated turn" in event.notes
 
 
+def test_a_method_that_smooths_cannot_clear_what_it_smooths_away():
+    time = np.arange(0.0, 60.0, 0.125)
+    step = Step("load_factor", "flight path", lambda pressure_altitude: 1.0 + 0.0 * pressure_altitude,
+                {"pressure_altitude": "pressure_altitude"}, reach=1.5)  # fmt: skip
+    trace = make_trace(time, {"pressure_altitude": 500.0 + time}, steps={"load_factor": step})
+    row = judged(trace, rule("must_see: 0.5 s")).coverage[0]
+    assert row.reasons == (("method", pytest.approx(59.875)),)
+    assert row.shortest_seen == 3.0
+    assert judged(trace, rule("must_see: 4 s")).coverage[0].assessed == pytest.approx(59.875)
+
+
 def test_limits_of_small_size_collapse_per_cent_levels():
     time, n = ramps([(0, 1), (10, -0.5), (20, 1)])
     text = (
