@@ -34,8 +34,7 @@ MORE = (
     "stall_margin",
     "vertical_speed",
 )
-# a page stays usable with so many flown points and samples a curve
-MOST_POINTS = 20_000
+# a page stays usable with so many samples a curve
 MOST_SAMPLES = 4_000
 LEVELS = np.arange(-4.0, 8.01, 0.25)
 

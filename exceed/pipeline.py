@@ -46,6 +46,8 @@ EXTREMES: tuple[str, ...] = (
     "stall_margin",
     "mass",
 )
+# the page draws these besides
+PLOTTED: tuple[str, ...] = ("equivalent_airspeed", "pitch_angle", "vertical_speed")
 # and for these where a rule has their columns read anyway
 MORE_EXTREMES: tuple[str, ...] = ("lateral_load_factor", "pitch_angle", "vertical_speed", "ground_speed")
 # threads for blocks of one log; a log of fewer samples is not worth a second one
@@ -96,7 +98,7 @@ def day(run: Run, outcomes: Iterable[LogOutcome], skipped: Iterable[Skipped] = (
         judged_with=run.judged_with,
         rules=run.rule_sets,
         skipped=tuple((one.shown, one.reason) for one in skipped),
-        fleet=", ".join(sorted(run.fleets)) or None,
+        fleet=", ".join(row.path or "" for row in run.judged_with if row.kind == "fleet") or None,
         operator=one.operator if one is not None else None,
         time_zone=one.time_zone if one is not None else None,
         notes=run.notes,
@@ -128,7 +130,7 @@ def failed(path: str, error: ExceedError) -> LogOutcome:
 def _assess(log: LogPath, run: Run) -> LogOutcome:
     assigned = assign(log, run)
     member = assigned.member
-    names = wanted(member)
+    names = wanted(member, plots=run.settings.plots)
     recording = read(assigned, names)
     trace = build_trace(recording, member.aircraft, quantities=names, mass=run.mass, loading=list(member.loading))
     compiled = ready_rules(trace, member)
@@ -208,15 +210,15 @@ def _relative(location: str, folder: Path) -> str | None:
         return None
 
 
-def wanted(member: Member) -> list[str]:
-    """The quantities that rules, context and extremes ask for."""
+def wanted(member: Member, *, plots: bool = False) -> list[str]:
+    """The quantities that rules, context and extremes ask for, and the page's plots."""
     names: dict[str, None] = {}
     for rule in member.book.rules:
         for name in rule.needs(member.aircraft):
             names[name] = None
         if rule.quantity != "airspeed":
             names[rule.quantity] = None
-    for name in (*EXTREMES, *CONTEXT):
+    for name in (*EXTREMES, *CONTEXT, *(PLOTTED if plots else ())):
         names[name] = None
     return list(names)
 

@@ -72,7 +72,8 @@ def prepare(settings: Settings, folders: Iterable[tuple[str, str]]) -> Run:
     every document.
     """
     problems: list[Problem] = []
-    loader = _Loader(problems)
+    folders = list(folders)
+    loader = _Loader(problems, _root(settings, folders))
     mass = _mass(settings, problems)
     own_rules = [loader.rules(name) for name in settings.rules]
     book = loader.book(own_rules) if settings.rules else loader.book([loader.rules("airframe")])
@@ -95,16 +96,19 @@ def prepare(settings: Settings, folders: Iterable[tuple[str, str]]) -> Run:
             *loader.used(),
             *(JudgedWith("option", name=name, value=value) for name, value in settings.options()),
         ),
-        rule_sets=_rule_rows([book, *(member.book for one in loaded.values() for member in one.members.values())]),
-        notes=tuple(f"fleet file used: {_shown(path)}" for path in fleets if not settings.fleet),
+        rule_sets=_rule_rows(
+            [book, *(member.book for one in loaded.values() for member in one.members.values())], loader.root
+        ),
+        notes=tuple(f"fleet file used: {_shown(path, loader.root)}" for path in fleets if not settings.fleet),
     )
 
 
 class _Loader:
     """Loads each document once, gathers what is wrong and what was used."""
 
-    def __init__(self, problems: list[Problem]) -> None:
+    def __init__(self, problems: list[Problem], root: Path) -> None:
         self.problems = problems
+        self.root = root
         self._kept: dict[tuple[str, str], object] = {}
         self._used: dict[tuple[str, str], JudgedWith] = {}
 
@@ -121,7 +125,9 @@ class _Loader:
                 document = None
             self._kept[key] = document
             if document is not None:
-                self._used[key] = JudgedWith(kind, path=_shown(document.path or origin), sha256=document.sha256)
+                self._used[key] = JudgedWith(
+                    kind, path=_shown(document.path or origin, self.root), sha256=document.sha256
+                )
         return self._kept[key]
 
     def rules(self, origin: str):  # type: ignore[no-untyped-def]
@@ -281,26 +287,34 @@ def _member(
     return Member(row.registration, own_aircraft, own_book, own_channels, tuple(own_sheets))
 
 
-def _rule_rows(books: list[RuleBook]) -> tuple[RuleSetRow, ...]:
+def _rule_rows(books: list[RuleBook], root: Path) -> tuple[RuleSetRow, ...]:
     rows: dict[str, RuleSetRow] = {}
     for book in books:
         for one in book.sets:
             rows[one.name] = RuleSetRow(
-                name=_shown(one.name),
+                name=_shown(one.name, root),
                 title=one.title or one.name,
                 rules=len(one.rules),
                 titles=tuple((rule.id, rule.title or rule.id) for rule in one.rules),
+                quantities=tuple((rule.id, rule.quantity) for rule in one.rules),
                 overrides=tuple(sorted({row.rule for row in book.replaced if row.later == one.name})),
             )
     return tuple(rows[name] for name in sorted(rows))
 
 
-def _shown(path: str) -> str:
-    """A path as outputs show it: relative to the working folder where it lies below it."""
-    if path in BUILT_IN or "://" in path or not os.path.isabs(path):
-        return path.replace(os.sep, "/")
-    full = Path(path)
-    return os.path.relpath(full).replace(os.sep, "/") if full.is_relative_to(Path.cwd()) else path
+def _root(settings: Settings, folders: list[tuple[str, str]]) -> Path:
+    """Where shown paths start: the first folder given as PATH, else the folder of the first log, else here."""
+    for path in settings.paths:
+        if os.path.isdir(path):
+            return Path(path).resolve()
+    return Path(folders[0][0]).resolve() if folders and "://" not in folders[0][0] else Path.cwd()
+
+
+def _shown(path: str, root: Path) -> str:
+    """A path as outputs show it: relative to the PATH given, with forward slashes; never a place of this machine."""
+    if path in BUILT_IN or "://" in path:
+        return path
+    return os.path.relpath(Path(path).resolve(), root).replace(os.sep, "/")
 
 
 __all__ = ["LoadedFleet", "Member", "Run", "UsageError", "prepare"]
