@@ -13,6 +13,7 @@ from typing import Annotated, Any
 import typer
 
 from exceed import __version__
+from exceed.cli import ledger as ledger_commands
 from exceed.cli import options as opt
 from exceed.cli.run import Terminal, guarded
 
@@ -28,6 +29,7 @@ app = typer.Typer(
         "It informs; it releases no aeroplane."
     ),
 )
+app.add_typer(ledger_commands.app)
 
 
 def _version(value: bool) -> None:
@@ -74,6 +76,12 @@ def scan(
     jobs: Annotated[
         int | None, typer.Option("--jobs", min=1, metavar="N", help="Processes; default: as many as cores.")
     ] = None,
+    ledger: Annotated[
+        str | None, typer.Option("--ledger", metavar="URL|default", help="Add what was found to a ledger.")
+    ] = None,
+    new_only: Annotated[
+        bool, typer.Option("--new-only", help="With --ledger: leave out logs whose content is in it.")
+    ] = False,
     quiet: Annotated[bool, typer.Option("--quiet", help="No table, only problems on stderr.")] = False,
     no_color: Annotated[bool, typer.Option("--no-color", help="Plain text without colour.")] = False,
     debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
@@ -97,6 +105,8 @@ def scan(
         "units": units.value,
         "quiet": quiet,
         "colour": not no_color,
+        "ledger": ledger,
+        "new_only": new_only,
     }
     with guarded(debug):
         from exceed.cli.run import run_scan

@@ -405,7 +405,7 @@ def reassign(
         with open_ledger(ledger) as book:
             done = acts.reassign(book, flight, to, by, note)
         Terminal.err(f"{done['flight']}: from {done['from'] or 'no registration'} to {done['to']}")
-        Terminal.err("  its events were judged by the limits of the aeroplane it was taken for: scan it again")
+        Terminal.err("  its events were judged by the limits of the aeroplane it was taken for")
         for name in done["inspections"]:
             Terminal.err(f"  inspection {name} is now {done['to']}'s")
         for name in done["clashes"]:

@@ -69,12 +69,15 @@ def guarded(debug: bool) -> Iterator[None]:
 def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
     """Scan, write what was asked for, and give the exit code."""
     from exceed import pipeline
+    from exceed.cli.ledger import ScanLedger
     from exceed.report.summary import summarise
     from exceed.report.write import to_json, write_whole
 
+    ledger = ScanLedger(shown["ledger"], shown["new_only"])
     with _progress(shown["quiet"]) as progress:
-        outcome = pipeline.scan(settings, progress)
+        outcome = pipeline.scan(settings, progress, ledger.sift)
     summary = summarise(outcome)
+    ledger.record(summary)
     if shown["json"] is not None:
         write_whole(shown["json"], to_json(summary))
     if shown["html"] is not None:
@@ -82,6 +85,7 @@ def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
     if shown["json"] != "-" and not shown["quiet"]:
         _print_table(summary, shown)
     _say_failures(summary, shown)
+    ledger.finish()
     return exit_code(summary, shown["fail_at"])
 
 

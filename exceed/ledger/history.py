@@ -125,7 +125,8 @@ _EVENTS = (
 def event_rows(table: Table, only: Iterable[int] | None = None) -> list[Row]:
     """Current events, bodies still text; `only` gives the rows of these numbers, current or not."""
     if only is None:
-        return table.rows(f"{_EVENTS} WHERE {CURRENT} ORDER BY e.start_at IS NULL, e.start_at, r.path, e.start_s, e.rule, e.id")
+        order = "e.start_at IS NULL, e.start_at, r.path, e.start_s, e.rule, e.id"
+        return table.rows(f"{_EVENTS} WHERE {CURRENT} ORDER BY {order}")
     from exceed.ledger.store import chunks, named
 
     found: list[Row] = []

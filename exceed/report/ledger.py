@@ -29,25 +29,26 @@ def _text(lines: Sequence[str]) -> str:
 
 def _when(screen: Screen, start: str | None, start_s: float | None = None) -> str:
     if start is not None:
-        return screen.safe(start[:19].replace("T", " ") + "Z")
+        narrow = screen.width is not None and screen.width < 100
+        return screen.safe(start[: 16 if narrow else 19].replace("T", " ") + "Z")
     return f"+{elapsed(start_s)}" if start_s is not None else "-"
 
 
 def render_events(rows: Sequence[Dict], screen: Screen, undated: int = 0) -> str:
     """The list of events. Undecided stretches are among them and say so."""
     heads = (
-        Column("severity"), Column("certainty", drop=3), Column("aeroplane"), Column("time"),
-        Column("what", least=14), Column("peak", right=True), Column("limit", right=True),
-        Column("for", right=True, drop=2), Column("decided", least=10), Column("recording", drop=1, least=10),
-        Column("id"),
+        Column("severity"), Column("certainty", drop=3), Column("id"), Column("plane"), Column("time"),
+        Column("what", least=10), Column("peak", right=True), Column("limit", right=True, drop=4),
+        Column("for", right=True, drop=2), Column("state", least=5), Column("recording", drop=1, least=10),
     )  # fmt: skip
     cells = []
     for row in rows:
         peak, _, limit, unit = peak_texts(row)
         cells.append(
             [
-                f"{row['severity']} {MARKS[row['severity']]}",
+                f"{row['severity']} {MARKS[row['severity']]}" + (" ?" if row["undecided"] else ""),
                 ("undecided, " if row["undecided"] else "") + row["certainty"],
+                row["id"],
                 screen.safe(row["registration"] or "no registration"),
                 _when(screen, row["start"], row["start_s"]),
                 screen.safe(row["title"]),
@@ -56,7 +57,6 @@ def render_events(rows: Sequence[Dict], screen: Screen, undated: int = 0) -> str
                 duration(row["duration_s"]),
                 _decision(screen, row),
                 screen.safe(row["recording"]["path"]),
-                row["id"],
             ]
         )
     lines = _table(screen, heads, cells, [row["severity"] for row in rows]) if rows else ["no events"]
@@ -196,7 +196,11 @@ def render_trends(rows: Sequence[Dict], screen: Screen, source: str) -> str:
 
 
 def _rate(rate: Dict | None) -> str:
-    return "-" if rate is None else f"{rate['value']:.1f} ({rate['low']:.1f} .. {rate['high']:.1f})"
+    if rate is None:
+        return "-"
+    # three digits say all that so few events can
+    digits = 0 if rate["value"] >= 100.0 else 1 if rate["value"] >= 10.0 else 2
+    return f"{number(rate['value'], digits)} ({number(rate['low'], digits)}..{number(rate['high'], digits)})"
 
 
 def trends_page(rows: Sequence[Dict], title: str, source: str) -> str:
