@@ -127,8 +127,6 @@ def spectrum(settings: Settings, progress: Callable[[int, int], None] | None = N
     """
     logs, skipped = find_logs(settings.paths)
     run = prepare(settings, [(str(Path(log.location).parent), log.root) for log in logs])
-    if not logs and not skipped:
-        raise LogError(Problem(", ".join(settings.paths), "no such log", "logs or a folder of logs", "check the path"))
     growing: dict[str | None, Growing] = {}
     seen: dict[str, str] = {}
     rows: list[SpectrumLog] = []

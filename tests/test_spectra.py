@@ -197,6 +197,12 @@ def test_a_failed_log_is_said_and_the_others_are_done(tmp_path: Path) -> None:
     assert "Traceback" not in nothing.output
 
 
+def test_a_folder_without_logs_is_said_to_be_one(tmp_path: Path) -> None:
+    told = CliRunner().invoke(app, ["spectrum", str(tmp_path)])
+    assert told.exit_code == 0
+    assert "No log was found, so nothing was counted." in told.stdout
+
+
 def test_flights_of_the_sample_day_are_counted_in_the_air_and_the_parts_add_up() -> None:
     found = counted(SAMPLES / "zz-nmc", fleet=str(SAMPLES / "fleet.yaml"))
     (row,) = found["spectra"]

@@ -188,7 +188,9 @@ def _conditions(conditions: Dict, units: str) -> str:
 
 def _speed_heads(units: str) -> tuple[Column, ...]:
     unit = shown("indicated_airspeed", "kt", units).unit
-    return tuple(Column(f"{LETTERS[name]} {unit}", right=True) for name in KINDS)
+    # where there is no room IAS is what the needle shows and EAS what the diagram is drawn in
+    drops = {"calibrated_airspeed": 2}
+    return tuple(Column(f"{LETTERS[name]} {unit}", right=True, drop=drops.get(name, 0)) for name in KINDS)
 
 
 def _speed_cells(row: Dict, units: str) -> tuple[str, ...]:
@@ -207,7 +209,12 @@ def _key(source: str) -> str:
 
 
 def _points(title: str, rows: list[Dict], units: str) -> Sheet:
-    heads = (Column("point", least=20), *_speed_heads(units), Column("n g", right=True), Column("source", least=8))
+    heads = (
+        Column("point", least=16),
+        *_speed_heads(units),
+        Column("n g", right=True),
+        Column("source", drop=1, least=8),
+    )
     cells = tuple(
         (row["name"], *_speed_cells(row, units), _load(row["load_factor_g"]), _key(row["source"])) for row in rows
     )
@@ -215,7 +222,7 @@ def _points(title: str, rows: list[Dict], units: str) -> Sheet:
 
 
 def _speeds(rows: list[Dict], units: str) -> Sheet:
-    heads = (Column("symbol"), *_speed_heads(units), Column("given as"), Column("speed", least=18))
+    heads = (Column("symbol"), *_speed_heads(units), Column("given as", drop=1), Column("speed", drop=3, least=18))
     cells, said = [], []
     for row in rows:
         given = LETTERS.get(row["given_as"] or "", "-")
@@ -231,7 +238,12 @@ def _speeds(rows: list[Dict], units: str) -> Sheet:
 
 def _limits(rows: list[Dict], units: str, mark: str) -> Sheet:
     form = shown("indicated_airspeed", "kt", units)
-    heads = (Column("holds", least=20), Column("max g", right=True), Column("min g", right=True), Column("source"))
+    heads = (
+        Column("holds", least=16),
+        Column("max g", right=True),
+        Column("min g", right=True),
+        Column("source", drop=1),
+    )
     cells = []
     for row in rows:
         letters = LETTERS.get(row["speed_kind"] or "", "")

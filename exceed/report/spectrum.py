@@ -11,9 +11,9 @@ from exceed.core.diagrams import CycleTally, SpectrumLog, SpectrumOutcome, Spect
 from exceed.core.findings import CAUTIONS
 from exceed.core.outcome import SpectrumPlot
 from exceed.report import figures
-from exceed.report.layout import Column
-from exceed.report.plots import Paper, Part, Sheet, render_paper, render_text
-from exceed.report.show import count, duration, number
+from exceed.report.plots import Paper, Part, render_paper, render_text
+from exceed.report.show import count, duration
+from exceed.report.spectrum_tables import name_of, part_of
 
 Dict = dict[str, Any]
 FORMAT = "exceed/spectrum/1"
@@ -30,8 +30,6 @@ NO_LIFE = (
     "No fatigue life is claimed: life used is worked out by the method approved for the type, from data that the method"
     " accepts."
 )
-# most columns of levels in the table by phase
-_MOST_LEVELS = 8
 
 
 def spectrum_summary(found: SpectrumOutcome) -> Dict:
@@ -210,7 +208,7 @@ def spectrum_page(summary: Dict, found: SpectrumOutcome) -> str:
         hours = row.tally.seconds / 3600.0
         if hours > 0.0:
             rates = row.tally.crossings / hours
-            plots.append((_name(part), SpectrumPlot(row.tally.level, rates, hours)))
+            plots.append((name_of(part), SpectrumPlot(row.tally.level, rates, hours)))
     if plots:
         drawn["crossings"] = figures.spectrum(plots)
         drawn["cycles"] = _cycles_figure(summary["spectra"])
@@ -230,7 +228,7 @@ def _cycles_figure(rows: list[Dict]) -> Dict:
             {
                 "type": "scatter",
                 "mode": "lines+markers",
-                "name": _name(row),
+                "name": name_of(row),
                 "x": [one["range_from_g"] for one in ranges],
                 "y": [float(f"{value:.5g}") for value in beyond],
                 "line": {"color": f"$series{turn % 4}", "dash": ("solid", "dash", "dot", "dashdot")[turn // 4 % 4]},
@@ -249,12 +247,6 @@ def _cycles_figure(rows: list[Dict]) -> Dict:
     return {"data": data, "layout": layout}
 
 
-def _name(row: Dict) -> str:
-    if row["everything"]:
-        return "altogether"
-    return row["registration"] or "no registration"
-
-
 def _paper(summary: Dict, *, figure: bool = False) -> Paper:
     parts = []
     if figure:
@@ -263,9 +255,11 @@ def _paper(summary: Dict, *, figure: bool = False) -> Paper:
             ("cycles", "rainflow cycles of at least this range per flight hour, half cycles as halves"),
         )
         parts.append(Part("Curves", (), captions))
-    parts += [_part(row) for row in summary["spectra"]]
+    parts += [part_of(row) for row in summary["spectra"]]
     totals = summary["totals"]
     said = [f"per {STANDARD}: level crossings, peaks, rainflow cycles; {count(totals['counted'], 'log')} counted"]
+    if not totals["recordings"]:
+        said[0] = "No log was found, so nothing was counted."
     if totals["not_counted"]:
         said[0] += f", {totals['not_counted']} not counted"
     if totals["failed"]:
@@ -295,7 +289,8 @@ def _failures(summary: Dict) -> list[str]:
 
 def _log_line(log: Dict) -> str:
     if log["status"] == "not counted":
-        return f"{log['path']}: not counted: {'; '.join(log['notes']) or 'counted in earlier logs'}"
+        reasons = [f"{row['reason']}, {duration(row['seconds'])}" for row in log["not_counted"]]
+        return f"{log['path']}: not counted: {'; '.join([*reasons, *log['notes']])}"
     parts = [
         f"{duration(log['counted_s'])} counted of {duration(log['airborne_s'])} airborne",
         count(log["stretches"], "stretch", "stretches"),
@@ -309,116 +304,3 @@ def _log_line(log: Dict) -> str:
     if log["status"] == "partial":
         parts.append("read in part")
     return f"{log['path']}: " + "; ".join([*parts, *log["notes"]])
-
-
-def _part(row: Dict) -> Part:
-    rates = ", ".join(f"{rate:g}" for rate in row["rates_hz"])
-    flights = "flights not known, all recorded time counts as airborne"
-    if row["flights"] is not None:
-        flights = count(row["flights"], "flight")
-    stretches = count(row["stretches"], "stretch", "stretches")
-    said = [
-        f"{count(row['recordings'], 'log')}, {flights}: {_hours(row['airborne_s'])} airborne,"
-        f" {_hours(row['counted_s'])} counted in {stretches} at {rates} Hz",
-    ]
-    if row["lowest_g"] is not None:
-        said.append(f"from {number(row['lowest_g'], 2)} to {number(row['highest_g'], 2)} g")
-    if row["derived"]:
-        said.append("load factor was derived, not recorded, in some of these logs: short and small loads are missing")
-    sheets = [_levels(row), _ranges("Rainflow cycles by range", row["cycles"]), _phases(row), _causes(row)]
-    weighted = row["mass_weighted"]
-    if weighted is not None:
-        mass = weighted["reference_mass"]
-        title = f"Load factor x mass / {mass['value']:g} kg, {weighted['counted_h']:.2f} h"
-        note = (f"without mass: {row['mass_weighted_note']}",) if row["mass_weighted_note"] else ()
-        sheets.append(_levels(weighted, title, note))
-        sheets.append(_ranges(f"Rainflow cycles of load factor x mass / {mass['value']:g} kg", weighted["cycles"]))
-    elif row["mass_weighted_note"]:
-        sheets.append(Sheet("Load factor x mass", said=(f"not counted: {row['mass_weighted_note']}",)))
-    return Part(_name(row), tuple(said), (), tuple(sheets))
-
-
-def _hours(seconds: float) -> str:
-    return f"{seconds / 3600.0:.2f} h" if seconds >= 360.0 else duration(seconds)
-
-
-def _levels(row: Dict, title: str = "Level crossings and peaks", said: tuple[str, ...] = ()) -> Sheet:
-    levels = row["levels"]
-    heads = [Column("level g", right=True), Column("crossings", right=True), Column("per h", right=True)]
-    heads.append(Column("per 1,000 h", right=True))
-    keys = [("crossings", "crossings_per_h", "crossings_per_1000_h")]
-    if levels and "peaks" in levels[0]:
-        heads += [Column("peaks", right=True), Column("per h", right=True), Column("per 1,000 h", right=True)]
-        keys.append(("peaks", "peaks_per_h", "peaks_per_1000_h"))
-    cells = []
-    for one in reversed(levels):
-        cell = [number(one["level_g"], 2)]
-        for many, hourly, thousand in keys:
-            cell += [str(one[many]), _figure(one[hourly]), _figure(one[thousand])]
-        cells.append(tuple(cell))
-    return Sheet(title, tuple(heads), tuple(cells), said)
-
-
-def _figure(value: float | None) -> str:
-    """Three digits at least, no exponent."""
-    if value is None:
-        return "-"
-    decimals = 0 if value >= 100.0 else 1 if value >= 10.0 else 2
-    return f"{value:,.{decimals}f}"
-
-
-def _ranges(title: str, cycles: Dict) -> Sheet:
-    heads = (
-        Column("range g"),
-        Column("whole", right=True),
-        Column("half", right=True),
-        Column("cycles", right=True),
-        Column("per h", right=True),
-        Column("per 1,000 h", right=True),
-    )
-    cells = tuple(
-        (
-            f"{number(one['range_from_g'], 2)} to {number(one['range_below_g'], 2)}",
-            str(one["whole"]),
-            str(one["half"]),
-            f"{one['cycles']:.1f}",
-            _figure(one["per_h"]),
-            _figure(one["per_1000_h"]),
-        )
-        for one in reversed(cycles["by_range"])
-    )
-    residue = f"residue: {count(cycles['half'], 'half cycle')} that the stretches leave open"
-    return Sheet(title, heads, cells, (residue,))
-
-
-def _phases(row: Dict) -> Sheet:
-    told = any(part["phase"] != "unknown" for part in row["by_phase"])
-    said = "peaks at or beyond a level, by phase; rainflow cycles close across phases and are not told apart"
-    if not told:
-        return Sheet("By phase", said=("phases are not known",))
-    return _parts("Peaks by phase", row["by_phase"], "phase", row["levels"], (said,))
-
-
-def _causes(row: Dict) -> Sheet:
-    said = ["gust: where a gust velocity could be derived; manoeuvre: in the phase manoeuvring"]
-    if row["by_cause_note"]:
-        said.append(row["by_cause_note"])
-    return _parts("Peaks by cause", row["by_cause"], "cause", row["levels"], tuple(said))
-
-
-def _parts(title: str, parts: list[Dict], key: str, levels: list[Dict], said: tuple[str, ...]) -> Sheet:
-    """Parts as rows, some of the levels as columns."""
-    known = [one["level_g"] for one in levels if one["level_g"] != 1.0]
-    for step in (0.25, 0.5, 1.0, 2.0):
-        chosen = [level for level in known if level % step == 0.0]
-        if len(chosen) <= _MOST_LEVELS:
-            break
-    heads = [Column(key, least=8), Column("h", right=True), Column("min g", right=True), Column("max g", right=True)]
-    heads += [Column(f"{level:g} g", right=True) for level in chosen]
-    cells = []
-    for part in parts:
-        counts = {one["level_g"]: one["peaks"] for one in part["levels"]}
-        low, high = ("-" if part[name] is None else number(part[name], 2) for name in ("lowest_g", "highest_g"))
-        cell = [part[key], number(part["counted_h"], 2), low, high]
-        cells.append(tuple(cell + [str(counts.get(level, 0)) for level in chosen]))
-    return Sheet(title, tuple(heads), tuple(cells), said)
