@@ -135,8 +135,7 @@ def _assess(log: LogPath, run: Run) -> LogOutcome:
     trace = build_trace(recording, member.aircraft, quantities=names, mass=run.mass, loading=list(member.loading))
     compiled = ready_rules(trace, member)
     threads = THREADS if len(recording.time) > WORTH_THREADS else 1
-    extremes = [name for name in (*EXTREMES, *MORE_EXTREMES) if name in names and trace.has(name)]
-    findings = judge(trace, compiled, extremes, threads=threads)
+    findings = judge(trace, compiled, extremes_of(trace, names), threads=threads)
     plots = None
     if run.settings.plots:
         from exceed.drawing import log_plots
@@ -244,6 +243,16 @@ def sensor_ranges(aircraft: Aircraft | None) -> dict[str, tuple[float, float]]:
     return {"load_factor": (float(low), float(high))}
 
 
+def extremes_of(trace: Trace, names: Iterable[str] | None = None) -> list[str]:
+    """The quantities whose extremes are given: of `names` (None: all), those that are known and not only as a range."""
+    asked = None if names is None else set(names)
+    return [
+        name
+        for name in (*EXTREMES, *MORE_EXTREMES)
+        if trace.has(name) and name not in trace.spans and (asked is None or name in asked)
+    ]
+
+
 def _indexed(names: Iterable[str], available: set[str]) -> list[str]:
     """Names, and for one like engine_speed every engine_speed_1, engine_speed_2 that is there."""
     from exceed.documents.rules import base_name
@@ -270,8 +279,7 @@ def trace_of(settings: Settings) -> tuple[Trace, LogOutcome]:
     assigned = assign(log, run)
     recording = read(assigned, None)
     trace = build_trace(recording, assigned.member.aircraft, mass=run.mass, loading=list(assigned.member.loading))
-    extremes = [name for name in (*EXTREMES, *MORE_EXTREMES) if trace.has(name)]
-    findings = judge(trace, [], extremes)
+    findings = judge(trace, [], extremes_of(trace))
     return trace, outcome(log.shown, assigned.member, assigned.registration, trace, findings, [], notes=assigned.notes)
 
 
@@ -284,7 +292,7 @@ def describe(settings: Settings) -> tuple[LogOutcome, Survey, Recording]:
     recording = read(assigned, None)
     aircraft = assigned.member.aircraft
     trace = build_trace(recording, aircraft, mass=run.mass, loading=list(assigned.member.loading))
-    findings = judge(trace, [], [name for name in (*EXTREMES, *MORE_EXTREMES) if trace.has(name)])
+    findings = judge(trace, [], extremes_of(trace))
     feeds = []
     for name in BUILT_IN:
         rules = load_rules(name)
