@@ -17,6 +17,7 @@ def what_is_missing(
     aircraft: Aircraft,
     facts: Facts,
     air: Air,
+    mass: float | None,
     stalls: tuple[float, float],
     limits: tuple[LimitRow, ...],
     speeds: dict[str, SpeedRow],
@@ -33,6 +34,8 @@ def what_is_missing(
     for side in ("maximum", "minimum"):
         if not any(getattr(row, side) is not None for row in limits):
             why = "no row holds at this mass and these flaps" if limits else silent
+            if limits and mass is None and facts.aliases.get("limit_mass"):
+                why = "the rows go by mass, and the mass is not known"
             found.append(("positive limit" if side == "maximum" else "negative limit", why))
     if end is None:
         found.append(("speed limit, corners at it", f"V_NE, V_MO: {silent}"))

@@ -32,7 +32,7 @@ from exceed.documents.aircraft import CATEGORIES, Aircraft, category_aircraft, l
 from exceed.documents.values import ValueFault, parse
 from exceed.envelope_notes import Missing, what_is_missing, what_to_say
 from exceed.errors import Problem, UsageError
-from exceed.physics import atmosphere, envelope, gust, load_limits
+from exceed.physics import atmosphere, category, envelope, gust, load_limits
 from exceed.physics.atmosphere import LOWEST_ALTITUDE
 
 HIGHEST_ALTITUDE = 25000.0  # m; the standard atmosphere reaches further, no manual does
@@ -125,7 +125,7 @@ def envelope_of(
     meeting = next((row for row in corners if row.name == MEETS), None)
     if meeting is not None:
         rows.insert(0, SpeedRow("V_S sqrt(n)", f"{MEETS}; computed, not V_A", meeting.speed, "computed"))
-    missing = [*unknown, *what_is_missing(aircraft, facts, air, stalls, limits, speeds, end), *no_gusts]
+    missing = [*unknown, *what_is_missing(aircraft, facts, air, weight, stalls, limits, speeds, end), *no_gusts]
     return EnvelopeOutcome(
         aircraft=info_of(aircraft),
         mass=weight,
@@ -206,7 +206,27 @@ def _limit_rows(aircraft: Aircraft, facts: Facts, air: Air, mass: float | None) 
         if (table.airbrakes == 1.0).any():
             most, least = limits_of(facts, air, mass, inside, 1.0)
             rows.append(LimitRow("airbrakes out", finite(most), finite(least), source, **about))
-    return tuple(rows)
+    return tuple(_to_dive_speed(aircraft, rows) if aircraft.assumed and abs(air.flaps) <= UP_WITHIN else rows)
+
+
+def _to_dive_speed(aircraft: Aircraft, rows: list[LimitRow]) -> list[LimitRow]:
+    """A category's limits as published: one pair up to a design speed, from there in a line to another at V_D."""
+    if aircraft.category is None:
+        return rows
+    figures = category.category_load_factors(aircraft.category, aircraft.mass.maximum_take_off)
+    first, *others = rows
+    ends = (finite(figures.maximum_at_dive), finite(figures.minimum_at_dive))
+    if ends == (first.maximum, first.minimum):
+        return rows
+    speed = "V_A" if aircraft.category.startswith("sailplane") else "V_C"
+    if ends == (None, None):
+        return [replace(first, condition=f"up to {speed}; beyond, the figures are not at hand"), *others]
+    most, least = (first.maximum if ends[0] is None else ends[0]), (first.minimum if ends[1] is None else ends[1])
+    return [
+        replace(first, condition=f"up to {speed}"),
+        LimitRow(f"at V_D, from {speed} in a line", most, least, first.source),
+        *others,
+    ]
 
 
 # --- gusts -------------------------------------------------------------------------------------------------------

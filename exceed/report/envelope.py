@@ -254,7 +254,9 @@ def _limits(rows: list[Dict], units: str, mark: str) -> Sheet:
         where = "at all speeds" if not low and not high else f"up to {high}" if not low else f"above {low}"
         if low and high:
             where = f"above {low} up to {high}"
-        holds = f"{row['condition']}, {where}" if row["condition"] else where
+        holds = where
+        if row["condition"]:
+            holds = f"{row['condition']}, {where}" if low or high else row["condition"]
         cells.append((holds, _load(row["maximum_g"]), _load(row["minimum_g"]), row["source"] + mark))
     return Sheet(f"Limit load factors{mark}", heads, tuple(cells))
 

@@ -62,7 +62,7 @@ def _levels(row: Dict, title: str = "Level crossings and peaks", said: tuple[str
     for one in reversed(levels):
         cell = [number(one["level_g"], 2)]
         for many, hourly, thousand in keys:
-            cell += [str(one[many]), _figure(one[hourly]), _figure(one[thousand])]
+            cell += [f"{one[many]:,}", _figure(one[hourly]), _figure(one[thousand])]
         cells.append(tuple(cell))
     return Sheet(title, tuple(heads), tuple(cells), said)
 
@@ -86,9 +86,9 @@ def _ranges(title: str, cycles: Dict) -> Sheet:
     cells = tuple(
         (
             f"{number(one['range_from_g'], 2)} to {number(one['range_below_g'], 2)}",
-            str(one["whole"]),
-            str(one["half"]),
-            f"{one['cycles']:.1f}",
+            f"{one['whole']:,}",
+            f"{one['half']:,}",
+            f"{one['cycles']:,.1f}",
             _figure(one["per_h"]),
             _figure(one["per_1000_h"]),
         )
@@ -127,5 +127,5 @@ def _parts(title: str, parts: list[Dict], key: str, levels: list[Dict], said: tu
         counts = {one["level_g"]: one["peaks"] for one in part["levels"]}
         low, high = ("-" if part[name] is None else number(part[name], 2) for name in ("lowest_g", "highest_g"))
         cell = [part[key], number(part["counted_h"], 2), low, high]
-        cells.append(tuple(cell + [str(counts.get(level, 0)) for level in chosen]))
+        cells.append(tuple(cell + [f"{counts.get(level, 0):,}" for level in chosen]))
     return Sheet(title, tuple(heads), tuple(cells), said)

@@ -223,12 +223,25 @@ def test_what_is_missing_is_said_and_nothing_is_made_up() -> None:
 def test_a_category_is_marked_assumed_and_asks_for_its_mass() -> None:
     found = envelope_summary(envelope_of(category_aircraft("normal", 1100.0)))
     # 14 CFR 23.337(a): 2.1 + 24000 / (W + 10000), at most 3.8; -0.4 of it
-    assert [(row["maximum_g"], row["minimum_g"], row["assumed"]) for row in found["limits"]] == [(3.8, -1.52, True)]
+    # 23.333(b)(3), 23.337(b): the negative limit runs from V_C in a line to 0 at V_D
+    assert [(row["condition"], row["maximum_g"], row["minimum_g"], row["assumed"]) for row in found["limits"]] == [
+        ("up to V_C", 3.8, -1.52, True),
+        ("at V_D, from V_C in a line", 3.8, 0.0, True),
+    ]
     assert "(assumed)" in render_envelope(found)
     with pytest.raises(UsageError, match="AIRCRAFT: the limits of the category normal depend"):
         envelope_asked("normal")
     with pytest.raises(UsageError, match="write 'utility' if that is meant"):
         envelope_asked("utilty")
+
+
+def test_rows_by_mass_hold_nothing_where_the_mass_is_not_known() -> None:
+    text = STEPPED.replace("mass: {maximum_take_off: 900 kg}\n", "").replace(
+        "stall_speed: [{mass: 900 kg, ", "stall_speed: [{"
+    )
+    found = larkspur(text.replace("- {maximum: 4 g", "- {mass_up_to: 900 kg, maximum: 4 g"))
+    assert found["conditions"]["mass"]["value"] is None
+    assert {"what": "positive limit", "why": "the rows go by mass, and the mass is not known"} in found["missing"]
 
 
 def test_wrong_options_are_all_told_at_once(tmp_path: Path) -> None:
