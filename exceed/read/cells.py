@@ -7,7 +7,7 @@ import re
 NUMBER_DOT = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?")
 NUMBER_COMMA = re.compile(r"[+-]?(\d+(,\d*)?|,\d+)([eE][+-]?\d+)?")
 GROUPED = re.compile(r"[+-]?\d{1,3}(?:(?P<mark>[,.'’\u00a0\u202f ])\d{3})(?:(?P=mark)\d{3})*(?:(?P<point>[.,])\d+)?")
-WITH_UNIT = re.compile(r"([+-]?(?:\d+(?:[.,]\d*)?|[.,]\d+))\s*([A-Za-z°%µ/²2]{1,7})")
+WITH_UNIT = re.compile(r"([+-]?(?:\d+(?:[.,]\d*)?|[.,]\d+))\s*([A-Za-z°%µ][A-Za-z°%µ/²2]{0,6})")
 STAMP = re.compile(
     r"\d{1,4}[-/. ](?:\d{1,2}|[A-Za-z]{3,9})[-/. ]\d{1,4}.*"  # a date, with or without a time
     r"|\d{1,2}:\d{2}(:\d{2}([.,:]\d+)?)?\s*([aApP][mM])?(\s*(Z|UTC|GMT|[+-]\d{1,2}:?\d{0,2}))?"  # a time of day

@@ -6,7 +6,7 @@ import re
 from collections.abc import Sequence
 
 from exceed.core.units import UNITS
-from exceed.read.cells import NUMBER_COMMA, NUMBER_DOT, is_missing
+from exceed.read.cells import NUMBER_COMMA, NUMBER_DOT, WITH_UNIT, is_missing
 from exceed.read.look import Column
 from exceed.read.recognise import is_clock
 from exceed.read.stamps import DATE, FULL, TIME, ClockPlan, one_date, zone_offset
@@ -28,6 +28,8 @@ def _numbers(cells: Sequence[str], decimal: str) -> list[float]:
     out = []
     for cell in cells:
         text = cell.strip().strip('"')
+        if match := WITH_UNIT.fullmatch(text):
+            text = match.group(1)
         if (NUMBER_DOT if decimal == "." else NUMBER_COMMA).fullmatch(text):
             out.append(float(text.replace(",", ".")))
     return out
@@ -62,7 +64,7 @@ def find_clock(
             offsets.append(column.index)
         elif column.form == "number":
             values = _numbers(some, decimal)
-            if role == "date" and values and all(v == int(v) and 19700101 <= v < 21000101 for v in values):
+            if role == "date" and values and _date_figures(some, values):
                 dates.append(column.index)
             elif role in ("hour", "minute", "second", "year", "month"):
                 parts[role] = column.index
@@ -70,8 +72,14 @@ def find_clock(
                 numbers.append(column.index)
             elif role == "frame":
                 frames.append(column.index)
-    if not full and dates and not times and numbers and _clock_figures(cells[numbers[0]], columns[numbers[0]], decimal):
-        times.append(numbers.pop(0))
+    if not full and not times:
+        apart = _apart(columns, cells, parts, numbers, dates, decimal, zone, day, notes)
+        if apart is not None:
+            return apart
+        figures = [k for k in numbers if _clock_figures(cells[k], columns[k], alone=not dates)]
+        if figures:
+            times.append(figures[0])
+            numbers.remove(figures[0])
     plan = _absolute(columns, cells, full, dates, times, offsets, zone, day, notes)
     counting = _numeric(columns, cells, numbers, frames, facts, decimal, notes, day, zone)
     if counting is not None and counting.kind == "epoch":
@@ -93,12 +101,49 @@ def find_clock(
     return counting.with_(anchor=plan.columns[0]) if plan.kind == "iso" else plan
 
 
-def _clock_figures(cells: Sequence[str], column: Column, decimal: str) -> bool:
-    """hhmmss as a number beside a date: six digits, none of the pairs above 59."""
-    if unit_in(column.unit_text) and any(UNITS[u].kind == "time" for u in unit_in(column.unit_text).units):  # type: ignore[union-attr]
+def _clock_figures(cells: Sequence[str], column: Column, alone: bool) -> bool:
+    """hhmmss as a number: no pair of digits above 59. Without a date beside it, it must also skip what seconds would not."""
+    stated = unit_in(column.unit_text)
+    if stated is not None and any(UNITS[unit].kind == "time" for unit in stated.units):
         return False
     filled = [cell.strip() for cell in cells if not is_missing(cell)]
-    return bool(filled) and all(re.fullmatch(r"([01]\d|2[0-3])[0-5]\d[0-5]\d([.,]\d+)?", text) for text in filled)
+    if not filled or not all(re.fullmatch(r"(0?\d|1\d|2[0-3])[0-5]\d[0-5]\d([.,]\d+)?", text) for text in filled):
+        return False
+    if not alone or any(text.startswith("0") and len(re.split("[.,]", text)[0]) == 6 for text in filled):
+        return True
+    # elapsed seconds would pass through endings from 60 to 99; a clock's figures never do
+    return len({re.split("[.,]", text)[0] for text in filled}) > 100
+
+
+def _date_figures(cells: Sequence[str], values: Sequence[float]) -> bool:
+    """yyyymmdd, ddmmyy, or a day of the month."""
+    if not all(value == int(value) for value in values):
+        return False
+    if all(19700101 <= value < 21000101 for value in values) or all(1 <= value <= 31 for value in values):
+        return True
+    return all(re.fullmatch(r"\d{6}", cell.strip()) for cell in cells if not is_missing(cell))
+
+
+def _apart(
+    columns: Sequence[Column], cells: Sequence[Sequence[str]], parts: dict[str, int], numbers: list[int], dates: list[int],
+    decimal: str, zone: str, day: int | None, notes: list[str],
+) -> ClockPlan | None:  # fmt: skip
+    """Hours, minutes and seconds (and year, month, day) in columns of their own."""
+    if "hour" not in parts or "minute" not in parts:
+        return None
+    second = parts.get("second")
+    if second is None:
+        second = next((k for k in numbers if max(_numbers(cells[k], decimal), default=99.0) < 61.0), None)
+    picked = {"hour": parts["hour"], "minute": parts["minute"]}
+    if second is not None:
+        picked["second"] = second
+    days = [k for k in dates if all(1 <= v <= 31 for v in _numbers(cells[k], decimal)) and _numbers(cells[k], decimal)]
+    if "year" in parts and "month" in parts and days:
+        picked |= {"year": parts["year"], "month": parts["month"], "day": days[0]}
+    heading = columns[parts["hour"]].name.lower()
+    where = "UTC" if re.search("utc|gmt|zulu", heading) else zone
+    kind = "date_time" if "year" in picked else "time_of_day"
+    return ClockPlan(kind, tuple(picked.values()), zone=where, typed="number", day=day, roles=tuple(picked), notes=tuple(notes))
 
 
 def _facts(facts: Sequence[tuple[str, str]]) -> tuple[int | None, str, list[str]]:

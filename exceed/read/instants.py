@@ -54,6 +54,8 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
     start0: float | None
     if plan.roles == ("row",):
         readings, start0, zone, kind = np.arange(parsed.rows) * plan.unit, None, "", "frame"
+    elif "hour" in plan.roles:
+        readings, start0, zone, kind = _apart(parsed, plan, notes)
     elif plan.roles in (("number",), ("frame",)):
         readings, start0, zone, kind = _counted(survey, parsed, plan)
     else:
@@ -110,6 +112,26 @@ def _counted(survey: Survey, parsed: Parsed, plan: ClockPlan) -> tuple[Array, fl
         else:
             readings *= plan.unit
     return readings, None, plan.zone, plan.kind
+
+
+def _apart(parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, float | None, str, str]:
+    """Hours, minutes, seconds and perhaps the date in columns of their own."""
+    part = {role: arrays.floats(parsed.columns.pop(place))[0] for role, place in zip(plan.roles, plan.columns, strict=True)}
+    readings = part["hour"] * 3600.0 + part["minute"] * 60.0 + part.get("second", np.zeros(1))
+    zone, away = _zone(plan, False, notes, plan.kind)
+    if "year" in part:
+        whole = [np.nan_to_num(part[name]).astype(np.int64) for name in ("year", "month", "day")]
+        whole[0] = np.where(whole[0] < 100, whole[0] + 2000, whole[0])
+        days = days_of(whole[0], whole[1], whole[2])
+        known = days != UNKNOWN
+        base = int(days[known][0]) if known.any() else 0
+        readings = readings + np.where(known, (days - base) * 86400.0, np.nan)
+        return readings, base * 86400.0 - away, zone, "date_time"
+    if plan.day is None:
+        notes.append("the stamps have no date, and no date is stated: times are elapsed, UTC is not given")
+        return readings, None, zone, "time_of_day"
+    notes.append("the date is the preamble's")
+    return readings, plan.day * 86400.0 - away, zone, "time_of_day"
 
 
 def _stamped(survey: Survey, parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, float | None, str, str]:

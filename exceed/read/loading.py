@@ -93,10 +93,11 @@ def parse_text(survey: Survey, chosen: list[Column], data: bytes | None = None) 
             types[place] = _type_of(survey, column)
     clock = survey.clock
     for place, role in zip(clock.columns, clock.roles, strict=False):
-        if role in ("number", "frame"):
-            types[place] = "number" if not survey.layout.grouping else "text"
+        if role in ("number", "frame", "hour", "minute", "second", "year", "month", "day"):
+            lettered = any(letter.isalpha() for cell in survey.columns[place].sample[:3] for letter in cell if letter not in "eE")
+            types[place] = "text" if lettered or (survey.layout.grouping and role in ("number", "frame")) else "number"
         elif role in ("full", "time"):
-            types[place] = clock.typed
+            types[place] = clock.typed if clock.typed != "number" else "text"
         else:
             types[place] = "word"
     if clock.anchor is not None:

@@ -401,4 +401,4 @@ def tanks(columns: Sequence[Column]) -> list[Column]:
 
 def is_clock(column: Column) -> str | None:
     """What a column can be to the clock."""
-    return clock_name(split_unit(column.name)[0]) or clock_name(column.name)
+    return clock_name(column.name) or clock_name(split_unit(column.name)[0])

@@ -53,7 +53,8 @@ _DATE = (
     r"|(?P<day3>\d{1,2})[-/. ]?(?P<name>[A-Za-z]{3,9})[-/. ,]*(?P<year3>\d{4}|\d{2})"
     r"|(?P<name4>[A-Za-z]{3,9})[-/. ]+(?P<day4>\d{1,2})[-/. ,]+(?P<year4>\d{4})"
     r"|(?P<year5>\d{4})-(?P<yearday>\d{3})"
-    r"|(?P<year6>\d{4})(?P<month6>\d{2})(?P<day6>\d{2}))"
+    r"|(?P<year6>\d{4})(?P<month6>\d{2})(?P<day6>\d{2})"
+    r"|(?P<first7>\d{2})(?P<second7>\d{2})(?P<year7>\d{2}))"
 )
 _TIME = (
     r"(?:(?P<hour>\d{1,2}):(?P<minute>\d{2})(?::(?P<sec>\d{2})(?:[.,:](?P<fraction>\d{1,9})\d*)?)?(?:\s*(?P<half>[AaPp])\.?[Mm]\.?)?"
@@ -168,10 +169,10 @@ def _fill(out: Stamps, rows: Whole, letters: NDArray[np.uint8], match: re.Match[
                 return value
         return None
 
-    year = number("year", "year2", "year3", "year4", "year5", "year6")
+    year = number("year", "year2", "year3", "year4", "year5", "year6", "year7")
     bad = np.zeros(len(rows), bool)
     if year is not None:
-        key = next(k for k in ("year", "year2", "year3", "year4", "year5", "year6") if k in spans)
+        key = next(k for k in ("year", "year2", "year3", "year4", "year5", "year6", "year7") if k in spans)
         if spans[key][1] - spans[key][0] == 2:
             year = year + np.where(year < 70, 2000, 1900)
         out.year[rows] = year
@@ -186,8 +187,8 @@ def _fill(out: Stamps, rows: Whole, letters: NDArray[np.uint8], match: re.Match[
             of_year = number("yearday")
             assert of_year is not None
             out.days[rows] = days_of(year, np.ones_like(year), np.ones_like(year)) + of_year - 1
-        elif "first" in spans:
-            first, second = number("first"), number("second")
+        elif "first" in spans or "first7" in spans:
+            first, second = number("first", "first7"), number("second", "second7")
             assert first is not None
             assert second is not None
             out.first[rows], out.second[rows] = first, second
@@ -268,10 +269,10 @@ def one_date(text: str) -> tuple[int | None, tuple[int, int, int] | None]:
     def pick(*keys: str) -> int:
         return next((int(part[key]) for key in keys if key in part), 0)
 
-    year = pick("year", "year2", "year3", "year4", "year5", "year6")
+    year = pick("year", "year2", "year3", "year4", "year5", "year6", "year7")
     year += (2000 if year < 70 else 1900) if year < 100 else 0
-    if "first" in part:
-        first, second = int(part["first"]), int(part["second"])
+    if "first" in part or "first7" in part:
+        first, second = pick("first", "first7"), pick("second", "second7")
         if first > 12 or second > 12 or first == second:
             day, month = (first, second) if second <= 12 else (second, first)
             found = int(days_of(np.array([year]), np.array([month]), np.array([day]))[0])

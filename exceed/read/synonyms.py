@@ -138,14 +138,14 @@ PHRASES: list[Phrase] = [
     *_rows("angle_of_attack", "aoa, angle of attack, alpha, incidence, alfa, aoal, aoar, incidence angle, aoa angle, alpha vane, aoa vane, "
            "local angle of attack, body angle of attack", 1.0),
     *_rows("sideslip_angle", "sideslip, sideslip angle, aos, angle of sideslip, slip angle, yaw sideslip, slipangle", 1.0),
-    *_rows("indicated_airspeed", "ias, indicated airspeed, indicated air speed, airspeed indicated, kias, vias, vi, indicated speed, "
+    *_rows("indicated_airspeed", "ias, v ind, v indicated, v ias, ind speed, indicated airspeed, indicated air speed, airspeed indicated, kias, vias, vi, indicated speed, "
            "airspeed ias, speed indicated", 1.0),
     *_rows("indicated_airspeed", "airspeed, air speed, asi", 0.8),
     *_rows("calibrated_airspeed", "cas, calibrated airspeed, calibrated air speed, kcas, airspeed calibrated, vcas, vc, airspeed cas, "
            "rectified airspeed, calibrated speed", 1.0),
     *_rows("equivalent_airspeed", "eas, equivalent airspeed, equivalent air speed, keas, veas, airspeed equivalent", 1.0),
-    *_rows("true_airspeed", "tas, true airspeed, true air speed, ktas, vtas, airspeed true, vt, airspeed tas, true speed", 1.0),
-    *_rows("ground_speed", "gs, ground speed, groundspeed, gspd, gndspd, sog, speed over ground, gps speed, ground velocity, geometric speed, "
+    *_rows("true_airspeed", "tas, v true, v tas, true airspeed, true air speed, ktas, vtas, airspeed true, vt, airspeed tas, true speed", 1.0),
+    *_rows("ground_speed", "gs, v ground, v gnd, v gs, ground speed, groundspeed, gspd, gndspd, sog, speed over ground, gps speed, ground velocity, geometric speed, "
            "geometric ground speed, inertial ground speed, grspd, vg speed, gps ground speed", 1.0),
     *_rows("mach", "mach, mach number, machnumber, m, mn, mno, mach mach", 1.0),
     *_rows("pressure_altitude", "pressure altitude, palt, pressalt, altitude pressure, altitude std, std altitude, altstd, standard altitude, "

@@ -213,6 +213,8 @@ def _headings(
                 break
             place -= 1
             continue
+        if len(filled) <= 2 and width != 2 and _PAIR.match(lines[place].strip()):
+            break
         words = sum(form(cell) in ("word", "empty") or is_unit_cell(cell) for cell in filled)
         enough = len(cells) >= max(1, 0.6 * width) and (len(cells) <= width + 1 or len(filled) <= width + 1)
         if not enough or len(filled) < min(width, max(2, 0.15 * width)) or words < 0.5 * len(filled):

@@ -249,3 +249,36 @@ def test_no_row_with_a_time_is_an_error(tmp_path: Path) -> None:
     assert len(log(tmp_path, text).time) == 30
     with pytest.raises(LogError, match="no clock"):
         log(tmp_path, "NZ [g],IAS [kt]\n" + "\n".join("1.0,100" for _ in range(30)) + "\n")
+
+
+def cut(k: int) -> tuple[int, int, float]:
+    """Hours, minutes, seconds from 09:58:30."""
+    second = 35910.0 + k * 0.125
+    return int(second // 3600), int(second % 3600 // 60), second % 60
+
+
+@pytest.mark.parametrize("order", ["ymd", "dmy"])
+def test_figures_without_marks(tmp_path: Path, order: str) -> None:
+    """hhmmss is no count of seconds: read as one, each minute would last 100 s."""
+    date = {"ymd": "20310525", "dmy": "250531"}[order]
+    lines = ["DATE,TIME,NZ [g]"] + ["{},{:02d}{:02d}{:06.3f},1.00{}".format(date, *cut(k), k % 10) for k in range(900)]
+    recording = log(tmp_path, "\n".join(lines) + "\n")
+    assert recording.clock.start == pytest.approx(datetime.datetime(2031, 5, 25, 9, 58, 30, tzinfo=UTC).timestamp())
+    assert np.allclose(recording.time, np.arange(900) / 8, atol=1e-6)
+
+
+def test_hours_minutes_and_seconds_apart(tmp_path: Path) -> None:
+    lines = ["GMT HOUR,GMT MIN,GMT SEC,NZ [g]"] + ["{},{},{:.3f},1.00{}".format(*cut(k), k % 10) for k in range(900)]
+    recording = log(tmp_path, "\n".join(lines) + "\n")
+    assert (recording.clock.kind, recording.clock.start) == ("time_of_day", None)
+    assert np.allclose(recording.time, np.arange(900) / 8, atol=1e-6)
+    lines = ["YEAR,MONTH,DAY," + lines[0]] + ["2031,5,2," + line for line in lines[1:]]
+    recording = log(tmp_path, "\n".join(lines) + "\n")
+    assert recording.clock.start == pytest.approx(datetime.datetime(2031, 5, 2, 9, 58, 30, tzinfo=UTC).timestamp())
+
+
+def test_rows_alone_with_a_stated_rate(tmp_path: Path) -> None:
+    text = "Sample rate: 8 Hz\nNZ [g]\n" + "".join(f"1.00{k % 10}\n" for k in range(200))
+    recording = log(tmp_path, text)
+    assert np.allclose(recording.time, np.arange(200) / 8)
+    assert "no clock column: rows are counted, 8 a second as the preamble says" in recording.clock.notes
