@@ -145,6 +145,13 @@ def test_recordings_that_begin_and_end_in_the_air_say_so() -> None:
         assert (flight.take_off_seen, flight.landing_seen, flight.landings) == (False, True, 1)
 
 
+def test_a_recording_that_stops_in_the_air_is_flown_to_its_last_sample() -> None:
+    recording = profile([point for point in CIRCUIT if point[0] <= 480])
+    found = flights(recording, STALL)
+    assert found.flights[-1].end == recording.time[-1]
+    assert found.airborne.contains(recording.time[-5:]).all()
+
+
 @pytest.mark.parametrize("stall", [STALL, None])
 def test_several_flights_in_one_log_are_told_apart(stall: float | None) -> None:
     recording = profile(joined(CIRCUIT, CIRCUIT, CIRCUIT), noise=0.2)
