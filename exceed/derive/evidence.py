@@ -258,11 +258,11 @@ def _settled(coarse: Coarse, evidence: NDArray[np.int8], least_air: float, least
         closes = np.append(opens[1:], len(air)) - 1
         air, begin, stop = air[opens], begin[opens], stop[closes]
     # an open end is that of the recording: the last cell begins up to a second before it
-    last = float(coarse.recording.time[-1])
+    final = float(coarse.recording.time[-1])
     found = []
     for place in np.flatnonzero(air).tolist():
         start_seen, end_seen = place > 0, place < len(air) - 1
-        since, until = float(begin[place]) if start_seen else float(time[0]), float(stop[place]) if end_seen else last
+        since, until = float(begin[place]) if start_seen else float(time[0]), float(stop[place]) if end_seen else final
         found.append(Stretch(since, until, start_seen, end_seen))
     return found
 
