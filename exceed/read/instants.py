@@ -118,7 +118,6 @@ def _apart(parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, fl
     """Hours, minutes, seconds and perhaps the date in columns of their own."""
     part = {role: arrays.floats(parsed.columns.pop(place))[0] for role, place in zip(plan.roles, plan.columns, strict=True)}
     readings = part["hour"] * 3600.0 + part["minute"] * 60.0 + part.get("second", np.zeros(1))
-    zone, away = _zone(plan, False, notes, plan.kind)
     if "year" in part:
         whole = [np.nan_to_num(part[name]).astype(np.int64) for name in ("year", "month", "day")]
         whole[0] = np.where(whole[0] < 100, whole[0] + 2000, whole[0])
@@ -126,7 +125,9 @@ def _apart(parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, fl
         known = days != UNKNOWN
         base = int(days[known][0]) if known.any() else 0
         readings = readings + np.where(known, (days - base) * 86400.0, np.nan)
+        zone, away = _zone(plan, False, notes, base * 86400.0)
         return readings, base * 86400.0 - away, zone, "date_time"
+    zone, away = _zone(plan, False, notes, (plan.day or 0) * 86400.0)
     if plan.day is None:
         notes.append("the stamps have no date, and no date is stated: times are elapsed, UTC is not given")
         return readings, None, zone, "time_of_day"
@@ -162,7 +163,7 @@ def _stamped(survey: Survey, parsed: Parsed, plan: ClockPlan, notes: list[str]) 
     base = int(whole[good[0]])
     readings = (whole - base) / 1e9
     readings[bad] = np.nan
-    zone, away = _zone(plan, zoned, notes, kind)
+    zone, away = _zone(plan, zoned, notes, base / 1e9 if kind != "time_of_day" else (plan.day or 0) * 86400.0)
     if kind == "time_of_day":
         readings += (base % DAY) / 1e9
         if plan.day is None:
@@ -174,8 +175,8 @@ def _stamped(survey: Survey, parsed: Parsed, plan: ClockPlan, notes: list[str]) 
     return readings, base / 1e9 - away, zone, kind
 
 
-def _zone(plan: ClockPlan, zoned: bool, notes: list[str], kind: str) -> tuple[str, float]:
-    """(zone as outputs say it, seconds to take off to get UTC)."""
+def _zone(plan: ClockPlan, zoned: bool, notes: list[str], moment: float) -> tuple[str, float]:
+    """(zone as outputs say it, seconds to take off to get UTC) at a local moment, s since 1970."""
     if zoned:
         return "UTC, from the zone in the log", plan.offset * -1.0 if plan.offset else 0.0
     if plan.zone == "in the cells":
@@ -186,7 +187,7 @@ def _zone(plan: ClockPlan, zoned: bool, notes: list[str], kind: str) -> tuple[st
     if plan.zone == "local":
         notes.append("the stamps are local time and no offset is stated: taken as UTC")
     elif plan.zone:
-        place = _place(plan.zone)
+        place = _place(plan.zone, moment)
         if place is not None:
             return plan.zone, place - plan.offset
         notes.append(f"the zone '{plan.zone}' is not understood: taken as UTC")
@@ -195,17 +196,18 @@ def _zone(plan: ClockPlan, zoned: bool, notes: list[str], kind: str) -> tuple[st
     return "UTC, assumed", -plan.offset
 
 
-def _place(name: str) -> float | None:
-    """A place's zone has a fixed offset only if it knows no summer time."""
-    from datetime import datetime
+def _place(name: str, moment: float) -> float | None:
+    """Offset of a place's zone at a local moment, s; None for an unknown place."""
+    from datetime import UTC, datetime
     from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
     try:
-        zone = ZoneInfo(name)
-    except (ZoneInfoNotFoundError, ValueError, OSError):
+        zone = ZoneInfo(name.strip())
+        local = datetime.fromtimestamp(moment, UTC).replace(tzinfo=zone)
+    except (ZoneInfoNotFoundError, ValueError, OSError, OverflowError):
         return None
-    winter, summer = (datetime(2031, month, 1, tzinfo=zone).utcoffset() for month in (1, 7))
-    return winter.total_seconds() if winter is not None and winter == summer else None
+    offset = local.utcoffset()
+    return None if offset is None else offset.total_seconds()
 
 
 def _full(
@@ -326,7 +328,7 @@ def _anchored(
     good = ~bad[rows]
     if not good.any() or made.resets:
         return None, ""
-    zone, away = _zone(plan, zoned, notes, "iso")
+    zone, away = _zone(plan, zoned, notes, float(whole[rows][good][0]) / 1e9)
     # a stamp cut to whole seconds is late by less than its step, so the largest difference is the nearest
     return float(np.max(whole[rows][good] / 1e9 - made.time[good])) - away, zone
 

@@ -33,6 +33,15 @@ def matching(columns: Sequence[Column], name: str) -> list[Column]:
     return []
 
 
+def _near(name: str, columns: Sequence[Column]) -> str | None:
+    """The heading that a name most probably means."""
+    from exceed.read.units_in_text import split_unit
+
+    by_plain = {split_unit(column.name)[0].lower(): column.name for column in reversed(columns)}
+    found = difflib.get_close_matches(split_unit(name)[0].lower(), by_plain, n=1, cutoff=0.5)
+    return by_plain[found[0]] if found else None
+
+
 def apply_channels(
     columns: Sequence[Column], channels: Any, declared: Mapping[str, str], shown: str
 ) -> tuple[list[Column], list[str]]:
@@ -43,10 +52,10 @@ def apply_channels(
     for entry in getattr(channels, "channels", None) or ():
         found = matching(out, entry.column)
         if not found:
-            near = difflib.get_close_matches(entry.column, [c.name for c in out], n=1)
+            near = _near(entry.column, out)
             notes.append(
                 f"the channels file names column '{entry.column}', which is not in the log"
-                + (f"; it has '{near[0]}'" if near else "")
+                + (f"; it has '{near}'" if near else "")
             )
             continue
         column = found[0]
@@ -104,10 +113,10 @@ def told_clock(
     for name in names:
         found = matching(columns, str(name)) if name else []
         if not found:
-            near = difflib.get_close_matches(str(name), [c.name for c in columns], n=1)
+            near = _near(str(name), columns)
             raise LogError(
                 Problem(shown, f"the channels file names the clock column '{name}', which is not in the log",
-                        expected="one of its columns" + (f", for example '{near[0]}'" if near else ""),
+                        expected="one of its columns" + (f", for example '{near}'" if near else ""),
                         do="correct 'clock' in the channels file")
             )  # fmt: skip
         places.append(found[0].index)
