@@ -107,6 +107,8 @@ def is_open(column: Column) -> bool:
         "roll_rate",
         "pitch_rate",
         "yaw_rate",
+        "turn_rate",
+        "vertical_speed",
         "weight_on_wheels",
         "gear_down",
     )

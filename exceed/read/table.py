@@ -325,6 +325,9 @@ def facts_in(lines: tuple[str, ...], delimiter: str) -> list[tuple[str, str]]:
         if not text or len(text) > 2000:
             continue
         cells = [cell.strip().strip('"').strip() for cell in split(text, delimiter)] if delimiter != " " else [text]
+        if len(cells) == 1 and not _PAIR.match(text):
+            other = next((mark for mark in (";", "\t", "|", ",") if mark in text), None)
+            cells = [cell.strip() for cell in split(text, other)] if other else cells
         while cells and not cells[-1]:
             cells.pop()
         single = [_PAIR.match(cell) for cell in cells]
