@@ -280,7 +280,8 @@ def test_the_database_itself_refuses_to_lose_or_change_a_row(book, sql):
 def test_filters_choose_by_aeroplane_time_rule_severity_and_state(book):
     record(book, summary(
         sortie(), recording("c.csv", registration="ZZ-NMC", events=[event(812.0, 813.0, severity="warning")]),
-        recording("n.csv", day=DAY + timedelta(days=1), events=[event(5.0, 6.0, rule="never-exceed", certainty="possible")]),
+        recording("n.csv", day=DAY + timedelta(days=1),
+                  events=[event(5.0, 6.0, rule="never-exceed", certainty="possible")]),
         recording("u.csv", start=None, events=[event(5.0, 6.0)]),
     ))  # fmt: skip
 

@@ -288,8 +288,10 @@ def test_a_better_view_of_a_cut_event_takes_its_place_and_a_poorer_one_does_not(
     assert [row["kind"] for row in result["changes"]] == ["changed"]
     (found,) = all_events(book)
     assert (found["end_s"], found["severity"]) == (816.0, "warning")
-    poorer = recording("3.csv", start=9 * 3600.0 + 814.0, length=400.0, events=[event(0.0, 2.0, cut_by="recording_start")],
-                       flights=[flight(0.0, 400.0, broken="startend")])  # fmt: skip
+    poorer = recording(
+        "3.csv", start=9 * 3600.0 + 814.0, length=400.0, flights=[flight(0.0, 400.0, broken="startend")],
+        events=[event(0.0, 2.0, cut_by="recording_start")],
+    )  # fmt: skip
     assert record(book, summary(poorer))["changes"] == []
     assert all_events(book) == [found]
 
