@@ -258,9 +258,10 @@ def _spikes(series: Series, others: Mapping[str, Series], out: Checked) -> None:
             continue
         both = large[:-1] & large[1:] & (np.sign(steps[:-1]) != np.sign(steps[1:]))
         candidates += (np.flatnonzero(both) + max(0, start - 1) + 1).tolist()
-    if not candidates:
+    found = [] if series.quantity.endswith("load_factor") else _at_the_ends(values, least, wraps)
+    doubtful = 0
+    if not candidates and not found:
         return
-    found, doubtful = [], 0
     when = series.at()
     for place in sorted(set(candidates)):
         verdict = _verdict(series, place, when, others, wraps)
@@ -274,6 +275,19 @@ def _spikes(series: Series, others: Mapping[str, Series], out: Checked) -> None:
             f"{doubtful} lone sample{'s' * (doubtful != 1)} far from {'their' if doubtful != 1 else 'its'} neighbours "
             f"{'are' if doubtful != 1 else 'is'} kept: nothing else shows that {'they were' if doubtful != 1 else 'it was'} not flown"
         )
+
+
+def _at_the_ends(values: Array, least: float, wraps: bool) -> list[int]:
+    """First or last sample, far from the four beside it, which agree: there is but one neighbour to ask."""
+    found = []
+    for place, near in ((0, values[1:5]), (len(values) - 1, values[-5:-1])):
+        off = np.append(near, values[place]) - near[0]
+        if wraps:
+            off = (off + np.pi) % (2 * np.pi) - np.pi
+        size = abs(float(off[-1] - np.median(off[:-1])))
+        if size > 3.0 * least and float(np.ptp(off[:-1])) < 0.1 * size:
+            found.append(place)
+    return found
 
 
 def _verdict(series: Series, place: int, when: Array, others: Mapping[str, Series], wraps: bool) -> str:

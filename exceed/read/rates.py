@@ -3,51 +3,80 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
 from exceed.core.recording import Array
 from exceed.read.look import Column
+from exceed.read.recognise import recognise
+from exceed.read.units_in_text import split_unit
 
-_SUFFIX = re.compile(r"^(.*?)[\s_\-.]*[\[(]?(\d{1,3})[\])]?$")
+_NUMBER = re.compile(r"^(.*?)[\s_\-.]*[\[(]?(\d{1,3})[\])]?$")
+_OFFSET = re.compile(r"^(.*?)\s*[@+_ ]\s*(0?\.\d+|0|0\.0+)\s*s?$")
+_LETTER = re.compile(r"^(.*?[A-Za-z0-9])[\s_\-.]?([a-h])$")
 # so many changes, all on one phase of the period, that chance would do it once in a million times
 _LEAST_CHANGES = 8
 _LEAST_BITS = 20.0
 _HELD_AT_MOST = 64
 
 
-def groups(columns: Sequence[Column]) -> list[Column]:
-    """Mark sub-frame groups: `NZ1 .. NZ8`, `NZ_1`, `NZ(1)`: one base, counted from 0 or 1 without a hole, in this order."""
-    from exceed.read.units_in_text import split_unit
+def groups(columns: Sequence[Column], declared: Mapping[str, str]) -> list[Column]:
+    """Mark sub-frame groups: `NZ1 .. NZ8`, `NZ_1`, `NZ(1)`, `NZ a .. NZ d`, `NZ@0.125`: one base and unit, in this order.
 
-    bases: dict[tuple[str, str], list[tuple[int, Column]]] = {}
-    for column in columns:
-        if not column.quantity or column.problem or column.ignored or column.part >= 0:
-            continue
-        name = split_unit(column.name)[0]
-        match = _SUFFIX.match(name) or _SUFFIX.match(column.name)
-        if match and match.group(1).strip():
-            bases.setdefault((match.group(1).strip().lower(), column.quantity), []).append(
-                (int(match.group(2)), column)
-            )
+    Numbers count from 0 or 1 without a hole, letters from a, offsets are even.
+    """
     out = list(columns)
-    for members in bases.values():
-        members.sort(key=lambda item: item[0])
-        numbers = [number for number, _ in members]
-        if (
-            len(members) < 2
-            or numbers[0] not in (0, 1)
-            or numbers != list(range(numbers[0], numbers[0] + len(numbers)))
-        ):
-            continue
-        places = tuple(column.index for _, column in members)
-        lead = places[0]
-        out[lead] = out[lead].with_(group=places)
-        for place in places[1:]:
-            out[place] = out[place].with_(part=lead)
+    for pattern in (_OFFSET, _NUMBER, _LETTER):
+        bases: dict[tuple[str, str], list[tuple[str, Column]]] = {}
+        for column in out:
+            if column.ignored or column.part >= 0 or column.group or column.found_by == "channels file" or column.form == "stamp":
+                continue
+            if pattern is _NUMBER and not column.quantity:
+                continue
+            for name in (split_unit(column.name)[0], column.name):
+                match = pattern.match(name.strip())
+                if match and match.group(1).strip(" _-.@+"):
+                    bases.setdefault((match.group(1).strip(" _-.@+").lower(), column.unit_text), []).append((match.group(2), column))
+                    break
+        for (base, _), members in bases.items():
+            members = _in_order(pattern, members)
+            if not members:
+                continue
+            lead = members[0].with_(group=tuple(column.index for column in members))
+            if pattern is not _NUMBER:
+                known = recognise(lead.index, base.upper() if len(base) < 4 else base, lead.unit_text, lead.source, lead.sample, declared)
+                if not known.quantity or known.problem:
+                    continue
+                lead = known.with_(name=lead.name, group=lead.group)
+            elif any(column.quantity != lead.quantity or column.problem for column in members):
+                continue
+            out[lead.index] = lead
+            for column in members[1:]:
+                out[column.index] = out[column.index].with_(
+                    part=lead.index, quantity=lead.quantity, unit=lead.unit, units=lead.units, problem="", question="",
+                    score=lead.score, reason=lead.reason, found_by=lead.found_by,
+                )  # fmt: skip
     return out
+
+
+def _in_order(pattern: re.Pattern[str], members: list[tuple[str, Column]]) -> list[Column]:
+    """The members in order of time, or none if they are no whole group."""
+    if pattern is _LETTER:
+        members = sorted(members, key=lambda item: item[0])
+        letters = "".join(letter for letter, _ in members)
+        return [column for _, column in members] if len(letters) >= 3 and letters == "abcdefgh"[: len(letters)] else []
+    numbered = sorted(((float(text), column) for text, column in members), key=lambda item: item[0])
+    values = [number for number, _ in numbered]
+    if len(values) < 2:
+        return []
+    if pattern is _NUMBER:
+        whole = values[0] in (0.0, 1.0) and values == [values[0] + k for k in range(len(values))]
+        return [column for _, column in numbered] if whole else []
+    step = values[1] - values[0]
+    even = values[0] == 0.0 and step > 0 and all(abs(value - k * step) < 0.02 * step for k, value in enumerate(values))
+    return [column for _, column in numbered] if even and len(values) >= 2 and step < 1.0 else []
 
 
 def held(values: Array) -> tuple[int, int] | None:

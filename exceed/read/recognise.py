@@ -129,6 +129,9 @@ def recognise(
     column = Column(index, name, unit_text, source, shape, cells[:40])
     if unit_text and plain(unit_text) in RAW and not unit_in(unit_text):
         return column.with_(problem=f"written in {unit_text}: raw sensor output, no physical quantity")
+    multiple = _multiple(name, unit_cell)
+    if multiple:
+        return column.with_(problem=f"written in '{multiple}', a multiple of a unit", question="Which quantity is it, and in which unit?")
     own = _declared(bare, name, declared)
     found, why = ((own,), "") if own else meanings(bare)
     whole, _ = meanings(name) if not own else ((), "")
@@ -149,6 +152,18 @@ def recognise(
     if not found:
         return column.with_(problem=f"not understood: {why}" if why else "not understood")
     return _with_unit(column, found, unit_text, unit_from, declared)
+
+
+_MULTIPLE = re.compile(r"(?:[x×*/]\s*\d[\d.,eE+\-^]*|\d[\d.,]*\s*[x×*]?)\s*([A-Za-z°%/²2]+)|([A-Za-z°%/]+)\s*[x×*/]\s*\d+(?:[.,]\d+)?|\bFL\b|flight level", re.I)
+
+
+def _multiple(name: str, unit_cell: str) -> str:
+    """`x100 ft`, `ft*10`, `0.01 g`, FL: figures that are a multiple of a unit are no figures in it."""
+    for text in (unit_cell, *re.findall(r"[\[({]\s*([^\[\](){}]*?)\s*[\])}]", name)):
+        match = _MULTIPLE.fullmatch(text.strip())
+        if match and not unit_in(text) and (match.group(1) is None or unit_in(match.group(1))):
+            return text.strip()
+    return ""
 
 
 def _with_unit(

@@ -93,7 +93,7 @@ def assemble(
     columns = [
         c.with_(quantity=None, problem="") if c.index in plan.columns or c.index == plan.anchor else c for c in columns
     ]
-    columns = groups(indexed(tanks(columns), declared))
+    columns = groups(indexed(tanks(columns), declared), declared)
     registration = registration or _in_column(columns, cells)
     return Survey(
         source,

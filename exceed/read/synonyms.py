@@ -187,6 +187,7 @@ PHRASES: list[Phrase] = [
            "inflight, gear squat, wheels weight, oleo, oleo switch, gear compressed, air ground switch, weight wheels", 1.0),
     *_rows("stall_warning", "stall warning, stall, stall warn, stick shaker, shaker, stallwarn, stall horn, stall warning horn, stall alert", 1.0),
     *_rows("on_tow", "on tow, tow, tow hook, under tow, tow rope, towing", 0.9),
+    *_rows("on_winch", "on winch, winch, winch launch, winch hook, winch rope, winch cable", 0.9),
     *_rows("fuel_mass", "fuel, fuel quantity, fuel mass, fuel weight, fq, fob, fqty, fuel on board, fuel total, total fuel, fuel quantity total, "
            "fuel total quantity, total fuel quantity, fuel remaining total", 0.9),
     *_rows("fuel_volume", "fuel, fuel quantity, fuel volume, fq, fob, fqty, fuel on board, fuel total, total fuel, fuel quantity total, "

@@ -101,7 +101,7 @@ def layout(source: Source) -> Layout:
     notes = [] if headings else ["no headings: columns are counted"]
     return Layout(
         delimiter, decimal, grouping, delimiter == " ", start, names, units, sources, tuple(tuple(h) for h in headings),
-        tuple(facts_in(preamble, delimiter)), preamble, tuple(tuple(c.strip() for c in row) for row in spread(data, LOOKED_AT)),
+        tuple([*facts_in(preamble, delimiter), *_facts_among(headings, names, delimiter)]), preamble, tuple(tuple(c.strip() for c in row) for row in spread(data, LOOKED_AT)),
         comment, short > 0.01 * len(data) + 1, tuple(notes),
     )  # fmt: skip
 
@@ -341,6 +341,16 @@ def facts_in(lines: tuple[str, ...], delimiter: str) -> list[tuple[str, str]]:
             ]
         elif match := _PAIR.match(text):
             found.append((match.group(1).strip(), match.group(2).strip().strip('"').rstrip(delimiter).strip()))
+    return found
+
+
+def _facts_among(headings: list[list[str]], names: tuple[str, ...], delimiter: str) -> list[tuple[str, str]]:
+    """A row of facts that has as many cells as the table may be taken for a heading: its registration and serial count."""
+    found = []
+    for row in headings:
+        if tuple(row) != names:
+            pairs = facts_in((delimiter.join(row),), delimiter)
+            found += [(key, value) for key, value in pairs if _REGISTRATION.search(key) or _SERIAL.search(key)]
     return found
 
 
