@@ -266,12 +266,12 @@ def run_lint(files: list[Path]) -> int:
 
     bad = False
     for path in files:
-        problems = lint(path)
+        problems, advice = check(path)
         bad = bad or bool(problems)
-        for problem in problems:
-            print(problem)
+        for problem in (*problems, *advice):
+            print("\n".join(visible(line) for line in str(problem).split("\n")))
         if not problems:
-            print(f"{path}: no problem found")
+            print(f"{visible(path)}: no problem found")
     return WRONG if bad else DONE
 
 
