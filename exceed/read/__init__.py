@@ -57,9 +57,13 @@ def load(
 
 
 def read_log(
-    path: str | os.PathLike[str], wanted: set[str] | None = None, channels: object | None = None, *,
-    declared: Mapping[str, str] | None = None, ranges: Mapping[str, tuple[float, float]] | None = None,
-) -> Recording:  # fmt: skip
+    path: str | os.PathLike[str],
+    wanted: set[str] | None = None,
+    channels: object | None = None,
+    *,
+    declared: Mapping[str, str] | None = None,
+    ranges: Mapping[str, tuple[float, float]] | None = None,
+) -> Recording:
     """Survey and load in one. Raises LogError."""
     return load(survey(path, channels=channels, declared=declared), wanted, ranges=ranges)
 

@@ -106,7 +106,8 @@ def build(readings: Array, *, kind: str, slowest: int = 1, origin: float = 0.0, 
             readings, seams = _parted(readings, steps, back, slowest)
             resets = len(back)
             notes.append(
-                f"the clock was set back {resets} time{'s' * (resets != 1)}: each stretch stands after the one before, "
+                f"the clock was set back {resets} time{'s' * (resets != 1)}: each stretch stands after the one "
+                f"before, "
                 "the time between them is not known"
             )
     first = float(readings[0])

@@ -15,11 +15,13 @@ from exceed.read.units_in_text import unit_in
 # seconds since 1970 of 1990 and 2100: a number between them, in its unit, is an epoch
 _EPOCH_FROM, _EPOCH_TO = 6.3e8, 4.1e9
 _FRAME_RATE = re.compile(
-    r"(frame|sample|sampling|record|recording|data|log|logging|scan|update|row|acquisition)s?[ _-]*(rate|frequency|freq)|^rate$|^frequency$|hz",
+    r"(frame|sample|sampling|record|recording|data|log|logging|scan|update|row|acquisition)s?[ "
+    r"_-]*(rate|frequency|freq)|^rate$|^frequency$|hz",
     re.I,
 )
 _FRAME_PERIOD = re.compile(
-    r"(frame|sample|sampling|record|recording|log|logging|data|scan|row)[ _-]*(interval|period|time|length|duration)|^interval$|^period$",
+    r"(frame|sample|sampling|record|recording|log|logging|data|scan|row)[ "
+    r"_-]*(interval|period|time|length|duration)|^interval$|^period$",
     re.I,
 )
 
@@ -125,9 +127,16 @@ def _date_figures(cells: Sequence[str], values: Sequence[float]) -> bool:
 
 
 def _apart(
-    columns: Sequence[Column], cells: Sequence[Sequence[str]], parts: dict[str, int], numbers: list[int], dates: list[int],
-    decimal: str, zone: str, day: int | None, notes: list[str],
-) -> ClockPlan | None:  # fmt: skip
+    columns: Sequence[Column],
+    cells: Sequence[Sequence[str]],
+    parts: dict[str, int],
+    numbers: list[int],
+    dates: list[int],
+    decimal: str,
+    zone: str,
+    day: int | None,
+    notes: list[str],
+) -> ClockPlan | None:
     """Hours, minutes and seconds (and year, month, day) in columns of their own."""
     if "hour" not in parts or "minute" not in parts:
         return None
@@ -143,7 +152,9 @@ def _apart(
     heading = columns[parts["hour"]].name.lower()
     where = "UTC" if re.search("utc|gmt|zulu", heading) else zone
     kind = "date_time" if "year" in picked else "time_of_day"
-    return ClockPlan(kind, tuple(picked.values()), zone=where, typed="number", day=day, roles=tuple(picked), notes=tuple(notes))
+    return ClockPlan(
+        kind, tuple(picked.values()), zone=where, typed="number", day=day, roles=tuple(picked), notes=tuple(notes)
+    )
 
 
 def _facts(facts: Sequence[tuple[str, str]]) -> tuple[int | None, str, list[str]]:
@@ -171,9 +182,16 @@ def _facts(facts: Sequence[tuple[str, str]]) -> tuple[int | None, str, list[str]
 
 
 def _absolute(
-    columns: Sequence[Column], cells: Sequence[Sequence[str]], full: list[int], dates: list[int], times: list[int],
-    offsets: list[int], zone: str, day: int | None, notes: list[str],
-) -> ClockPlan | None:  # fmt: skip
+    columns: Sequence[Column],
+    cells: Sequence[Sequence[str]],
+    full: list[int],
+    dates: list[int],
+    times: list[int],
+    offsets: list[int],
+    zone: str,
+    day: int | None,
+    notes: list[str],
+) -> ClockPlan | None:
     def heading_zone(index: int) -> str:
         text = f"{columns[index].name} {columns[index].unit_text} {columns[index].source}".lower()
         if re.search(r"utc|gmt|zulu", text):
@@ -201,8 +219,15 @@ def _absolute(
         )
         every = all(m and m.group("zone") for m in matches)
         typed = ("stamp_zone" if every else "text" if zoned else "stamp") if iso else "text"
-        return ClockPlan("iso", (index,), zone="in the cells" if zoned else heading_zone(index) or zone, typed=typed, day=day,
-                         roles=("full",), notes=tuple(notes))  # fmt: skip
+        return ClockPlan(
+            "iso",
+            (index,),
+            zone="in the cells" if zoned else heading_zone(index) or zone,
+            typed=typed,
+            day=day,
+            roles=("full",),
+            notes=tuple(notes),
+        )
     if times:
         merit_time = sorted(times, key=lambda i: (-len({c for c in cells[i] if c}), i))
         utc = [i for i in merit_time if heading_zone(i) == "UTC"]
@@ -234,9 +259,16 @@ def _absolute(
 
 
 def _numeric(
-    columns: Sequence[Column], cells: Sequence[Sequence[str]], numbers: list[int], frames: list[int],
-    facts: Sequence[tuple[str, str]], decimal: str, notes: list[str], day: int | None, zone: str,
-) -> ClockPlan | None:  # fmt: skip
+    columns: Sequence[Column],
+    cells: Sequence[Sequence[str]],
+    numbers: list[int],
+    frames: list[int],
+    facts: Sequence[tuple[str, str]],
+    decimal: str,
+    notes: list[str],
+    day: int | None,
+    zone: str,
+) -> ClockPlan | None:
     best: tuple[float, ClockPlan] | None = None
     for index in numbers:
         values = _numbers(cells[index], decimal)
@@ -291,9 +323,14 @@ def _numeric(
 
 def _unit_in_name(name: str) -> float | None:
     words = re.split(r"[^a-z]+", name.lower())
-    for spellings, factor in ((("ms", "msec", "millis", "milliseconds"), 1e-3), (("us", "usec", "micros", "microseconds"), 1e-6),
-                              (("ns", "nanos", "nanoseconds"), 1e-9), (("s", "sec", "secs", "seconds", "tsec"), 1.0),
-                              (("min", "minutes"), 60.0), (("h", "hours"), 3600.0)):  # fmt: skip
+    for spellings, factor in (
+        (("ms", "msec", "millis", "milliseconds"), 1e-3),
+        (("us", "usec", "micros", "microseconds"), 1e-6),
+        (("ns", "nanos", "nanoseconds"), 1e-9),
+        (("s", "sec", "secs", "seconds", "tsec"), 1.0),
+        (("min", "minutes"), 60.0),
+        (("h", "hours"), 3600.0),
+    ):
         if any(word in spellings for word in words):
             return factor
     return None
@@ -312,7 +349,8 @@ def _unit_by_steps(values: Sequence[float], steps: Sequence[float]) -> tuple[flo
         factor = 1e-6 if step < 5e6 else 1e-9
         return (
             factor,
-            f"no unit of time is written: the step of {step:g} is taken as {'micro' if factor == 1e-6 else 'nano'}seconds",
+            f"no unit of time is written: the step of {step:g} is taken as "
+            f"{'micro' if factor == 1e-6 else 'nano'}seconds",
         )
     if whole and step >= 10.0:
         return 1e-3, f"no unit of time is written: the step of {step:g} is taken as milliseconds"

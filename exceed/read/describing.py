@@ -61,9 +61,22 @@ def describe(survey: Survey, recording: Recording) -> LogFacts:
         if channel is not None:
             rate = 1.0 / channel.interval if channel.interval > 0 else None
             rows.append(
-                ColumnFacts(column.name, channel.quantity, channel.unit, rate, channel.found_by, channel.reason, "", channel.sign,
-                            channel.datum, channel.resolution, channel.noise, channel.valid_share, channel.notes)
-            )  # fmt: skip
+                ColumnFacts(
+                    column.name,
+                    channel.quantity,
+                    channel.unit,
+                    rate,
+                    channel.found_by,
+                    channel.reason,
+                    "",
+                    channel.sign,
+                    channel.datum,
+                    channel.resolution,
+                    channel.noise,
+                    channel.valid_share,
+                    channel.notes,
+                )
+            )
         elif column.part >= 0:
             rows.append(
                 ColumnFacts(
@@ -86,11 +99,21 @@ def describe(survey: Survey, recording: Recording) -> LogFacts:
             )
     layout = survey.layout
     return LogFacts(
-        survey.path, "parquet" if survey.source.parquet else survey.source.packed or "plain", survey.source.encoding,
-        layout.delimiter if layout else "", layout.decimal if layout else "", layout.skip if layout else 0, recording.rows,
-        recording.clock.kind, tuple(survey.columns[place].name for place in survey.clock.columns), recording.clock.start,
-        recording.duration, tuple(rows), survey.facts, (*recording.clock.notes, *recording.notes),
-    )  # fmt: skip
+        survey.path,
+        "parquet" if survey.source.parquet else survey.source.packed or "plain",
+        survey.source.encoding,
+        layout.delimiter if layout else "",
+        layout.decimal if layout else "",
+        layout.skip if layout else 0,
+        recording.rows,
+        recording.clock.kind,
+        tuple(survey.columns[place].name for place in survey.clock.columns),
+        recording.clock.start,
+        recording.duration,
+        tuple(rows),
+        survey.facts,
+        (*recording.clock.notes, *recording.notes),
+    )
 
 
 def _channels_by_index(survey: Survey, recording: Recording) -> dict[int, Channel]:
@@ -126,7 +149,8 @@ def _comment(text: str) -> str:
 def channels_file(survey: Survey, recording: Recording) -> str:
     """The text of a channels file for this recorder: what was found is written out, what is open stands as a comment."""
     lines = [
-        f"# What was found in {_comment(recording.path)}. Keep what is right, correct what is not; what you delete is recognised as usual.",
+        f"# What was found in {_comment(recording.path)}. Keep what is right, correct what is not; what you "
+        f"delete is recognised as usual.",
         "format: exceed-channels/1",
         "",
         *_clock_lines(survey, recording),
@@ -136,7 +160,8 @@ def channels_file(survey: Survey, recording: Recording) -> str:
     known: list[str] = []
     for column in survey.columns:
         channel = by_column.get(column.index)
-        # sub-frame columns are one channel of several columns: the file has no word for that, and recognition finds them
+        # sub-frame columns are one channel of several columns: the file has no word for that, and recognition
+        # finds them
         if channel is None or column.group:
             continue
         parts = [f"column: {_quoted(column.name)}", f"quantity: {channel.quantity}"]
@@ -164,10 +189,17 @@ def channels_file(survey: Survey, recording: Recording) -> str:
     if lost:
         lines += ["", "# Not used:"] + [f"# {_comment(row.column)}: {_comment(row.reason)}" for row in lost]
     if recording.unused:
-        lines += ["", "# Not understood; name them above if a rule needs them, or ignore them:",
-                  "# ignore: [" + ", ".join(_quoted(name) for name in recording.unused) + "]"]  # fmt: skip
-    lines += ["", '# missing: ["---"]              # further cells that mean: no value', "# faulty:",
-              '#  - {column: "NAME", from: 120 s, to: 180 s, reason: "why"}']  # fmt: skip
+        lines += [
+            "",
+            "# Not understood; name them above if a rule needs them, or ignore them:",
+            "# ignore: [" + ", ".join(_quoted(name) for name in recording.unused) + "]",
+        ]
+    lines += [
+        "",
+        '# missing: ["---"]              # further cells that mean: no value',
+        "# faulty:",
+        '#  - {column: "NAME", from: 120 s, to: 180 s, reason: "why"}',
+    ]
     return "\n".join(lines) + "\n"
 
 
@@ -198,9 +230,18 @@ def _unit(unit: str) -> str:
 
 
 def _has_sense(quantity: str, sign: str) -> bool:
-    senses = {"load_factor": ("up", "down"), "longitudinal_load_factor": ("forward", "aft"), "lateral_load_factor": ("right", "left"),
-              "bank_angle": ("right", "left"), "pitch_angle": ("up", "down"), "roll_rate": ("right", "left"), "pitch_rate": ("up", "down"),
-              "yaw_rate": ("right", "left"), "turn_rate": ("right", "left"), "vertical_speed": ("up", "down")}  # fmt: skip
+    senses = {
+        "load_factor": ("up", "down"),
+        "longitudinal_load_factor": ("forward", "aft"),
+        "lateral_load_factor": ("right", "left"),
+        "bank_angle": ("right", "left"),
+        "pitch_angle": ("up", "down"),
+        "roll_rate": ("right", "left"),
+        "pitch_rate": ("up", "down"),
+        "yaw_rate": ("right", "left"),
+        "turn_rate": ("right", "left"),
+        "vertical_speed": ("up", "down"),
+    }
     return sign in senses.get(quantity, ())
 
 

@@ -73,9 +73,13 @@ class Evidence:
         """The first column of one of the quantities; `known`: only if its unit stands."""
         for quantity in quantities:
             found = [
-                one for one in self.all
-                if one.quantity == quantity and not one.problem and not one.raw.column.alternatives and (one.unit or not known)
-            ]  # fmt: skip
+                one
+                for one in self.all
+                if one.quantity == quantity
+                and not one.problem
+                and not one.raw.column.alternatives
+                and (one.unit or not known)
+            ]
             if found:
                 return max(
                     found, key=lambda one: (bool(one.raw.column.unit_text), one.raw.column.score, len(one.raw.values))

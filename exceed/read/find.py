@@ -19,10 +19,22 @@ PACKINGS = (".gz", ".bz2", ".zst", ".xz", ".zip")
 TEXTS = (".csv", ".tsv", ".tab", ".txt", ".log", ".dat", ".asc", ".prn", ".psv", ".ssv")
 TABLES = (".parquet", ".pq", ".parq")
 # what stands beside logs and is none: said, so that nobody wonders
-_OTHERS = {".yaml": "a YAML file", ".yml": "a YAML file", ".md": "a text about the logs", ".rst": "a text about the logs",
-           ".json": "a JSON file", ".html": "a page", ".htm": "a page", ".pdf": "a document", ".sqlite": "a ledger", ".db": "a data base",
-           ".py": "a program", ".xlsx": "a spreadsheet: export it as CSV", ".xls": "a spreadsheet: export it as CSV",
-           ".ods": "a spreadsheet: export it as CSV"}  # fmt: skip
+_OTHERS = {
+    ".yaml": "a YAML file",
+    ".yml": "a YAML file",
+    ".md": "a text about the logs",
+    ".rst": "a text about the logs",
+    ".json": "a JSON file",
+    ".html": "a page",
+    ".htm": "a page",
+    ".pdf": "a document",
+    ".sqlite": "a ledger",
+    ".db": "a data base",
+    ".py": "a program",
+    ".xlsx": "a spreadsheet: export it as CSV",
+    ".xls": "a spreadsheet: export it as CSV",
+    ".ods": "a spreadsheet: export it as CSV",
+}
 _README = re.compile(r"^(readme|license|licence|changelog|notes?|sources?|index|contents|version)([._-].*)?$", re.I)
 
 

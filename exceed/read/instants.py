@@ -64,9 +64,11 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
     made = axis.build(readings, kind=kind, slowest=slowest)
     if len(made.time) == 0:
         raise fail(
-            survey.path, "no row has a time", expected="a clock column with figures or stamps",
+            survey.path,
+            "no row has a time",
+            expected="a clock column with figures or stamps",
             do="name the clock in a channels file",
-        )  # fmt: skip
+        )
     start = None if start0 is None else start0 + made.origin
     if start is None and plan.anchor is not None:
         start, zone = _anchored(survey, parsed, plan, made, notes)
@@ -116,7 +118,9 @@ def _counted(survey: Survey, parsed: Parsed, plan: ClockPlan) -> tuple[Array, fl
 
 def _apart(parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, float | None, str, str]:
     """Hours, minutes, seconds and perhaps the date in columns of their own."""
-    part = {role: arrays.floats(parsed.columns.pop(place))[0] for role, place in zip(plan.roles, plan.columns, strict=True)}
+    part = {
+        role: arrays.floats(parsed.columns.pop(place))[0] for role, place in zip(plan.roles, plan.columns, strict=True)
+    }
     readings = part["hour"] * 3600.0 + part["minute"] * 60.0 + part.get("second", np.zeros(1))
     if "year" in part:
         whole = [np.nan_to_num(part[name]).astype(np.int64) for name in ("year", "month", "day")]

@@ -18,10 +18,29 @@ from exceed.read.raw import raw_channels
 
 # quantities that settle what other columns leave open, cheap to read along when something is open
 WITNESSES = (
-    "pressure_altitude", "vertical_speed", "bank_angle", "pitch_angle", "heading", "track_angle", "indicated_airspeed",
-    "calibrated_airspeed", "true_airspeed", "ground_speed", "mach", "static_pressure", "static_air_temperature", "pitch_rate",
-    "latitude", "longitude", "load_factor", "weight_on_wheels", "roll_rate", "yaw_rate", "turn_rate", "impact_pressure",
-)  # fmt: skip
+    "pressure_altitude",
+    "vertical_speed",
+    "bank_angle",
+    "pitch_angle",
+    "heading",
+    "track_angle",
+    "indicated_airspeed",
+    "calibrated_airspeed",
+    "true_airspeed",
+    "ground_speed",
+    "mach",
+    "static_pressure",
+    "static_air_temperature",
+    "pitch_rate",
+    "latitude",
+    "longitude",
+    "load_factor",
+    "weight_on_wheels",
+    "roll_rate",
+    "yaw_rate",
+    "turn_rate",
+    "impact_pressure",
+)
 
 
 def load(
@@ -44,9 +63,11 @@ def load(
     """
     if survey.clock.kind == "none":
         raise fail(
-            survey.path, survey.clock.problem, expected="a column of time, or a counter and its rate",
+            survey.path,
+            survey.clock.problem,
+            expected="a column of time, or a counter and its rate",
             do="name the clock in a channels file: clock: {column: NAME, kind: elapsed, unit: s}",
-        )  # fmt: skip
+        )
     chosen, witnesses = choose(survey, wanted)
     known: dict[int, Settled] | None = None
     if witnesses and probe.worth_it(survey):
@@ -94,7 +115,9 @@ def parse_text(survey: Survey, chosen: list[Column], data: bytes | None = None) 
     clock = survey.clock
     for place, role in zip(clock.columns, clock.roles, strict=False):
         if role in ("number", "frame", "hour", "minute", "second", "year", "month", "day"):
-            lettered = any(letter.isalpha() for cell in survey.columns[place].sample[:3] for letter in cell if letter not in "eE")
+            lettered = any(
+                letter.isalpha() for cell in survey.columns[place].sample[:3] for letter in cell if letter not in "eE"
+            )
             types[place] = "text" if lettered or (survey.layout.grouping and role in ("number", "frame")) else "number"
         elif role in ("full", "time"):
             types[place] = clock.typed if clock.typed != "number" else "text"
@@ -131,9 +154,15 @@ def _type_of(survey: Survey, column: Column) -> str:
 
 
 def _recording(
-    survey: Survey, wanted: set[str] | frozenset[str] | None, parsed: Parsed, settled: list[Settled], time: Instants,
-    notes: list[str], cells: list[tuple[Column, Any, list[str], str]], ranges: Mapping[str, tuple[float, float]],
-) -> Recording:  # fmt: skip
+    survey: Survey,
+    wanted: set[str] | frozenset[str] | None,
+    parsed: Parsed,
+    settled: list[Settled],
+    time: Instants,
+    notes: list[str],
+    cells: list[tuple[Column, Any, list[str], str]],
+    ranges: Mapping[str, tuple[float, float]],
+) -> Recording:
     result = settle.finish(survey, settled, wanted, time, ranges, cells)
     unresolved = [
         Unresolved(c.name, c.problem, c.question) for c in survey.columns if c.problem and c.question and not c.ignored
@@ -187,6 +216,7 @@ def _uneven(parsed: Parsed) -> list[str]:
     first = parsed.uneven[0][:60] if parsed.uneven else ""
     many = parsed.uneven_count != 1
     return [
-        f"{parsed.uneven_count} line{'s' * many} with another number of cells than the headings {'are' if many else 'is'} left out "
+        f"{parsed.uneven_count} line{'s' * many} with another number of cells than the headings "
+        f"{'are' if many else 'is'} left out "
         f"(the first: {first!r})"
     ]

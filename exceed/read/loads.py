@@ -167,7 +167,8 @@ def _increment_sign(evidence: Evidence, change: np.ndarray) -> tuple[int, str]: 
         _, alike, count = slope(evidence.grid.value(pitching.raw), change)
         if count > 50 and abs(alike) > 0.5:
             return (1 if alike > 0 else -1), "it moves with the pitch rate"
-    # in steady flight the lift's vertical part must on average carry the weight, and turns need more: the mean lies above
+    # in steady flight the lift's vertical part must on average carry the weight, and turns need more: the mean
+    # lies above
     finite = change[np.isfinite(change)]
     if len(finite) > 300:
         mean = float(np.mean(finite))

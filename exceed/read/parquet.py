@@ -28,9 +28,11 @@ def _open(source: Source) -> Any:
     except (pa.ArrowException, OSError, ValueError, NotImplementedError) as error:
         text = " ".join(str(error).split())[:160]
         raise fail(
-            source.shown, f"is no whole Parquet file: {text}", expected="a Parquet file with its footer",
+            source.shown,
+            f"is no whole Parquet file: {text}",
+            expected="a Parquet file with its footer",
             do="copy the log from the recorder again",
-        ) from error  # fmt: skip
+        ) from error
 
 
 def survey_parquet(source: Source, channels: object | None, declared: dict[str, str]) -> Survey:

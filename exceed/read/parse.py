@@ -140,8 +140,14 @@ class Reader:
         import pyarrow.csv as arrow_csv
 
         layout = self.layout
-        kinds = {"number": pa.float64(), "text": pa.string(), "stamp": pa.timestamp("ns"), "stamp_zone": pa.timestamp("ns", tz="UTC"),
-                 "time": pa.time64("ns"), "word": pa.dictionary(pa.int32(), pa.string())}  # fmt: skip
+        kinds = {
+            "number": pa.float64(),
+            "text": pa.string(),
+            "stamp": pa.timestamp("ns"),
+            "stamp_zone": pa.timestamp("ns", tz="UTC"),
+            "time": pa.time64("ns"),
+            "word": pa.dictionary(pa.int32(), pa.string()),
+        }
         stray: list[str] = []
         count = [0]
 

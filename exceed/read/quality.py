@@ -48,8 +48,18 @@ PHYSICS: dict[str, tuple[float, float, float]] = {
     "flap_angle": (6.0 * _DEG, 15.0 * _DEG, 1.1),
 }
 _WRAPS = frozenset({"heading", "track_angle", "bank_angle", "longitude"})
-_CLIPS = frozenset({"load_factor", "longitudinal_load_factor", "lateral_load_factor", "roll_rate", "pitch_rate", "yaw_rate",
-                    "angle_of_attack", "indicated_airspeed"})  # fmt: skip
+_CLIPS = frozenset(
+    {
+        "load_factor",
+        "longitudinal_load_factor",
+        "lateral_load_factor",
+        "roll_rate",
+        "pitch_rate",
+        "yaw_rate",
+        "angle_of_attack",
+        "indicated_airspeed",
+    }
+)
 # a figure that does not change is stuck only if others say that it must have: for each quantity the seconds it has to
 # last, the largest size of a figure that could be a true standstill (SI), and the companions' movements, all of a group
 STUCK: dict[str, tuple[float, float, tuple[tuple[tuple[str, float], ...], ...]]] = {
@@ -164,7 +174,8 @@ def check(series: Series, sensor: tuple[float, float] | None, others: Mapping[st
         _stuck(series, others, out)
     if series.quantity == "load_factor" and series.interval > 0.26:
         out.notes.append(
-            f"recorded every {series.interval:.3g} s: peaks shorter than about {4 * series.interval:.2g} s are not sized"
+            f"recorded every {series.interval:.3g} s: peaks shorter than about {4 * series.interval:.2g} s are "
+            f"not sized"
         )
     out.lost = sum(samples for _, _, samples, _, _ in out.rejected)
     return out
@@ -273,7 +284,8 @@ def _spikes(series: Series, others: Mapping[str, Series], out: Checked) -> None:
     if doubtful:
         out.notes.append(
             f"{doubtful} lone sample{'s' * (doubtful != 1)} far from {'their' if doubtful != 1 else 'its'} neighbours "
-            f"{'are' if doubtful != 1 else 'is'} kept: nothing else shows that {'they were' if doubtful != 1 else 'it was'} not flown"
+            f"{'are' if doubtful != 1 else 'is'} kept: nothing else shows that "
+            f"{'they were' if doubtful != 1 else 'it was'} not flown"
         )
 
 

@@ -31,14 +31,22 @@ def groups(columns: Sequence[Column], declared: Mapping[str, str]) -> list[Colum
     for pattern in (_OFFSET, _NUMBER, _LETTER):
         bases: dict[tuple[str, str], list[tuple[str, Column]]] = {}
         for column in out:
-            if column.ignored or column.part >= 0 or column.group or column.found_by == "channels file" or column.form == "stamp":
+            if (
+                column.ignored
+                or column.part >= 0
+                or column.group
+                or column.found_by == "channels file"
+                or column.form == "stamp"
+            ):
                 continue
             if pattern is _NUMBER and not column.quantity:
                 continue
             for name in (split_unit(column.name)[0], column.name):
                 match = pattern.match(name.strip())
                 if match and match.group(1).strip(" _-.@+"):
-                    bases.setdefault((match.group(1).strip(" _-.@+").lower(), column.unit_text), []).append((match.group(2), column))
+                    bases.setdefault((match.group(1).strip(" _-.@+").lower(), column.unit_text), []).append(
+                        (match.group(2), column)
+                    )
                     break
         for (base, _), members in bases.items():
             members = _in_order(pattern, members)
@@ -46,7 +54,14 @@ def groups(columns: Sequence[Column], declared: Mapping[str, str]) -> list[Colum
                 continue
             lead = members[0].with_(group=tuple(column.index for column in members))
             if pattern is not _NUMBER:
-                known = recognise(lead.index, base.upper() if len(base) < 4 else base, lead.unit_text, lead.source, lead.sample, declared)
+                known = recognise(
+                    lead.index,
+                    base.upper() if len(base) < 4 else base,
+                    lead.unit_text,
+                    lead.source,
+                    lead.sample,
+                    declared,
+                )
                 if not known.quantity or known.problem:
                     continue
                 lead = known.with_(name=lead.name, group=lead.group)
@@ -55,9 +70,16 @@ def groups(columns: Sequence[Column], declared: Mapping[str, str]) -> list[Colum
             out[lead.index] = lead
             for column in members[1:]:
                 out[column.index] = out[column.index].with_(
-                    part=lead.index, quantity=lead.quantity, unit=lead.unit, units=lead.units, problem="", question="",
-                    score=lead.score, reason=lead.reason, found_by=lead.found_by,
-                )  # fmt: skip
+                    part=lead.index,
+                    quantity=lead.quantity,
+                    unit=lead.unit,
+                    units=lead.units,
+                    problem="",
+                    question="",
+                    score=lead.score,
+                    reason=lead.reason,
+                    found_by=lead.found_by,
+                )
     return out
 
 

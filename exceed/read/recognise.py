@@ -131,7 +131,10 @@ def recognise(
         return column.with_(problem=f"written in {unit_text}: raw sensor output, no physical quantity")
     multiple = _multiple(name, unit_cell)
     if multiple:
-        return column.with_(problem=f"written in '{multiple}', a multiple of a unit", question="Which quantity is it, and in which unit?")
+        return column.with_(
+            problem=f"written in '{multiple}', a multiple of a unit",
+            question="Which quantity is it, and in which unit?",
+        )
     own = _declared(bare, name, declared)
     found, why = ((own,), "") if own else meanings(bare)
     whole, _ = meanings(name) if not own else ((), "")
@@ -154,7 +157,11 @@ def recognise(
     return _with_unit(column, found, unit_text, unit_from, declared)
 
 
-_MULTIPLE = re.compile(r"(?:[x×*/]\s*\d[\d.,eE+\-^]*|\d[\d.,]*\s*[x×*]?)\s*([A-Za-z°%/²2]+)|([A-Za-z°%/]+)\s*[x×*/]\s*\d+(?:[.,]\d+)?|\bFL\b|flight level", re.I)
+_MULTIPLE = re.compile(
+    r"(?:[x×*/]\s*\d[\d.,eE+\-^]*|\d[\d.,]*\s*[x×*]?)\s*([A-Za-z°%/²2]+)|([A-Za-z°%/]+)\s*[x×*/]\s*\d+(?:[.,]\d+)?|\bFL\b|flight "
+    r"level",
+    re.I,
+)
 
 
 def _multiple(name: str, unit_cell: str) -> str:
@@ -181,9 +188,12 @@ def _with_unit(
                     question="Which airspeed is it?",
                 )
             return column.with_(
-                quantity=stated.quantity, unit=stated.units[0], score=max(first.score, 0.9), found_by="name and unit",
+                quantity=stated.quantity,
+                unit=stated.units[0],
+                score=max(first.score, 0.9),
+                found_by="name and unit",
                 reason=f"{first.reason}; {unit_text} in the {unit_from}",
-            )  # fmt: skip
+            )
     if first.quantity in QUANTITIES and QUANTITIES[first.quantity].discrete:
         return _state(column, first, stated, unit_text)
     mismatch = ""
@@ -193,22 +203,31 @@ def _with_unit(
             unit = next((u for u in stated.units if UNITS[u].kind == kind), None)
             if unit is not None:
                 return _open(column, meaning).with_(
-                    quantity=meaning.quantity, unit=unit, score=meaning.score + 0.05, found_by="name and unit",
+                    quantity=meaning.quantity,
+                    unit=unit,
+                    score=meaning.score + 0.05,
+                    found_by="name and unit",
                     reason=f"{meaning.reason}; {unit_text} in the {unit_from}",
-                )  # fmt: skip
+                )
             if kind == "temperature" and "deg" in stated.units:
                 return column.with_(
-                    quantity=meaning.quantity, units=open_units(meaning.quantity, kind), score=meaning.score, found_by="name and data",
+                    quantity=meaning.quantity,
+                    units=open_units(meaning.quantity, kind),
+                    score=meaning.score,
+                    found_by="name and data",
                     reason=f"{meaning.reason}; '{unit_text}' does not say which scale",
-                )  # fmt: skip
+                )
         for meaning in found:
             for unit in stated.units:
                 other = _BY_KIND.get((meaning.quantity, UNITS[unit].kind))
                 if other:
                     return column.with_(
-                        quantity=other, unit=unit, score=meaning.score, found_by="name and unit",
+                        quantity=other,
+                        unit=unit,
+                        score=meaning.score,
+                        found_by="name and unit",
                         reason=f"{meaning.reason}; its unit {unit_text} makes it {other}",
-                    )  # fmt: skip
+                    )
         mismatch = (
             f"named like {first.quantity}, but its unit '{unit_text}' is not one of {kind_of(first.quantity, declared)}"
         )
@@ -223,16 +242,23 @@ def _with_unit(
     if len(found) > 1 and found[1].score >= found[0].score:
         names = tuple(m.quantity for m in found if m.score >= found[0].score)
         return column.with_(
-            quantity=names[0], alternatives=names, score=first.score, reason=first.reason, found_by="name and data",
+            quantity=names[0],
+            alternatives=names,
+            score=first.score,
+            reason=first.reason,
+            found_by="name and data",
             units=tuple(u for q in names for u in open_units(q, kind_of(q, declared))),
-        )  # fmt: skip
+        )
     kind = kind_of(first.quantity, declared)
     units = ("%", "1") if kind == "ratio" and first.quantity in declared else open_units(first.quantity, kind)
     if len(units) == 1:
         return _open(column, first).with_(
-            quantity=first.quantity, unit=units[0], score=first.score, reason=f"{first.reason}; {units[0]}, the only unit it has" if units[0] != "1" else first.reason,
+            quantity=first.quantity,
+            unit=units[0],
+            score=first.score,
+            reason=f"{first.reason}; {units[0]}, the only unit it has" if units[0] != "1" else first.reason,
             found_by="name",
-        )  # fmt: skip
+        )
     if first.quantity in declared:
         return column.with_(
             quantity=first.quantity,

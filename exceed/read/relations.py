@@ -308,8 +308,12 @@ def _angle(evidence: Evidence, one: Settled) -> None:
             )
 
 
-_DERIVATIVE = {"roll_rate": ("bank_angle",), "pitch_rate": ("pitch_angle",), "yaw_rate": ("heading", "track_angle"),
-               "turn_rate": ("heading", "track_angle")}  # fmt: skip
+_DERIVATIVE = {
+    "roll_rate": ("bank_angle",),
+    "pitch_rate": ("pitch_angle",),
+    "yaw_rate": ("heading", "track_angle"),
+    "turn_rate": ("heading", "track_angle"),
+}
 
 
 def _rate(evidence: Evidence, one: Settled) -> None:

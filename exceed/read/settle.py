@@ -76,9 +76,13 @@ def settle(
 
 
 def finish(
-    survey: Survey, settled: Sequence[evidence.Settled], wanted: set[str] | frozenset[str] | None, time: Instants,
-    ranges: Mapping[str, tuple[float, float]], cells: Sequence[OddCells],
-) -> Result:  # fmt: skip
+    survey: Survey,
+    settled: Sequence[evidence.Settled],
+    wanted: set[str] | frozenset[str] | None,
+    time: Instants,
+    ranges: Mapping[str, tuple[float, float]],
+    cells: Sequence[OddCells],
+) -> Result:
     """Resolve conflicts, turn the winners into SI, look at their quality."""
     result = Result()
     by_quantity: dict[str, list[evidence.Settled]] = {}
@@ -141,8 +145,13 @@ def _why(best: evidence.Settled, other: evidence.Settled, total: int) -> str:
     if best.forced:
         return "the channels file names it"
     a, b = _merit(best, total), _merit(other, total)
-    for place, text in ((1, "the other is empty"), (2, "its name is surer"), (3, "its unit is written"), (4, "its values are likelier"),
-                        (5, "it has more samples")):  # fmt: skip
+    for place, text in (
+        (1, "the other is empty"),
+        (2, "its name is surer"),
+        (3, "its unit is written"),
+        (4, "its values are likelier"),
+        (5, "it has more samples"),
+    ):
         if a[place] > b[place]:
             return text
     return "it stands first"
@@ -199,14 +208,27 @@ def _channel(
     )
     share = min(1.0, (len(series.values) - checked.lost) / max(1.0, expected))
     return Channel(
-        quantity=series.quantity, column=column.name if not column.group else f"{column.name} (+{len(column.group) - 1})",
-        values=series.values, rows=None if raw.rows is None else frozen(raw.rows),
-        interval=series.interval, unit=one.unit, scale=one.scale, offset=one.offset, discrete=series.discrete, found_by=one.found_by,
-        reason=one.reason, sign=one.sign, datum=one.datum, standard_uncertainty=_accuracy(column),
+        quantity=series.quantity,
+        column=column.name if not column.group else f"{column.name} (+{len(column.group) - 1})",
+        values=series.values,
+        rows=None if raw.rows is None else frozen(raw.rows),
+        interval=series.interval,
+        unit=one.unit,
+        scale=one.scale,
+        offset=one.offset,
+        discrete=series.discrete,
+        found_by=one.found_by,
+        reason=one.reason,
+        sign=one.sign,
+        datum=one.datum,
+        standard_uncertainty=_accuracy(column),
         uncertainty_source="channels file" if column.accuracy is not None else "",
-        resolution=series.step, noise=checked.noise, saturation=checked.saturation, valid_share=round(share, 6),
+        resolution=series.step,
+        noise=checked.noise,
+        saturation=checked.saturation,
+        valid_share=round(share, 6),
         notes=(*raw.notes, *one.notes, *checked.notes),
-    ), rejected  # fmt: skip
+    ), rejected
 
 
 def _accuracy(column: Column) -> float | None:

@@ -42,10 +42,24 @@ class ClockPlan:
 MONTHS = {
     name: number
     for number, names in enumerate(
-        ("jan january janv", "feb february fev", "mar march mars maerz mrz", "apr april avr", "may mai mayo", "jun june juin juni",
-         "jul july juil juli", "aug august aout ago", "sep september sept", "oct october okt", "nov november", "dec december dez"), 1)
+        (
+            "jan january janv",
+            "feb february fev",
+            "mar march mars maerz mrz",
+            "apr april avr",
+            "may mai mayo",
+            "jun june juin juni",
+            "jul july juil juli",
+            "aug august aout ago",
+            "sep september sept",
+            "oct october okt",
+            "nov november",
+            "dec december dez",
+        ),
+        1,
+    )
     for name in names.split()
-}  # fmt: skip
+}
 
 _DATE = (
     r"(?:(?P<year>\d{4})[-/. ](?P<month>\d{1,2})[-/. ](?P<day>\d{1,2})"
@@ -124,8 +138,12 @@ def parse(array: object, pattern: re.Pattern[str]) -> Stamps:
     """Parse a column of text by a pattern (FULL, DATE or TIME). Cells that do not fit are `bad`."""
     raw, offsets, valid = _bytes_of(array)
     count = len(offsets) - 1
-    out = Stamps(*(np.full(count, UNKNOWN, np.int64) for _ in range(1)), *(np.zeros(count, np.int64) for _ in range(5)),
-                 False, np.ones(count, bool))  # fmt: skip
+    out = Stamps(
+        *(np.full(count, UNKNOWN, np.int64) for _ in range(1)),
+        *(np.zeros(count, np.int64) for _ in range(5)),
+        False,
+        np.ones(count, bool),
+    )
     lengths = np.where(valid, np.diff(offsets), 0)
     for length in np.unique(lengths):
         if length == 0 or length > 48:

@@ -70,10 +70,20 @@ def _declare(entry: object, known: dict[str, str]) -> None:
 
 
 def assemble(
-    source: Source, found: object, columns: Sequence[Column], cells: Sequence[Sequence[str]], facts: Sequence[tuple[str, str]],
-    registration: str | None, serial: str | None, channels: object | None, declared: dict[str, str], decimal: str, notes: Sequence[str],
-    clock: ClockPlan | None = None, rows: int | None = None,
-) -> Survey:  # fmt: skip
+    source: Source,
+    found: object,
+    columns: Sequence[Column],
+    cells: Sequence[Sequence[str]],
+    facts: Sequence[tuple[str, str]],
+    registration: str | None,
+    serial: str | None,
+    channels: object | None,
+    declared: dict[str, str],
+    decimal: str,
+    notes: Sequence[str],
+    clock: ClockPlan | None = None,
+    rows: int | None = None,
+) -> Survey:
     """Put the parts together: channels file over recognition, clock, sub-frame groups, facts in columns."""
     from exceed.read.told import apply_channels, told_clock
 

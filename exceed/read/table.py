@@ -100,10 +100,22 @@ def layout(source: Source) -> Layout:
     short = sum(1 for row in data if len(row) < width)
     notes = [] if headings else ["no headings: columns are counted"]
     return Layout(
-        delimiter, decimal, grouping, delimiter == " ", start, names, units, sources, tuple(tuple(h) for h in headings),
-        tuple([*facts_in(preamble, delimiter), *_facts_among(headings, names, delimiter)]), preamble, tuple(tuple(c.strip() for c in row) for row in spread(data, LOOKED_AT)),
-        comment, short > 0.01 * len(data) + 1, tuple(notes),
-    )  # fmt: skip
+        delimiter,
+        decimal,
+        grouping,
+        delimiter == " ",
+        start,
+        names,
+        units,
+        sources,
+        tuple(tuple(h) for h in headings),
+        tuple([*facts_in(preamble, delimiter), *_facts_among(headings, names, delimiter)]),
+        preamble,
+        tuple(tuple(c.strip() for c in row) for row in spread(data, LOOKED_AT)),
+        comment,
+        short > 0.01 * len(data) + 1,
+        tuple(notes),
+    )
 
 
 def _rows(lines: list[str], delimiter: str) -> list[list[str]]:
@@ -355,7 +367,8 @@ def _facts_among(headings: list[list[str]], names: tuple[str, ...], delimiter: s
 
 
 _REGISTRATION = re.compile(
-    r"\b(registration|reg(\.|n|istr)?|tail( ?(no|num|number|id))?|immatriculation|aircraft ?(id|ident|reg)|ac ?reg|a/c( ?reg)?|glider ?id)\b",
+    r"\b(registration|reg(\.|n|istr)?|tail( ?(no|num|number|id))?|immatriculation|aircraft ?(id|ident|reg)|ac "
+    r"?reg|a/c( ?reg)?|glider ?id)\b",
     re.I,
 )
 _SERIAL = re.compile(r"\b(serial|s/?n|ser\.?)( ?(no|number|nr))?\b", re.I)

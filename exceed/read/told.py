@@ -25,8 +25,11 @@ def matching(columns: Sequence[Column], name: str) -> list[Column]:
     def plain(text: str) -> str:
         return " ".join(text.lower().split())
 
-    for test in (lambda c: c.name.strip() == name.strip(), lambda c: plain(c.name) == plain(name),
-                 lambda c: plain(split_unit(c.name)[0]) == plain(name)):  # fmt: skip
+    for test in (
+        lambda c: c.name.strip() == name.strip(),
+        lambda c: plain(c.name) == plain(name),
+        lambda c: plain(split_unit(c.name)[0]) == plain(name),
+    ):
         found = [c for c in columns if test(c)]
         if found:
             return found
@@ -69,10 +72,22 @@ def apply_channels(
         unit = unit or (column.unit if column.quantity == quantity else None)
         datum = getattr(entry, "datum", None) or None
         out[column.index] = column.with_(
-            quantity=quantity, unit=unit, units=() if unit else column.units or (), alternatives=(), score=2.0, problem="", question="",
-            found_by="channels file", reason="named in the channels file", positive=getattr(entry, "positive", None) or None, datum=datum,
-            accuracy=_si(accuracy), declared=row is None, group=(), part=-1,
-        )  # fmt: skip
+            quantity=quantity,
+            unit=unit,
+            units=() if unit else column.units or (),
+            alternatives=(),
+            score=2.0,
+            problem="",
+            question="",
+            found_by="channels file",
+            reason="named in the channels file",
+            positive=getattr(entry, "positive", None) or None,
+            datum=datum,
+            accuracy=_si(accuracy),
+            declared=row is None,
+            group=(),
+            part=-1,
+        )
         if unit is None:
             from exceed.read.recognise import kind_of, open_units
 
@@ -115,10 +130,13 @@ def told_clock(
         if not found:
             near = _near(str(name), columns)
             raise LogError(
-                Problem(shown, f"the channels file names the clock column '{name}', which is not in the log",
-                        expected="one of its columns" + (f", for example '{near}'" if near else ""),
-                        do="correct 'clock' in the channels file")
-            )  # fmt: skip
+                Problem(
+                    shown,
+                    f"the channels file names the clock column '{name}', which is not in the log",
+                    expected="one of its columns" + (f", for example '{near}'" if near else ""),
+                    do="correct 'clock' in the channels file",
+                )
+            )
         places.append(found[0].index)
     kind = str(clock.kind)
     zone = str(getattr(clock, "zone", None) or "")
@@ -135,8 +153,16 @@ def told_clock(
         elif kind == "frame" and period is not None:
             factor = period
         role = "frame" if kind == "frame" else "number"
-        return ClockPlan(kind, (places[0],), unit=factor, zone=zone or ("UTC" if kind == "epoch" else ""), offset=offset, typed="number",
-                         roles=(role,), notes=("the clock is the channels file's",))  # fmt: skip
+        return ClockPlan(
+            kind,
+            (places[0],),
+            unit=factor,
+            zone=zone or ("UTC" if kind == "epoch" else ""),
+            offset=offset,
+            typed="number",
+            roles=(role,),
+            notes=("the clock is the channels file's",),
+        )
     if len(places) == 1:
         some = [cell for cell in cells[places[0]] if not is_missing(cell)]
         full = sum(bool(FULL.fullmatch(cell.strip())) for cell in some) >= sum(
@@ -154,5 +180,12 @@ def told_clock(
     if zone and zone_offset(zone) is not None:
         roles = roles[:2]
         places = places[:2]
-    return ClockPlan("date_time", tuple(places), zone=zone, offset=offset, typed="text", roles=roles,
-                     notes=("the clock is the channels file's",))  # fmt: skip
+    return ClockPlan(
+        "date_time",
+        tuple(places),
+        zone=zone,
+        offset=offset,
+        typed="text",
+        roles=roles,
+        notes=("the clock is the channels file's",),
+    )

@@ -7,10 +7,12 @@ from dataclasses import dataclass
 
 from exceed.core.units import UNITS
 
-# unit -> spellings, already reduced by `plain`: lower case, no blanks, dots, carets; deg for the degree sign, u for micro
+# unit -> spellings, already reduced by `plain`: lower case, no blanks, dots, carets; deg for the degree sign, u for
+# micro
 _SPELLINGS: dict[str, str] = {
     "kt": "kt kts kn kns knot knots",
-    "m/s": "m/s ms mps m/sec ms-1 meter/s metre/s meters/s metres/s meter/sec metre/sec meterspersecond metrespersecond",
+    "m/s": "m/s ms mps m/sec ms-1 meter/s metre/s meters/s metres/s meter/sec metre/sec meterspersecond "
+    "metrespersecond",
     "km/h": "km/h kmh kph kmph km/hr kmhr kilometersperhour kilometresperhour",
     "mph": "mph mi/h mi/hr milesperhour",
     "ft/min": "ft/min fpm ft/mn feet/min feet/minute ft/minute ftmin feetperminute ftpermin",
@@ -24,7 +26,8 @@ _SPELLINGS: dict[str, str] = {
     "km": "km kilometer kilometre kilometers kilometres",
     "deg": "deg degs degree degrees degt degm degtrue degmag degmagnetic",
     "rad": "rad rads radian radians",
-    "deg/s": "deg/s deg/sec dps degs/s degs/sec degrees/s degree/s degrees/sec degree/sec degps degreespersecond degs-1",
+    "deg/s": "deg/s deg/sec dps degs/s degs/sec degrees/s degree/s degrees/sec degree/sec degps degreespersecond "
+    "degs-1",
     "rad/s": "rad/s rad/sec rps rads/s radians/s radian/s radians/sec radps rads-1",
     "degC": "degc celsius centigrade c degreesc degreescelsius degcelsius",
     "degF": "degf fahrenheit f degreesf degfahrenheit",
@@ -225,10 +228,8 @@ def split_unit(name: str) -> tuple[str, str]:
             tail = parts[-count:]
             for joined in ("/".join(tail), "".join(tail), " ".join(tail)):
                 key = plain(joined)
-                if (
-                    joined[0].isdigit()
-                    or (key in ("1", "-", "m", "c", "f", "k", "g's", "l", "h", "in", "s", "g", "min")
-                    and count > 1)
+                if joined[0].isdigit() or (
+                    key in ("1", "-", "m", "c", "f", "k", "g's", "l", "h", "in", "s", "g", "min") and count > 1
                 ):
                     continue
                 found = unit_in(joined)

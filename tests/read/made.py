@@ -15,14 +15,35 @@ from exceed.core.recording import Recording
 from exceed.read import read_log
 
 NAMES = [
-    "load_factor", "indicated_airspeed", "pressure_altitude", "bank_angle", "pitch_angle", "heading", "roll_rate", "pitch_rate",
-    "vertical_speed", "ground_speed", "outside_air_temperature", "flap_angle", "weight_on_wheels", "stall_warning", "fuel_mass",
-    "fuel_flow", "engine_speed",
-]  # fmt: skip
+    "load_factor",
+    "indicated_airspeed",
+    "pressure_altitude",
+    "bank_angle",
+    "pitch_angle",
+    "heading",
+    "roll_rate",
+    "pitch_rate",
+    "vertical_speed",
+    "ground_speed",
+    "outside_air_temperature",
+    "flap_angle",
+    "weight_on_wheels",
+    "stall_warning",
+    "fuel_mass",
+    "fuel_flow",
+    "engine_speed",
+]
 SLOW = {
-    "indicated_airspeed": 4.0, "pressure_altitude": 1.0, "heading": 4.0, "outside_air_temperature": 1.0, "flap_angle": 1.0,
-    "fuel_mass": 1.0, "fuel_flow": 1.0, "engine_speed": 1.0, "ground_speed": 1.0,
-}  # fmt: skip
+    "indicated_airspeed": 4.0,
+    "pressure_altitude": 1.0,
+    "heading": 4.0,
+    "outside_air_temperature": 1.0,
+    "flap_angle": 1.0,
+    "fuel_mass": 1.0,
+    "fuel_flow": 1.0,
+    "engine_speed": 1.0,
+    "ground_speed": 1.0,
+}
 # the scenario's words where ours differ
 OURS = {"outside_air_temperature": "static_air_temperature", "fuel_flow": "fuel_mass_flow"}
 # the scenario keeps engine speed in rpm, we in turns a second
@@ -33,11 +54,22 @@ TO_SI = {"engine_speed": 1.0 / 60.0}
 def flight() -> Flight:
     """Eleven minutes of a tourer: climb, turns both ways, one pull, approach and landing."""
     plan = [
-        do.standing(10), do.taxi(25), do.take_off(10.0), do.climb(2500, 78, 800), do.level(20, 112, 2500),
-        do.steep_turn(45, 30, None, 2500, 108), do.turn_to(240, 108, 2500), do.turn_to(60, 108, 2500), do.pull(2.8, 0.8, 0.2, 0.8),
-        do.recover(2400, 108, 20), do.descend(1300, 90, 600), do.approach(66, [(450, 35)]), do.landing(140), do.taxi(20, 330),
         do.standing(10),
-    ]  # fmt: skip
+        do.taxi(25),
+        do.take_off(10.0),
+        do.climb(2500, 78, 800),
+        do.level(20, 112, 2500),
+        do.steep_turn(45, 30, None, 2500, 108),
+        do.turn_to(240, 108, 2500),
+        do.turn_to(60, 108, 2500),
+        do.pull(2.8, 0.8, 0.2, 0.8),
+        do.recover(2400, 108, 20),
+        do.descend(1300, 90, 600),
+        do.approach(66, [(450, 35)]),
+        do.landing(140),
+        do.taxi(20, 330),
+        do.standing(10),
+    ]
     return fly(FENWICK, plan, mass=1036.0, fuel=86.0, seed=5)
 
 
@@ -69,7 +101,7 @@ def rows(count: int = 200, step: float = 0.125) -> list[tuple[float, float, floa
     """(time, load factor, airspeed in kt, altitude in ft) of a flight that moves a little."""
     return [
         (k * step, 1.0 + 0.2 * np.sin(k / 9.0), 100.0 + 5.0 * np.sin(k / 40.0), 3000.0 + 2.0 * k) for k in range(count)
-    ]  # fmt: skip
+    ]
 
 
 def simple(

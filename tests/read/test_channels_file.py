@@ -6,13 +6,12 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from read.made import DEG, FT, G0, KT, log, of_flight, rows, si, simple, truth, written
+from scenario.dialects import Habit, write
 
 from exceed.documents.channels import Channels, load_channels
 from exceed.errors import LogError
 from exceed.read import channels_file, describe, load, read_log, survey
-from read.made import DEG, FT, G0, KT, log, of_flight, rows, si, simple, written
-from scenario.dialects import Habit, write
-from read.made import truth
 
 
 def told(*lines: str) -> Channels:
@@ -54,7 +53,11 @@ def test_its_clock_is_used(tmp_path: Path) -> None:
 
 def test_a_place_with_summer_time_is_a_zone(tmp_path: Path) -> None:
     lines = ["Day,Time,NZ [g]"] + [f"25/05/2031,09:00:{k:02d},1.0{k % 7}" for k in range(60)]
-    recording = log(tmp_path, "\n".join(lines) + "\n", channels=told("clock: {columns: [Day, Time], kind: date_time, zone: Europe/Paris}"))
+    recording = log(
+        tmp_path,
+        "\n".join(lines) + "\n",
+        channels=told("clock: {columns: [Day, Time], kind: date_time, zone: Europe/Paris}"),
+    )
     assert recording.clock.start == pytest.approx(1937458800.0, abs=1e-3)
     assert recording.clock.zone == "Europe/Paris"
 
@@ -72,9 +75,10 @@ def test_a_clock_column_that_is_not_there(tmp_path: Path) -> None:
 def test_ignore_missing_and_faulty(tmp_path: Path) -> None:
     text = simple().replace("100.0,", "VOID,")
     channels = told(
-        "ignore: [PALT [ft]]" if False else 'ignore: ["PALT [ft]"]', 'missing: ["VOID"]',
+        "ignore: [PALT [ft]]" if False else 'ignore: ["PALT [ft]"]',
+        'missing: ["VOID"]',
         'faulty: [{column: "NZ [g]", from: 5 s, to: 8 s, reason: "loose"}]',
-    )  # fmt: skip
+    )
     recording = log(tmp_path, text, channels=channels)
     assert "pressure_altitude" not in recording.channels
     assert recording.unused == ("PALT [ft]",)
@@ -86,7 +90,9 @@ def test_ignore_missing_and_faulty(tmp_path: Path) -> None:
 
 
 def test_a_column_that_is_not_in_the_log_is_said(tmp_path: Path) -> None:
-    recording = log(tmp_path, simple(), channels=told("channels:", "  - {column: NX, quantity: longitudinal_load_factor, unit: g}"))
+    recording = log(
+        tmp_path, simple(), channels=told("channels:", "  - {column: NX, quantity: longitudinal_load_factor, unit: g}")
+    )
     assert "the channels file names column 'NX', which is not in the log; it has 'NZ [g]'" in recording.notes
 
 
@@ -99,7 +105,9 @@ def test_further_names_are_declared_and_read(tmp_path: Path) -> None:
 
 def test_engines_by_index(tmp_path: Path) -> None:
     ones = np.ones(len(si("load_factor")))
-    text = of_flight({"E1 RPM": 2400 * ones, "E2 RPM": 2500 * ones, "OIL T 1 [degC]": 90 * ones, "OIL T 2 [degC]": 91 * ones})
+    text = of_flight(
+        {"E1 RPM": 2400 * ones, "E2 RPM": 2500 * ones, "OIL T 1 [degC]": 90 * ones, "OIL T 2 [degC]": 91 * ones}
+    )
     recording = log(tmp_path, text, declared={"oil_temperature": "degC"})
     assert set(recording.channels) == {"engine_speed_1", "engine_speed_2", "oil_temperature_1", "oil_temperature_2"}
     assert recording.channels["engine_speed_2"].values[0] == pytest.approx(2500 / 60)
@@ -107,7 +115,9 @@ def test_engines_by_index(tmp_path: Path) -> None:
 
 def test_one_tank_is_not_the_fuel_on_board(tmp_path: Path) -> None:
     ones = np.ones(len(si("load_factor")))
-    recording = log(tmp_path, of_flight({"FUEL QTY L [kg]": 40 * ones, "FUEL QTY R [kg]": 41 * ones, "NZ [g]": si("load_factor")}))
+    recording = log(
+        tmp_path, of_flight({"FUEL QTY L [kg]": 40 * ones, "FUEL QTY R [kg]": 41 * ones, "NZ [g]": si("load_factor")})
+    )
     assert "fuel_mass" not in recording.channels
     assert {row.reason for row in recording.unresolved} == {"one tank's fuel, not all that is on board"}
 
@@ -115,11 +125,14 @@ def test_one_tank_is_not_the_fuel_on_board(tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     "habit",
     [
-        Habit(), Habit(header="name", units="trade"), Habit(delimiter=";", decimal_comma=True, units="metric", clock="date_time_dmy"),
-        Habit(parquet="ms", units="si"), Habit(clock="epoch_us", header="suffix", vocabulary="snake"),
+        Habit(),
+        Habit(header="name", units="trade"),
+        Habit(delimiter=";", decimal_comma=True, units="metric", clock="date_time_dmy"),
+        Habit(parquet="ms", units="si"),
+        Habit(clock="epoch_us", header="suffix", vocabulary="snake"),
     ],
     ids=str,
-)  # fmt: skip
+)
 def test_the_written_file_reads_back_the_same(habit: Habit, tmp_path: Path) -> None:
     path = write(truth(), tmp_path / ("log" + habit.extension), habit).path
     first = survey(path)
@@ -145,11 +158,24 @@ def test_headings_that_would_break_yaml_are_quoted(tmp_path: Path) -> None:
 
 
 def test_describe_tells_each_column(tmp_path: Path) -> None:
-    text = of_flight({"NZ": si("load_factor"), "SPD": si("indicated_airspeed") / KT, "XYZ": si("bank_angle") / DEG, "PALT [ft]": si("pressure_altitude") / FT})
+    text = of_flight(
+        {
+            "NZ": si("load_factor"),
+            "SPD": si("indicated_airspeed") / KT,
+            "XYZ": si("bank_angle") / DEG,
+            "PALT [ft]": si("pressure_altitude") / FT,
+        }
+    )
     path = written(tmp_path, "Registration: ZZ-NMC\n" + text)
     first = survey(path)
     facts = describe(first, load(first))
-    assert (facts.packed, facts.encoding, facts.delimiter, facts.skipped_lines, facts.clock) == ("plain", "utf-8", ",", 2, "elapsed")
+    assert (facts.packed, facts.encoding, facts.delimiter, facts.skipped_lines, facts.clock) == (
+        "plain",
+        "utf-8",
+        ",",
+        2,
+        "elapsed",
+    )
     assert facts.clock_columns == ("time [s]",)
     by_name = {row.column: row for row in facts.columns}
     assert list(by_name) == ["NZ", "SPD", "XYZ", "PALT [ft]"]

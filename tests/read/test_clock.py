@@ -23,7 +23,7 @@ def stamps(form: str, count: int = 200, step: float = 0.125, start: datetime.dat
 @pytest.mark.parametrize(
     ("heading", "cells", "kind"),
     [
-        ("UTC", stamps("%Y-%m-%dT%H:%M:%S.@@@") , "iso"),
+        ("UTC", stamps("%Y-%m-%dT%H:%M:%S.@@@"), "iso"),
         ("Timestamp", stamps("%Y-%m-%dT%H:%M:%S.@@@Z"), "iso"),
         ("Timestamp", stamps("%Y-%m-%d %H:%M:%S.@@@+00:00"), "iso"),
         ("t", stamps("%Y/%m/%d %H:%M:%S.@@@"), "iso"),
@@ -37,7 +37,7 @@ def stamps(form: str, count: int = 200, step: float = 0.125, start: datetime.dat
         ("unix time (us)", [f"{int(START.timestamp() * 1e6 + k * 125000)}" for k in range(200)], "epoch"),
         ("timestamp_ns", [f"{int(START.timestamp()) * 10**9 + k * 125_000_000}" for k in range(200)], "epoch"),
     ],
-)  # fmt: skip
+)
 def test_absolute_stamps_of_many_forms(tmp_path: Path, heading: str, cells: list[str], kind: str) -> None:
     recording = log(tmp_path, simple(heading=f"{heading},NZ [g],IAS [kt],PALT [ft]", stamps=cells))
     assert recording.clock.kind == kind
@@ -118,7 +118,8 @@ def test_day_or_month_first_by_evidence(tmp_path: Path, dates: list[str], start:
     recording = log(tmp_path, split_log(dates, stamps("%H:%M:%S", 100, 1.0, begin)[: len(dates)]))
     wanted = datetime.datetime(*start, 23, 59, 10, tzinfo=UTC).timestamp()
     if len(set(dates)) == 1:
-        # the date is the same on both sides of midnight: a recorder that steps its date late; only the start is compared
+        # the date is the same on both sides of midnight: a recorder that steps its date late; only the start
+        # is compared
         assert recording.clock.start == pytest.approx(wanted, abs=1e-3)
         return
     assert recording.clock.start == pytest.approx(wanted, abs=1e-3)
@@ -263,7 +264,9 @@ def test_figures_without_marks(tmp_path: Path, order: str) -> None:
     date = {"ymd": "20310525", "dmy": "250531"}[order]
     lines = ["DATE,TIME,NZ [g]"] + ["{},{:02d}{:02d}{:06.3f},1.00{}".format(date, *cut(k), k % 10) for k in range(900)]
     recording = log(tmp_path, "\n".join(lines) + "\n")
-    assert recording.clock.start == pytest.approx(datetime.datetime(2031, 5, 25, 9, 58, 30, tzinfo=UTC).timestamp(), abs=1e-3)
+    assert recording.clock.start == pytest.approx(
+        datetime.datetime(2031, 5, 25, 9, 58, 30, tzinfo=UTC).timestamp(), abs=1e-3
+    )
     assert np.allclose(recording.time, np.arange(900) / 8, atol=1e-6)
 
 
@@ -274,7 +277,9 @@ def test_hours_minutes_and_seconds_apart(tmp_path: Path) -> None:
     assert np.allclose(recording.time, np.arange(900) / 8, atol=1e-6)
     lines = ["YEAR,MONTH,DAY," + lines[0]] + ["2031,5,2," + line for line in lines[1:]]
     recording = log(tmp_path, "\n".join(lines) + "\n")
-    assert recording.clock.start == pytest.approx(datetime.datetime(2031, 5, 2, 9, 58, 30, tzinfo=UTC).timestamp(), abs=1e-3)
+    assert recording.clock.start == pytest.approx(
+        datetime.datetime(2031, 5, 2, 9, 58, 30, tzinfo=UTC).timestamp(), abs=1e-3
+    )
 
 
 def test_rows_alone_with_a_stated_rate(tmp_path: Path) -> None:

@@ -72,17 +72,21 @@ def test_an_airspeed_without_unit_and_witness_is_asked_about(tmp_path: Path) -> 
     )
     (row,) = recording.unresolved
     assert (row.column, row.reason, row.question) == (
-        "IAS", "kt, km/h, mph or m/s cannot be told", "Is it in kt, km/h, mph or m/s?",
-    )  # fmt: skip
+        "IAS",
+        "kt, km/h, mph or m/s cannot be told",
+        "Is it in kt, km/h, mph or m/s?",
+    )
     assert "indicated_airspeed" not in recording.channels
 
 
 @pytest.mark.parametrize(("unit", "factor"), [("kt", KT), ("km/h", 1 / 3.6), ("m/s", 1.0)])
 def test_an_airspeed_follows_from_turns(tmp_path: Path, unit: str, factor: float) -> None:
     columns = {
-        "IAS": si("indicated_airspeed") / factor, "PALT [ft]": si("pressure_altitude") / FT, "ROLL [deg]": si("bank_angle") / DEG,
+        "IAS": si("indicated_airspeed") / factor,
+        "PALT [ft]": si("pressure_altitude") / FT,
+        "ROLL [deg]": si("bank_angle") / DEG,
         "HDG [deg]": si("heading") / DEG,
-    }  # fmt: skip
+    }
     channel = log(tmp_path, of_flight(columns)).channels["indicated_airspeed"]
     assert channel.unit == unit
     assert "the rate of turn at the recorded bank fits" in channel.reason
@@ -110,10 +114,14 @@ def test_one_written_unit_settles_the_other(tmp_path: Path) -> None:
 @pytest.mark.parametrize(("unit", "factor"), [("deg", DEG), ("rad", 1.0)])
 def test_angles_and_rates_without_units(tmp_path: Path, unit: str, factor: float) -> None:
     columns = {
-        "ROLL": si("bank_angle") / factor, "PITCH": si("pitch_angle") / factor, "HDG": si("heading") / factor,
-        "P": si("roll_rate") / factor, "Q": si("pitch_rate") / factor, "PALT [ft]": si("pressure_altitude") / FT,
+        "ROLL": si("bank_angle") / factor,
+        "PITCH": si("pitch_angle") / factor,
+        "HDG": si("heading") / factor,
+        "P": si("roll_rate") / factor,
+        "Q": si("pitch_rate") / factor,
+        "PALT [ft]": si("pressure_altitude") / FT,
         "IAS [kt]": si("indicated_airspeed") / KT,
-    }  # fmt: skip
+    }
     recording = log(tmp_path, of_flight(columns))
     for name in ("bank_angle", "pitch_angle", "heading"):
         assert recording.channels[name].unit == unit, name
@@ -123,9 +131,13 @@ def test_angles_and_rates_without_units(tmp_path: Path, unit: str, factor: float
 
 def test_signs_that_are_the_other_way_round(tmp_path: Path) -> None:
     columns = {
-        "ROLL [deg]": -si("bank_angle") / DEG, "PITCH [deg]": -si("pitch_angle") / DEG, "HDG [deg]": si("heading") / DEG,
-        "PALT [ft]": si("pressure_altitude") / FT, "ROLL RATE [deg/s]": -si("roll_rate") / DEG, "VS [ft/min]": -si("vertical_speed") / FT * 60,
-    }  # fmt: skip
+        "ROLL [deg]": -si("bank_angle") / DEG,
+        "PITCH [deg]": -si("pitch_angle") / DEG,
+        "HDG [deg]": si("heading") / DEG,
+        "PALT [ft]": si("pressure_altitude") / FT,
+        "ROLL RATE [deg/s]": -si("roll_rate") / DEG,
+        "VS [ft/min]": -si("vertical_speed") / FT * 60,
+    }
     recording = log(tmp_path, of_flight(columns))
     for name, sign in (
         ("bank_angle", "left"),

@@ -13,8 +13,20 @@ from exceed.read import find_logs
 
 @pytest.fixture
 def day(tmp_path: Path) -> Path:
-    for name in ("b/2.csv", "b/10.csv.gz", "a/1.TSV", "a/deep/x.parquet", "README.md", "fleet.yaml", "a/.hidden.csv", "a/page.html",
-                 "b/summary.json", "b/photo.jpg", "LICENSE.txt", ".git/config.csv"):  # fmt: skip
+    for name in (
+        "b/2.csv",
+        "b/10.csv.gz",
+        "a/1.TSV",
+        "a/deep/x.parquet",
+        "README.md",
+        "fleet.yaml",
+        "a/.hidden.csv",
+        "a/page.html",
+        "b/summary.json",
+        "b/photo.jpg",
+        "LICENSE.txt",
+        ".git/config.csv",
+    ):
         path = tmp_path / name
         path.parent.mkdir(parents=True, exist_ok=True)
         path.write_text("x")
@@ -27,10 +39,14 @@ def test_a_folder_is_searched_in_order(day: Path) -> None:
     assert {log.root for log in logs} == {str(day)}
     assert all(os.path.samefile(log.location, day / log.shown) for log in logs)
     assert dict(skipped) == {
-        "README.md": "a text about the logs", "LICENSE.txt": "a text about the logs", "fleet.yaml": "a YAML file",
-        "a/.hidden.csv": "a hidden file", "a/page.html": "a page", "b/summary.json": "a JSON file",
+        "README.md": "a text about the logs",
+        "LICENSE.txt": "a text about the logs",
+        "fleet.yaml": "a YAML file",
+        "a/.hidden.csv": "a hidden file",
+        "a/page.html": "a page",
+        "b/summary.json": "a JSON file",
         "b/photo.jpg": "no known extension of a log",
-    }  # fmt: skip
+    }
 
 
 def test_a_file_given_by_name_is_read_whatever_its_extension(day: Path) -> None:
@@ -71,8 +87,10 @@ def test_all_wrong_paths_are_told_at_once(day: Path) -> None:
     with pytest.raises(UsageError) as caught:
         find_logs([day / "no.csv", f"{day}/*.nothing", day / "b"])
     assert str(caught.value) == (
-        f"{day}/no.csv: there is no such file or folder\n  expected: a file, a folder or a pattern\n  do: check the path\n"
-        f"{day}/*.nothing: matches no file\n  expected: a pattern that fits a log\n  do: check the pattern and its quotes"
+        f"{day}/no.csv: there is no such file or folder\n  expected: a file, a folder or a pattern\n  do: check "
+        f"the path\n"
+        f"{day}/*.nothing: matches no file\n  expected: a pattern that fits a log\n  do: check the pattern and "
+        f"its quotes"
     )
 
 

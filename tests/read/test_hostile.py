@@ -32,7 +32,10 @@ def refused(path: Path) -> str:
     ("data", "text"),
     [
         (b"", "FILE: is empty\n  expected: a CSV or Parquet log\n  do: copy the log from the recorder again"),
-        (b"\n \r\n\t\n", "FILE: holds no text\n  expected: a CSV or Parquet log\n  do: copy the log from the recorder again"),
+        (
+            b"\n \r\n\t\n",
+            "FILE: holds no text\n  expected: a CSV or Parquet log\n  do: copy the log from the recorder again",
+        ),
         (
             bytes(range(256)) * 40,
             "FILE: is not text: it looks like a binary recording\n  expected: CSV or Parquet\n"
@@ -45,7 +48,8 @@ def refused(path: Path) -> str:
         ),
         (
             b"x" * 300_000,
-            "FILE: no line ends within the first 256 kB\n  expected: a table of one row a line\n  do: export the log as CSV again",
+            "FILE: no line ends within the first 256 kB\n  expected: a table of one row a line\n  do: export the "
+            "log as CSV again",
         ),
         (
             b"time [s],NZ [g]\n",
@@ -58,12 +62,13 @@ def refused(path: Path) -> str:
         ),
         (
             b"PAR1 and then nothing",
-            "FILE: is no whole Parquet file: Parquet magic bytes not found in footer. Either the file is corrupted or this is not a "
+            "FILE: is no whole Parquet file: Parquet magic bytes not found in footer. Either the file is "
+            "corrupted or this is not a "
             "parquet file.\n  expected: a Parquet file with its footer\n  do: copy the log from the recorder again",
         ),
     ],
     ids=["empty", "blank", "binary", "letter", "one-line", "heading-only", "wide", "broken-parquet"],
-)  # fmt: skip
+)
 def test_what_is_no_log_is_refused(tmp_path: Path, data: bytes, text: str) -> None:
     assert refused(written(tmp_path, data)) == text
 
@@ -124,7 +129,8 @@ def test_zip_holds_one_log(tmp_path: Path) -> None:
     path = written(tmp_path, zipped(("a.csv", simple().encode()), ("b.csv", b"")), "two.zip")
     assert (
         refused(path)
-        == "FILE: holds 2 files (a.csv, b.csv)\n  expected: a zip file with one log in it\n  do: unpack it into a folder"
+        == "FILE: holds 2 files (a.csv, b.csv)\n  expected: a zip file with one log in it\n  do: unpack it into "
+        "a folder"
     )
 
 

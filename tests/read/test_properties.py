@@ -12,21 +12,35 @@ import pyarrow.csv as arrow_csv
 import pyarrow.parquet as pq
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from read.made import DEG, FT, G0, KT, of_flight, si, written
 
 from exceed.core.recording import Recording
 from exceed.read import read_log
-from read.made import DEG, FT, G0, KT, of_flight, si, written
 
 COLUMNS = {
-    "NZ [g]": si("load_factor"), "IAS [kt]": si("indicated_airspeed") / KT, "PALT [ft]": si("pressure_altitude") / FT,
-    "ROLL [deg]": si("bank_angle") / DEG, "HDG [deg]": si("heading") / DEG, "VS [ft/min]": si("vertical_speed") / FT * 60,
-}  # fmt: skip
+    "NZ [g]": si("load_factor"),
+    "IAS [kt]": si("indicated_airspeed") / KT,
+    "PALT [ft]": si("pressure_altitude") / FT,
+    "ROLL [deg]": si("bank_angle") / DEG,
+    "HDG [deg]": si("heading") / DEG,
+    "VS [ft/min]": si("vertical_speed") / FT * 60,
+}
 OTHER_UNITS = {
-    "NZ [g]": ("NZ [m/s2]", G0), "IAS [kt]": ("IAS [km/h]", 1.852), "PALT [ft]": ("PALT [m]", FT), "ROLL [deg]": ("ROLL [rad]", DEG),
-    "HDG [deg]": ("HDG [rad]", DEG), "VS [ft/min]": ("VS [m/s]", FT / 60),
-}  # fmt: skip
-SOURCES = {"NZ [g]": "load_factor", "IAS [kt]": "indicated_airspeed", "PALT [ft]": "pressure_altitude", "ROLL [deg]": "bank_angle",
-           "HDG [deg]": "heading", "VS [ft/min]": "vertical_speed"}  # fmt: skip
+    "NZ [g]": ("NZ [m/s2]", G0),
+    "IAS [kt]": ("IAS [km/h]", 1.852),
+    "PALT [ft]": ("PALT [m]", FT),
+    "ROLL [deg]": ("ROLL [rad]", DEG),
+    "HDG [deg]": ("HDG [rad]", DEG),
+    "VS [ft/min]": ("VS [m/s]", FT / 60),
+}
+SOURCES = {
+    "NZ [g]": "load_factor",
+    "IAS [kt]": "indicated_airspeed",
+    "PALT [ft]": "pressure_altitude",
+    "ROLL [deg]": "bank_angle",
+    "HDG [deg]": "heading",
+    "VS [ft/min]": "vertical_speed",
+}
 
 
 def read(columns: dict[str, np.ndarray], **more: object) -> Recording:
@@ -52,7 +66,10 @@ def test_order_of_columns(order: list[str]) -> None:
     same(read({name: COLUMNS[name] for name in order}))
 
 
-@given(name=st.text(st.characters(exclude_characters='",\r\n\0', exclude_categories=("Cs",)), min_size=3, max_size=12), place=st.integers(0, 6))
+@given(
+    name=st.text(st.characters(exclude_characters='",\r\n\0', exclude_categories=("Cs",)), min_size=3, max_size=12),
+    place=st.integers(0, 6),
+)
 @settings(max_examples=12, deadline=None)
 def test_an_unknown_column_changes_nothing(name: str, place: int) -> None:
     from exceed.read.names import clock_name, meanings
@@ -113,7 +130,9 @@ def test_windows_of_a_large_log_settle_what_the_whole_would(tmp_path: Path, monk
 
 
 def test_pandas_index_columns_do_not_disturb(tmp_path: Path) -> None:
-    table = pa.table({"time_s": np.arange(400) / 8, "nz_g": 1 + 0.1 * np.sin(np.arange(400)), "__index_level_0__": np.arange(400)})
+    table = pa.table(
+        {"time_s": np.arange(400) / 8, "nz_g": 1 + 0.1 * np.sin(np.arange(400)), "__index_level_0__": np.arange(400)}
+    )
     pq.write_table(table, tmp_path / "a.parquet")
     recording = read_log(tmp_path / "a.parquet")
     assert set(recording.channels) == {"load_factor"}

@@ -18,9 +18,12 @@ NZ = si("load_factor")
 COUNT = truth().count
 TIME = np.arange(COUNT) / 8.0
 BASE = {
-    "IAS [kt]": si("indicated_airspeed") / KT, "PALT [ft]": si("pressure_altitude") / FT, "ROLL [deg]": si("bank_angle") / DEG,
-    "PITCH [deg]": si("pitch_angle") / DEG, "Q [deg/s]": si("pitch_rate") / DEG,
-}  # fmt: skip
+    "IAS [kt]": si("indicated_airspeed") / KT,
+    "PALT [ft]": si("pressure_altitude") / FT,
+    "ROLL [deg]": si("bank_angle") / DEG,
+    "PITCH [deg]": si("pitch_angle") / DEG,
+    "Q [deg/s]": si("pitch_rate") / DEG,
+}
 AIRBORNE = 1200  # a row well inside the flight
 
 
@@ -75,8 +78,11 @@ def test_an_impact_on_the_ground_survives(phase: float, size: float) -> None:
     time = np.arange(400) / 8.0
     wheels = Series("weight_on_wheels", (time > 24.9).astype(float), lambda: time, 0.125, 0.0, True)
     pitch_rate = Series("pitch_rate", np.zeros(400), lambda: time, 0.125, 0.0)
-    checked = quality.check(Series("load_factor", values, lambda: time, 0.125, 0.001), None,
-                            {"weight_on_wheels": wheels, "pitch_rate": pitch_rate})  # fmt: skip
+    checked = quality.check(
+        Series("load_factor", values, lambda: time, 0.125, 0.001),
+        None,
+        {"weight_on_wheels": wheels, "pitch_rate": pitch_rate},
+    )
     assert checked.rejected == []
 
 

@@ -12,9 +12,19 @@ LOG = Path(__file__).parents[1] / "data" / "real" / "parabolas.csv.gz"
 
 # the units that the source of the file states
 STATED = {
-    "pressure_altitude": "ft", "indicated_airspeed": "kt", "true_airspeed": "kt", "ground_speed": "kt", "mach": "1", "bank_angle": "deg",
-    "heading": "deg", "track_angle": "deg", "turn_rate": "deg/s", "vertical_speed": "ft/min", "latitude": "deg", "longitude": "deg",
-}  # fmt: skip
+    "pressure_altitude": "ft",
+    "indicated_airspeed": "kt",
+    "true_airspeed": "kt",
+    "ground_speed": "kt",
+    "mach": "1",
+    "bank_angle": "deg",
+    "heading": "deg",
+    "track_angle": "deg",
+    "turn_rate": "deg/s",
+    "vertical_speed": "ft/min",
+    "latitude": "deg",
+    "longitude": "deg",
+}
 
 
 def test_the_data_settle_every_unit_as_the_source_states_it() -> None:

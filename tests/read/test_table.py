@@ -6,6 +6,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from read.made import log, rows, simple, written
 
 from exceed.core.units import UNITS
 from exceed.read import survey
@@ -13,7 +14,6 @@ from exceed.read.cells import form, is_missing
 from exceed.read.names import meanings
 from exceed.read.table import registration_in, serial_in
 from exceed.read.units_in_text import fitting, split_unit
-from read.made import log, rows, simple, written
 
 BODY = "".join(f"{t:.3f},{n:.3f},{v:.1f},{h:.0f}\n" for t, n, v, h in rows())
 
@@ -39,8 +39,10 @@ BODY = "".join(f"{t:.3f},{n:.3f},{v:.1f},{h:.0f}\n" for t, n, v, h in rows())
 def test_headings_wherever_they_stand(tmp_path: Path, top: str) -> None:
     recording = log(tmp_path, top + BODY)
     assert {k: c.unit for k, c in recording.channels.items()} == {
-        "load_factor": "g", "indicated_airspeed": "kt", "pressure_altitude": "ft",
-    }  # fmt: skip
+        "load_factor": "g",
+        "indicated_airspeed": "kt",
+        "pressure_altitude": "ft",
+    }
     assert len(recording.time) == 200
 
 
@@ -69,36 +71,66 @@ def test_the_same_content_has_the_same_digest_however_packed(tmp_path: Path) -> 
 @pytest.mark.parametrize(
     ("cell", "kind"),
     [
-        ("1.5", "number"), ("-1,5", "number"), ("+3e-4", "number"), ("1'234.5", "number"), ("12 kt", "number"), ("", "empty"), ("---", "empty"),
-        ("****", "empty"), ("N/A", "empty"), ("NaN", "empty"), ("-", "empty"), ("2031-05-02", "stamp"), ("09:02:11.125", "stamp"),
-        ("02/05/31 9:02", "stamp"), ("GROUND", "word"), ("20310502", "number"),
+        ("1.5", "number"),
+        ("-1,5", "number"),
+        ("+3e-4", "number"),
+        ("1'234.5", "number"),
+        ("12 kt", "number"),
+        ("", "empty"),
+        ("---", "empty"),
+        ("****", "empty"),
+        ("N/A", "empty"),
+        ("NaN", "empty"),
+        ("-", "empty"),
+        ("2031-05-02", "stamp"),
+        ("09:02:11.125", "stamp"),
+        ("02/05/31 9:02", "stamp"),
+        ("GROUND", "word"),
+        ("20310502", "number"),
     ],
-)  # fmt: skip
+)
 def test_forms_of_cells(cell: str, kind: str) -> None:
     assert form(cell) == kind
     assert is_missing(cell) == (kind == "empty")
 
 
 def test_european_and_english_marks(tmp_path: Path) -> None:
-    for delimiter, decimal, group in ((";", ",", "."), (";", ".", ","), ("\t", ",", " "), ("\t", ".", "'"), (";", ",", "\u00a0")):
+    for delimiter, decimal, group in (
+        (";", ",", "."),
+        (";", ".", ","),
+        ("\t", ",", " "),
+        ("\t", ".", "'"),
+        (";", ",", "\u00a0"),
+    ):
         lines = [delimiter.join(["time [s]", "NZ [g]", "PALT [ft]"])]
         for t, n, _, h in rows():
             written_height = f"{h + 9000:,.1f}".replace(",", "#").replace(".", decimal).replace("#", group)
-            lines.append(delimiter.join([f"{t:.3f}".replace(".", decimal), f"{n:.3f}".replace(".", decimal), written_height]))
+            lines.append(
+                delimiter.join([f"{t:.3f}".replace(".", decimal), f"{n:.3f}".replace(".", decimal), written_height])
+            )
         recording = log(tmp_path, "\n".join(lines) + "\n")
         height = recording.channels["pressure_altitude"].values / UNITS["ft"].factor
         assert np.allclose(height, [row[3] + 9000 for row in rows()], atol=0.06), (delimiter, decimal, group)
 
 
 def test_facts_in_many_forms(tmp_path: Path) -> None:
-    for top in ("Registration: ZZ-NMA\nRecorder serial: R-2201\n", "# Reg = ZZ-NMA\n# Logger S/N = R-2201\n",
-                "Aircraft Reg;ZZ-NMA\nUnit serial no;R-2201\n", "Tail No,ZZ-NMA,Recorder Serial Number,R-2201\n"):  # fmt: skip
+    for top in (
+        "Registration: ZZ-NMA\nRecorder serial: R-2201\n",
+        "# Reg = ZZ-NMA\n# Logger S/N = R-2201\n",
+        "Aircraft Reg;ZZ-NMA\nUnit serial no;R-2201\n",
+        "Tail No,ZZ-NMA,Recorder Serial Number,R-2201\n",
+    ):
         recording = log(tmp_path, top + simple())
         assert (recording.registration, recording.recorder_serial) == ("ZZ-NMA", "R-2201"), top
 
 
 def test_an_airframes_serial_is_not_the_recorders() -> None:
-    facts = (("Aircraft serial", "L2-017"), ("Recorder serial", "R-1"), ("Registration date", "2031-05-02"), ("Reg", "ZZ-NMA"))
+    facts = (
+        ("Aircraft serial", "L2-017"),
+        ("Recorder serial", "R-1"),
+        ("Registration date", "2031-05-02"),
+        ("Reg", "ZZ-NMA"),
+    )
     assert serial_in(facts) == "R-1"
     assert registration_in(facts) == "ZZ-NMA"
     assert serial_in(facts[:1]) is None
@@ -113,11 +145,19 @@ def test_a_registration_in_a_column(tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     ("heading", "name", "unit"),
     [
-        ("NZ [g]", "NZ", "g"), ("Roll rate (deg/s)", "Roll rate", "deg/s"), ("alt_ft", "alt", "ft"), ("vs_ft_min", "vs", "ft_min"),
-        ("acc_m_s2", "acc", "m_s2"), ("IAS, kt", "IAS", "kt"), ("OAT/°C", "OAT", "°C"), ("N1", "N1", ""), ("GEAR UP", "GEAR UP", ""),
-        ("Heading {deg}", "Heading", "deg"), ("WOW (1=gnd)", "WOW (1=gnd)", ""),
+        ("NZ [g]", "NZ", "g"),
+        ("Roll rate (deg/s)", "Roll rate", "deg/s"),
+        ("alt_ft", "alt", "ft"),
+        ("vs_ft_min", "vs", "ft_min"),
+        ("acc_m_s2", "acc", "m_s2"),
+        ("IAS, kt", "IAS", "kt"),
+        ("OAT/°C", "OAT", "°C"),
+        ("N1", "N1", ""),
+        ("GEAR UP", "GEAR UP", ""),
+        ("Heading {deg}", "Heading", "deg"),
+        ("WOW (1=gnd)", "WOW (1=gnd)", ""),
     ],
-)  # fmt: skip
+)
 def test_units_in_headings(heading: str, name: str, unit: str) -> None:
     found, text = split_unit(heading)
     assert (found, text.replace("/", "_") if "_" in unit else text) == (name, unit)
@@ -126,13 +166,31 @@ def test_units_in_headings(heading: str, name: str, unit: str) -> None:
 @pytest.mark.parametrize(
     ("text", "kind", "unit"),
     [
-        ("KTS", "speed", "kt"), ("knots", "speed", "kt"), ("KPH", "speed", "km/h"), ("kph", "mass flow", "kg/h"), ("m/s²", "load factor", "m/s2"),
-        ("m·s⁻²", "load factor", "m/s2"), ("G", "load factor", "g"), ("°", "angle", "deg"), ("°/s", "angular rate", "deg/s"), ("FPM", "speed", "ft/min"),
-        ("ft/mn", "speed", "ft/min"), ("°C", "temperature", "degC"), ("C", "temperature", "degC"), ("mb", "pressure", "mbar"), ("lbs", "mass", "lb"),
-        ("GAL", "volume", "USG"), ("GPH", "volume flow", "USG/h"), ("PPH", "mass flow", "lb/h"), ("ms", "time", "ms"), ("ms", "speed", "m/s"),
-        ("inHg", "pressure", "inHg"), ("furlong", "length", None), ("kt", "length", None),
+        ("KTS", "speed", "kt"),
+        ("knots", "speed", "kt"),
+        ("KPH", "speed", "km/h"),
+        ("kph", "mass flow", "kg/h"),
+        ("m/s²", "load factor", "m/s2"),
+        ("m·s⁻²", "load factor", "m/s2"),
+        ("G", "load factor", "g"),
+        ("°", "angle", "deg"),
+        ("°/s", "angular rate", "deg/s"),
+        ("FPM", "speed", "ft/min"),
+        ("ft/mn", "speed", "ft/min"),
+        ("°C", "temperature", "degC"),
+        ("C", "temperature", "degC"),
+        ("mb", "pressure", "mbar"),
+        ("lbs", "mass", "lb"),
+        ("GAL", "volume", "USG"),
+        ("GPH", "volume flow", "USG/h"),
+        ("PPH", "mass flow", "lb/h"),
+        ("ms", "time", "ms"),
+        ("ms", "speed", "m/s"),
+        ("inHg", "pressure", "inHg"),
+        ("furlong", "length", None),
+        ("kt", "length", None),
     ],
-)  # fmt: skip
+)
 def test_spellings_of_units(text: str, kind: str, unit: str | None) -> None:
     assert fitting(text, (kind,)) == unit
 
@@ -140,16 +198,41 @@ def test_spellings_of_units(text: str, kind: str, unit: str | None) -> None:
 @pytest.mark.parametrize(
     ("heading", "quantity"),
     [
-        ("VRTG", "load_factor"), ("Normal Acceleration", "load_factor"), ("NormAcc", "load_factor"), ("nz_cg", "load_factor"), ("G-LOAD", "load_factor"),
-        ("LATG", "lateral_load_factor"), ("Lat Acc", "lateral_load_factor"), ("Long. accel.", "longitudinal_load_factor"), ("Roll Attitude", "bank_angle"),
-        ("AOB", "bank_angle"), ("PTCH", "pitch_angle"), ("HDG MAG", "heading"), ("GndSpd", "ground_speed"), ("Radio Height", "height_above_ground"),
-        ("ALT STD", "pressure_altitude"), ("PressureAltitude", "pressure_altitude"), ("GPS Altitude", "geometric_altitude"), ("IVV", "vertical_speed"),
-        ("Rate of climb", "vertical_speed"), ("Total Air Temp", "total_air_temperature"), ("OAT", "static_air_temperature"), ("Air/Ground", "weight_on_wheels"),
-        ("Stick shaker", "stall_warning"), ("Speed brake", "airbrakes_out"), ("Gross Weight", "mass"), ("CAS", "calibrated_airspeed"),
-        ("True Airspeed", "true_airspeed"), ("IAS_2", "indicated_airspeed"), ("Airspeed Indicated (capt)", "indicated_airspeed"),
-        ("TE Flap Position", "flap_angle"), ("LDG GEAR DOWN", "gear_down"), ("Sideslip", "sideslip_angle"), ("ROT", "turn_rate"),
+        ("VRTG", "load_factor"),
+        ("Normal Acceleration", "load_factor"),
+        ("NormAcc", "load_factor"),
+        ("nz_cg", "load_factor"),
+        ("G-LOAD", "load_factor"),
+        ("LATG", "lateral_load_factor"),
+        ("Lat Acc", "lateral_load_factor"),
+        ("Long. accel.", "longitudinal_load_factor"),
+        ("Roll Attitude", "bank_angle"),
+        ("AOB", "bank_angle"),
+        ("PTCH", "pitch_angle"),
+        ("HDG MAG", "heading"),
+        ("GndSpd", "ground_speed"),
+        ("Radio Height", "height_above_ground"),
+        ("ALT STD", "pressure_altitude"),
+        ("PressureAltitude", "pressure_altitude"),
+        ("GPS Altitude", "geometric_altitude"),
+        ("IVV", "vertical_speed"),
+        ("Rate of climb", "vertical_speed"),
+        ("Total Air Temp", "total_air_temperature"),
+        ("OAT", "static_air_temperature"),
+        ("Air/Ground", "weight_on_wheels"),
+        ("Stick shaker", "stall_warning"),
+        ("Speed brake", "airbrakes_out"),
+        ("Gross Weight", "mass"),
+        ("CAS", "calibrated_airspeed"),
+        ("True Airspeed", "true_airspeed"),
+        ("IAS_2", "indicated_airspeed"),
+        ("Airspeed Indicated (capt)", "indicated_airspeed"),
+        ("TE Flap Position", "flap_angle"),
+        ("LDG GEAR DOWN", "gear_down"),
+        ("Sideslip", "sideslip_angle"),
+        ("ROT", "turn_rate"),
     ],
-)  # fmt: skip
+)
 def test_trade_terms(heading: str, quantity: str) -> None:
     found, why = meanings(split_unit(heading)[0])
     assert found, why
@@ -158,9 +241,25 @@ def test_trade_terms(heading: str, quantity: str) -> None:
 
 @pytest.mark.parametrize(
     "heading",
-    ["SEL ALT", "Target IAS", "MCP SPD", "CABIN ALT", "Wind speed", "Flap lever", "Elevator trim", "Max G", "IAS limit", "AP PITCH MODE",
-     "Brake pressure", "Altitude bug", "VOR1 bearing", "Hyd press", "Oil pressure", "GPS HDOP"],
-)  # fmt: skip
+    [
+        "SEL ALT",
+        "Target IAS",
+        "MCP SPD",
+        "CABIN ALT",
+        "Wind speed",
+        "Flap lever",
+        "Elevator trim",
+        "Max G",
+        "IAS limit",
+        "AP PITCH MODE",
+        "Brake pressure",
+        "Altitude bug",
+        "VOR1 bearing",
+        "Hyd press",
+        "Oil pressure",
+        "GPS HDOP",
+    ],
+)
 def test_what_is_set_or_of_a_system_is_not_the_flown_value(heading: str) -> None:
     assert meanings(split_unit(heading)[0])[0] == ()
 
