@@ -66,7 +66,7 @@ def is_missing(cell: str, more: frozenset[str] = frozenset()) -> bool:
 
 
 def missing_spellings(seen: set[str]) -> list[str]:
-    """Spellings for the parser, which compares whole cells: the known ones in three cases, runs of marks, and those seen."""
+    """Spellings for the parser, which compares whole cells: known ones in several cases, runs of marks, those seen."""
     out = {""}
     for word in _NONE_WORDS:
         out |= {word, word.upper(), word.capitalize(), word.title()}

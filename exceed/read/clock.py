@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Sequence
+from itertools import pairwise
 
 from exceed.core.units import UNITS
 from exceed.read.cells import NUMBER_COMMA, NUMBER_DOT, WITH_UNIT, is_missing
@@ -47,7 +48,12 @@ def find_clock(
 ) -> ClockPlan:
     """The best clock that the first block shows. kind 'none' with the reason where there is none."""
     day, zone, notes = _facts(facts)
-    full, dates, times, offsets, numbers, frames = [], [], [], [], [], []
+    full: list[int] = []
+    dates: list[int] = []
+    times: list[int] = []
+    offsets: list[int] = []
+    numbers: list[int] = []
+    frames: list[int] = []
     parts: dict[str, int] = {}
     for column in columns:
         if column.ignored or (column.quantity and column.score > 0.5 and column.form == "number"):
@@ -104,7 +110,7 @@ def find_clock(
 
 
 def _clock_figures(cells: Sequence[str], column: Column, alone: bool) -> bool:
-    """hhmmss as a number: no pair of digits above 59. Without a date beside it, it must also skip what seconds would not."""
+    """hhmmss as a number: no pair of digits above 59. Without a date beside it, it must also skip from 59 to 100."""
     stated = unit_in(column.unit_text)
     if stated is not None and any(UNITS[unit].kind == "time" for unit in stated.units):
         return False
@@ -275,7 +281,7 @@ def _numeric(
         if not values:
             continue
         column = columns[index]
-        steps = [b - a for a, b in zip(values, values[1:], strict=False)]
+        steps = [b - a for a, b in pairwise(values)]
         rising = sum(step >= 0 for step in steps) >= 0.8 * len(steps) if steps else True
         if not rising:
             continue
@@ -314,7 +320,7 @@ def _numeric(
         if period is None:
             continue
         values = _numbers(cells[index], decimal)
-        rising = sum(b >= a for a, b in zip(values, values[1:], strict=False)) >= 0.8 * max(1, len(values) - 1)
+        rising = sum(b >= a for a, b in pairwise(values)) >= 0.8 * max(1, len(values) - 1)
         if values and rising:
             note = f"time from the frame counter, {1.0 / period:g} frames a second as the preamble says"
             return ClockPlan("frame", (index,), unit=period, typed="number", roles=("frame",), notes=(*notes, note))
@@ -384,7 +390,7 @@ def _first_rising(
         if column.quantity or column.form != "number" or column.ignored:
             continue
         values = _numbers(cells[column.index], decimal)
-        steps = [b - a for a, b in zip(values, values[1:], strict=False)]
+        steps = [b - a for a, b in pairwise(values)]
         if len(steps) < 4 or min(steps) <= 0:
             continue
         middle = sorted(steps)[len(steps) // 2]

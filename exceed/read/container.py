@@ -174,7 +174,7 @@ def unpacked(
     seen: Callable[[bytes], None] | None = None,
     cut: list[str] | None = None,
 ) -> Iterator[bytes]:
-    """The decompressed bytes in pieces, bounded. `seen` gets the file's own bytes; `cut` a note if the end is missing."""
+    """The unpacked bytes in pieces, bounded. `seen` gets the file's own bytes; `cut` a note if the end is missing."""
     total = 0
     for piece in _pieces(location, shown, packed, seen, cut if cut is not None else []):
         total += len(piece)

@@ -147,7 +147,7 @@ def _comment(text: str) -> str:
 
 
 def channels_file(survey: Survey, recording: Recording) -> str:
-    """The text of a channels file for this recorder: what was found is written out, what is open stands as a comment."""
+    """The text of a channels file for this recorder: what was found is written out, what is open is a comment."""
     lines = [
         f"# What was found in {_comment(recording.path)}. Keep what is right, correct what is not; what you "
         f"delete is recognised as usual.",

@@ -1,4 +1,4 @@
-"""What data settle: unit, sign and datum of columns whose headings leave them open. What they cannot settle stays so."""
+"""What data settle: unit, sign and datum of columns whose headings leave them open. The rest stays open."""
 
 from __future__ import annotations
 

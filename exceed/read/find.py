@@ -161,7 +161,7 @@ def _unfit(path: str) -> str:
 def _no_log(name: str) -> str:
     """Why a file of a folder is no log by its name, or ''."""
     lower = name.lower()
-    if name.startswith(".") or name.startswith("~$") or lower.endswith("~"):
+    if name.startswith((".", "~$")) or lower.endswith("~"):
         return "a hidden file"
     stem = lower
     for packing in PACKINGS:

@@ -53,7 +53,7 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
     notes = list(plan.notes)
     start0: float | None
     if plan.roles == ("row",):
-        readings, start0, zone, kind = np.arange(parsed.rows) * plan.unit, None, "", "frame"
+        readings, start0, zone, kind = np.arange(parsed.rows, dtype=np.float64) * plan.unit, None, "", "frame"
     elif "hour" in plan.roles:
         readings, start0, zone, kind = _apart(parsed, plan, notes)
     elif plan.roles in (("number",), ("frame",)):
@@ -94,10 +94,10 @@ def _counted(survey: Survey, parsed: Parsed, plan: ClockPlan) -> tuple[Array, fl
     elif plan.kind == "epoch" and pa.types.is_integer(column.type):
         # whole nanoseconds do not fit a double: take the first off before scaling
         whole, empty = arrays.whole_seconds(column.cast(pa.int64()))
-        base = int(whole[0]) if len(whole) else 0
-        readings = (whole - base) * plan.unit
-        readings[empty] = np.nan
-        return readings, base * plan.unit + plan.offset, "UTC", "epoch"
+        filled = np.flatnonzero(~empty)
+        first = int(whole[filled[0]]) if len(filled) else 0
+        readings = np.where(empty, np.nan, (whole - first) * plan.unit)
+        return readings, first * plan.unit + plan.offset, "UTC", "epoch"
     else:
         readings, _ = arrays.floats(column)
     if plan.kind == "epoch":
@@ -142,7 +142,7 @@ def _apart(parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, fl
 def _stamped(survey: Survey, parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, float | None, str, str]:
     """Stamps in text or typed columns -> seconds from the first, and the UTC of that first."""
     columns = dict(zip(plan.roles, (parsed.columns.pop(place) for place in plan.columns), strict=False))
-    shift = np.int64(0)
+    shift: NDArray[np.int64] = np.zeros(1, np.int64)
     zoned = False
     kind = plan.kind
     if "full" in columns:
@@ -222,7 +222,7 @@ def _full(
     kind = column.type  # type: ignore[attr-defined]
     if pa.types.is_timestamp(kind):
         whole, bad = arrays.whole_seconds(column)
-        return whole, bad, np.int64(0), kind.tz is not None, plan.kind  # type: ignore[return-value]
+        return whole, bad, np.zeros(1, np.int64), kind.tz is not None, plan.kind
     read = parse(column, FULL)
     bad = read.bad | (read.clock == UNKNOWN)
     days, known = _ordered(read, bad, plan, notes)
@@ -238,7 +238,7 @@ def _time_of_day(column: object) -> tuple[NDArray[np.int64], NDArray[np.bool_], 
     kind = column.type  # type: ignore[attr-defined]
     if pa.types.is_time(kind):
         whole, bad = arrays.whole_seconds(column)
-        return whole, bad, np.int64(0), False  # type: ignore[return-value]
+        return whole, bad, np.zeros(1, np.int64), False
     if pa.types.is_floating(kind) or pa.types.is_integer(kind):
         column = column.cast(pa.int64()).cast(pa.string())  # type: ignore[attr-defined]
     read = parse(column, TIME)
@@ -319,7 +319,7 @@ def _offsets(column: object, notes: list[str]) -> tuple[NDArray[np.int64], bool]
 def _anchored(
     survey: Survey, parsed: Parsed, plan: ClockPlan, made: axis.Axis, notes: list[str]
 ) -> tuple[float | None, str]:
-    """UTC of time 0, from a coarser column of stamps beside an elapsed clock: the latest start that no stamp forbids."""
+    """UTC of time 0, from coarser stamps beside an elapsed clock: the latest start that no stamp forbids."""
     assert plan.anchor is not None
     column = parsed.columns.pop(plan.anchor, None)
     if column is None:

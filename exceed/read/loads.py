@@ -89,12 +89,12 @@ def _normal(evidence: Evidence, one: Settled) -> None:
     _increment(evidence, one, figures, level)
 
 
-def _spread_g(figures: np.ndarray) -> float:  # type: ignore[type-arg]
+def _spread_g(figures: np.ndarray) -> float:
     finite = figures[np.isfinite(figures)]
     return max(1.0, float(np.percentile(np.abs(finite), 99))) if len(finite) else 1.0
 
 
-def _increment(evidence: Evidence, one: Settled, figures: np.ndarray, level: float) -> None:  # type: ignore[type-arg]
+def _increment(evidence: Evidence, one: Settled, figures: np.ndarray, level: float) -> None:
     """Reads 0 in level flight: the sign needs a witness, the unit as well if it is not written."""
     column = one.raw.column
     one.datum = "increment"
@@ -123,7 +123,7 @@ def _increment(evidence: Evidence, one: Settled, figures: np.ndarray, level: flo
     one.notes.append("1 g is added to the increment as written")
 
 
-def _turning(evidence: Evidence) -> np.ndarray | None:  # type: ignore[type-arg]
+def _turning(evidence: Evidence) -> np.ndarray | None:
     """1/cos(bank) - 1 where it is a fair measure: 15 to 70 degrees."""
     bank = evidence.of("bank_angle", known=False)
     if bank is None:
@@ -138,7 +138,7 @@ def _turning(evidence: Evidence) -> np.ndarray | None:  # type: ignore[type-arg]
         return np.where(angle < np.radians(70.0), 1.0 / np.cos(np.minimum(angle, 1.3)) - 1.0, np.nan)
 
 
-def _increment_unit(evidence: Evidence, change: np.ndarray) -> str | None:  # type: ignore[type-arg]
+def _increment_unit(evidence: Evidence, change: np.ndarray) -> str | None:
     turn = _turning(evidence)
     if turn is None:
         return None
@@ -150,7 +150,7 @@ def _increment_unit(evidence: Evidence, change: np.ndarray) -> str | None:  # ty
     return fits[0] if len(fits) == 1 else None
 
 
-def _increment_sign(evidence: Evidence, change: np.ndarray) -> tuple[int, str]:  # type: ignore[type-arg]
+def _increment_sign(evidence: Evidence, change: np.ndarray) -> tuple[int, str]:
     """(+1, -1 or 0, why)."""
     turn = _turning(evidence)
     if turn is not None:
@@ -178,7 +178,7 @@ def _increment_sign(evidence: Evidence, change: np.ndarray) -> tuple[int, str]: 
 
 
 def companions(evidence: Evidence) -> None:
-    """Longitudinal and lateral load factor: unit by the attitude or the normal one beside them, sign by the attitude."""
+    """Longitudinal and lateral load factor: unit by attitude or the normal one beside them, sign by attitude."""
     normal = evidence.of("load_factor")
     pitch = evidence.of("pitch_angle")
     for one in evidence.all:

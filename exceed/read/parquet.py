@@ -1,4 +1,4 @@
-"""Parquet of any writer: schema, metadata and a few spread rows tell what a text log's headings and first block tell."""
+"""Parquet of any writer: schema, metadata and a few spread rows tell what a text log's first block tells."""
 
 from __future__ import annotations
 
@@ -54,7 +54,7 @@ def survey_parquet(source: Source, channels: object | None, declared: dict[str, 
     units = [_unit(field) for field in schema]
     columns = columns_of([field.name for field in schema], units, [""] * len(schema), cells, declared)
     columns = [_typed(column, schema.field(k), nested[k]) for k, column in enumerate(columns)]
-    facts = _facts(schema, file)
+    facts = tuple(_facts(schema, file))
     return assemble(
         source,
         None,

@@ -1,4 +1,4 @@
-"""The parser at work: a text log's wanted columns, typed, through pyarrow; and the slow second read that finds a place."""
+"""The parser at work: a text log's wanted columns, typed, through pyarrow; a slow second read finds a place."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""Windows spread over a large log settle what its headings leave open, so that the whole is read for its wanted columns only."""
+"""Windows spread over a large log settle what its headings leave open; the whole is read for wanted columns only."""
 
 from __future__ import annotations
 

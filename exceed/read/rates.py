@@ -23,7 +23,7 @@ _HELD_AT_MOST = 64
 
 
 def groups(columns: Sequence[Column], declared: Mapping[str, str]) -> list[Column]:
-    """Mark sub-frame groups: `NZ1 .. NZ8`, `NZ_1`, `NZ(1)`, `NZ a .. NZ d`, `NZ@0.125`: one base and unit, in this order.
+    """Mark sub-frame groups: `NZ1 .. NZ8`, `NZ_1`, `NZ(1)`, `NZ a .. NZ d`, `NZ@0.125`: one base, one unit.
 
     Numbers count from 0 or 1 without a hole, letters from a, offsets are even.
     """
@@ -48,8 +48,8 @@ def groups(columns: Sequence[Column], declared: Mapping[str, str]) -> list[Colum
                         (match.group(2), column)
                     )
                     break
-        for (base, _), members in bases.items():
-            members = _in_order(pattern, members)
+        for (base, _), named in bases.items():
+            members = _in_order(pattern, named)
             if not members:
                 continue
             lead = members[0].with_(group=tuple(column.index for column in members))

@@ -11,8 +11,9 @@ from numpy.typing import NDArray
 
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array
+from exceed.errors import LogError
 from exceed.read import arrays, states
-from exceed.read.container import LogError, Utf8Stream
+from exceed.read.container import Utf8Stream
 from exceed.read.look import Column, Survey
 from exceed.read.parse import Parsed, Reader
 from exceed.read.table import Layout, split

@@ -147,19 +147,17 @@ def recognise(
         found = whole
     if not found and source:
         found, _ = meanings(source)
-    if not found:
-        if in_name or unit_cell:
-            spoken = unit_in(unit_text)
-            if spoken and spoken.quantity:
-                found = (Meaning(spoken.quantity, 0.8, f"its unit {unit_text} names the speed"),)
+    spoken = unit_in(unit_text) if in_name or unit_cell else None
+    if not found and spoken and spoken.quantity:
+        found = (Meaning(spoken.quantity, 0.8, f"its unit {unit_text} names the speed"),)
     if not found:
         return column.with_(problem=f"not understood: {why}" if why else "not understood")
     return _with_unit(column, found, unit_text, unit_from, declared)
 
 
 _MULTIPLE = re.compile(
-    r"(?:[x×*/]\s*\d[\d.,eE+\-^]*|\d[\d.,]*\s*[x×*]?)\s*([A-Za-z°%/²2]+)|([A-Za-z°%/]+)\s*[x×*/]\s*\d+(?:[.,]\d+)?|\bFL\b|flight "
-    r"level",
+    r"(?:[x×*/]\s*\d[\d.,eE+\-^]*|\d[\d.,]*\s*[x×*]?)\s*([A-Za-z°%/²2]+)"
+    r"|([A-Za-z°%/]+)\s*[x×*/]\s*\d+(?:[.,]\d+)?|\bFL\b|flight level",
     re.I,
 )
 
@@ -169,7 +167,7 @@ def _multiple(name: str, unit_cell: str) -> str:
     for text in (unit_cell, *re.findall(r"[\[({]\s*([^\[\](){}]*?)\s*[\])}]", name)):
         match = _MULTIPLE.fullmatch(text.strip())
         if match and not unit_in(text) and (match.group(1) is None or unit_in(match.group(1))):
-            return text.strip()
+            return str(text).strip()
     return ""
 
 

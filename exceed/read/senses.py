@@ -38,7 +38,7 @@ def _all(evidence: Evidence, quantity: str) -> list[Settled]:
     return [one for one in evidence.all if one.quantity == quantity and one.unit and not one.problem]
 
 
-def _turns(evidence: Evidence) -> np.ndarray | None:  # type: ignore[type-arg]
+def _turns(evidence: Evidence) -> np.ndarray | None:
     for name in ("heading", "track_angle"):
         found = evidence.of(name)
         if found is not None:
@@ -118,7 +118,7 @@ def _rise(evidence: Evidence, one: Settled) -> None:
         one.sign = "up"
 
 
-def _speed(evidence: Evidence) -> np.ndarray | None:  # type: ignore[type-arg]
+def _speed(evidence: Evidence) -> np.ndarray | None:
     found = evidence.of("indicated_airspeed", "calibrated_airspeed", "true_airspeed", "ground_speed")
     return evidence.si(found) if found is not None else None
 

@@ -240,7 +240,7 @@ def _not_numbers(column: Column, places: Any, texts: list[str], name: str, time:
     kept = time.rows if time.rows is not None else None
     first, last = int(places[0]), int(places[-1])
     if kept is not None:
-        first, last = (int(min(np.searchsorted(kept, p), len(kept) - 1)) for p in (first, last))
+        first, last = (min(int(np.searchsorted(kept, p)), len(kept) - 1) for p in (first, last))
     first, last = first * time.fold, last * time.fold
     last = min(last, len(time.time) - 1)
     first = min(first, last)

@@ -130,7 +130,7 @@ def _bytes_of(array: object) -> tuple[NDArray[np.uint8], Whole, NDArray[np.bool_
         else np.zeros(count + 1, np.int64)
     )
     raw = np.frombuffer(data, dtype=np.uint8) if data is not None and data.size else np.zeros(0, np.uint8)
-    valid = np.asarray(array.is_valid().to_numpy(zero_copy_only=False), dtype=bool)  # type: ignore[attr-defined]
+    valid = np.asarray(array.is_valid().to_numpy(zero_copy_only=False), dtype=np.bool_)  # type: ignore[attr-defined]
     return raw, offsets, valid
 
 
@@ -138,12 +138,12 @@ def parse(array: object, pattern: re.Pattern[str]) -> Stamps:
     """Parse a column of text by a pattern (FULL, DATE or TIME). Cells that do not fit are `bad`."""
     raw, offsets, valid = _bytes_of(array)
     count = len(offsets) - 1
-    out = Stamps(
-        *(np.full(count, UNKNOWN, np.int64) for _ in range(1)),
-        *(np.zeros(count, np.int64) for _ in range(5)),
-        False,
-        np.ones(count, bool),
-    )
+
+    def zeros() -> Whole:
+        return np.zeros(count, np.int64)
+
+    unknown = np.full(count, UNKNOWN, np.int64)
+    out = Stamps(unknown, zeros(), zeros(), zeros(), zeros(), zeros(), False, np.ones(count, np.bool_))
     lengths = np.where(valid, np.diff(offsets), 0)
     for length in np.unique(lengths):
         if length == 0 or length > 48:
@@ -224,8 +224,8 @@ def _fill(out: Stamps, rows: Whole, letters: NDArray[np.uint8], match: re.Match[
         fraction = number("fraction", "fraction2")
         nano = np.zeros(len(rows), np.int64)
         if fraction is not None:
-            key = "fraction" if "fraction" in spans else "fraction2"
-            nano = fraction * 10 ** (9 - (spans[key][1] - spans[key][0]))
+            start, end = spans["fraction" if "fraction" in spans else "fraction2"]
+            nano = fraction * 10 ** (9 - (end - start))
         half = match.groupdict().get("half")
         if half:
             bad |= (hour < 1) | (hour > 12)

@@ -12,7 +12,7 @@ from exceed.read.look import Column, Survey
 from exceed.read.rates import groups
 from exceed.read.recognise import columns_of, indexed, is_clock, tanks
 from exceed.read.stamps import ClockPlan
-from exceed.read.table import layout, registration_in, serial_in
+from exceed.read.table import Layout, layout, registration_in, serial_in
 
 
 def survey(
@@ -71,7 +71,7 @@ def _declare(entry: object, known: dict[str, str]) -> None:
 
 def assemble(
     source: Source,
-    found: object,
+    found: Layout | None,
     columns: Sequence[Column],
     cells: Sequence[Sequence[str]],
     facts: Sequence[tuple[str, str]],
@@ -117,7 +117,7 @@ def assemble(
         declared,
         rows,
         (*notes, *more),
-    )  # type: ignore[arg-type]
+    )
 
 
 def _without_clocks(columns: Sequence[Column]) -> list[Column]:

@@ -1,4 +1,4 @@
-"""The shape of a text log, found in its first block: delimiter, decimal mark, headings, units row, facts, where data start."""
+"""The shape of a text log, found in its first block: delimiter, decimal mark, headings, units, facts, first row."""
 
 from __future__ import annotations
 
@@ -109,7 +109,7 @@ def layout(source: Source) -> Layout:
         units,
         sources,
         tuple(tuple(h) for h in headings),
-        tuple([*facts_in(preamble, delimiter), *_facts_among(headings, names, delimiter)]),
+        (*facts_in(preamble, delimiter), *_facts_among(headings, names, delimiter)),
         preamble,
         tuple(tuple(c.strip() for c in row) for row in spread(data, LOOKED_AT)),
         comment,
@@ -357,7 +357,7 @@ def facts_in(lines: tuple[str, ...], delimiter: str) -> list[tuple[str, str]]:
 
 
 def _facts_among(headings: list[list[str]], names: tuple[str, ...], delimiter: str) -> list[tuple[str, str]]:
-    """A row of facts that has as many cells as the table may be taken for a heading: its registration and serial count."""
+    """A row of facts as wide as the table may be taken for a heading: its registration and serial count."""
     found = []
     for row in headings:
         if tuple(row) != names:

@@ -236,10 +236,9 @@ def test_a_gap_stays_a_gap(tmp_path: Path) -> None:
 
 def test_a_coarse_date_beside_a_fine_counter_anchors_it(tmp_path: Path) -> None:
     lines = ["elapsed [s],UTC,NZ [g]"]
-    lines += [
-        f"{k * 0.125:.3f},{(START + datetime.timedelta(seconds=k // 8)).isoformat().replace('+00:00', 'Z')},{1 + 0.1 * np.sin(k):.3f}"
-        for k in range(200)
-    ]
+    for k in range(200):
+        stamp = (START + datetime.timedelta(seconds=k // 8)).isoformat().replace("+00:00", "Z")
+        lines.append(f"{k * 0.125:.3f},{stamp},{1 + 0.1 * np.sin(k):.3f}")
     recording = log(tmp_path, "\n".join(lines) + "\n")
     assert np.allclose(recording.time, np.arange(200) / 8)
     assert recording.clock.start == pytest.approx(START.timestamp(), abs=1e-3)

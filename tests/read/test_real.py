@@ -1,4 +1,4 @@
-"""A real recording (source and licence in tests/data/real/SOURCES.md): no unit is written, and the data settle them all."""
+"""A real recording (source and licence in tests/data/real/SOURCES.md) without units: the data settle them all."""
 
 from __future__ import annotations
 
