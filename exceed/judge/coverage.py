@@ -52,6 +52,11 @@ def _row(trace: Trace, rule: Compiled, scan: RuleScan, grid: Grid, number: int |
     for code, name in enumerate(REASONS):
         if code and seconds[code] > 1e-9:
             reasons[name] = float(seconds[code])
+    excess = sum(reasons.values()) - recorded
+    if excess > 0.0:
+        # samples at the ends of a flight own time beyond it, which is not the flight's
+        largest = max(reasons, key=lambda name: reasons[name])
+        reasons[largest] = max(reasons[largest] - excess, 0.0)
     assessed = max(recorded - sum(reasons.values()), 0.0)
     shortest = max(certainty.shortest_sized(grid.interval), 2.0 * _smoothing(trace, rule))
     blind = rule.must_see is not None and 2.0 * _smoothing(trace, rule) > rule.must_see * MUST_SEE_TOLERANCE

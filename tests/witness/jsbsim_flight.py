@@ -8,6 +8,7 @@ Its units (ft, lb, deg R, psf) become SI here, by the exact factors written belo
 from __future__ import annotations
 
 import math
+import tempfile
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -119,7 +120,9 @@ def fly(plan: Plan) -> dict[str, Array]:
     """
     sim = jsbsim.FGFDMExec(None)
     sim.set_debug_level(0)
+    sim.set_output_path(tempfile.mkdtemp(prefix="jsbsim-"))  # some models write a file as soon as they are loaded
     assert sim.load_model(plan.model)
+    sim.disable_output()
     sim.set_dt(STEP)
     sim["atmosphere/delta-T"] = plan.warmer / RANKINE
     for name, value in (("h-sl-ft", plan.height_ft), plan.speed, ("gamma-deg", 0.0), ("psi-true-deg", 40.0),
