@@ -20,7 +20,7 @@ from exceed.core.phases import PHASES
 from exceed.core.trace import Trace
 from exceed.derive.export import trace_blocks, trace_columns
 from exceed.errors import OutputError, Problem
-from exceed.report.write import problem_of
+from exceed.report.write import check_target, problem_of
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -28,13 +28,19 @@ if TYPE_CHECKING:
 KINDS = (".parquet", ".csv")
 
 
-def write_trace(trace: Trace, outcome: LogOutcome, out: Path) -> tuple[int, int]:
-    """Write the table whole or not at all. Returns (rows, columns). Raises OutputError."""
+def check_table(out: Path) -> None:
+    """Raise OutputError where no table can be written to this name; to be asked before the log is read."""
     if out.suffix.lower() not in KINDS:
         raise OutputError(
             Problem(str(out), f"'{out.suffix}' is no kind of table", "a name that ends in .parquet or .csv",
                     "choose one of these")
         )  # fmt: skip
+    check_target(out)
+
+
+def write_trace(trace: Trace, outcome: LogOutcome, out: Path) -> tuple[int, int]:
+    """Write the table whole or not at all. Returns (rows, columns). Raises OutputError."""
+    check_table(out)
     schema = table_schema(trace, outcome)
     rows = 0
     temporary = None

@@ -5,7 +5,6 @@ Heavy imports sit inside the commands, so that `exceed --help` costs typer alone
 
 from __future__ import annotations
 
-import os
 import sys
 from pathlib import Path
 from typing import Annotated, Any
@@ -15,7 +14,9 @@ import typer
 from exceed import __version__
 from exceed.cli import ledger as ledger_commands
 from exceed.cli import options as opt
+from exceed.cli import streams
 from exceed.cli.run import Terminal, guarded
+from exceed.errors import OutputError
 
 app = typer.Typer(
     name="exceed",
@@ -302,16 +303,19 @@ def selfcheck(
 
 
 def main(arguments: list[str] | None = None) -> Any:
-    """Entry point. A closed pipe ends quietly; an interrupt ends with 130."""
+    """Entry point. A closed pipe changes nothing of a run; an output that fails is said; an interrupt ends with 130."""
+    streams.install()
     try:
-        return app(args=arguments, standalone_mode=True)
+        try:
+            return app(args=arguments, standalone_mode=True)
+        finally:
+            sys.stdout.flush()
     except KeyboardInterrupt:
         Terminal.err("interrupted")
         sys.exit(130)
-    except BrokenPipeError:
-        # the reader has gone (| head): nothing more can be said to it
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        sys.exit(0)
+    except OutputError as error:
+        Terminal.err(f"exceed: {error}")
+        sys.exit(error.exit_code)
 
 
 if __name__ == "__main__":

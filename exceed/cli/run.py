@@ -48,8 +48,11 @@ def guarded(debug: bool) -> Iterator[None]:
     """A user's mistake becomes its message and exit code, a fault of ours one line; never a traceback unasked."""
     try:
         yield
-    except (typer.Exit, typer.Abort, KeyboardInterrupt, BrokenPipeError):
+    except (typer.Exit, typer.Abort):
         raise
+    except KeyboardInterrupt:
+        Terminal.err("exceed: interrupted")
+        raise typer.Exit(INTERRUPTED) from None
     except ExceedError as error:
         Terminal.err(f"exceed: {error}")
         raise typer.Exit(error.exit_code) from None
@@ -71,8 +74,10 @@ def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
     from exceed import pipeline
     from exceed.cli.ledger import ScanLedger
     from exceed.report.summary import summarise
-    from exceed.report.write import to_json, write_whole
+    from exceed.report.write import check_target, to_json, write_whole
 
+    check_target(shown["json"])
+    check_target(shown["html"])
     ledger = ScanLedger(shown["ledger"], shown["new_only"])
     with _progress(shown["quiet"]) as progress:
         outcome = pipeline.scan(settings, progress, ledger.sift)
@@ -125,6 +130,8 @@ def _say_failures(summary: dict[str, Any], shown: dict[str, Any]) -> None:
     """Failed logs on stderr too, where the table does not say them."""
     if not shown["quiet"] and shown["json"] != "-":
         return
+    if not summary["recordings"]:
+        Terminal.err("exceed: no log was found, so nothing was assessed")
     for recording in summary["recordings"]:
         if recording["status"] == "failed":
             Terminal.err(f"exceed: {_problem_text(recording)}")
@@ -180,7 +187,9 @@ def run_describe(settings: Settings, write: Path | None, colour: bool) -> int:
     from exceed import pipeline
     from exceed.report.describe import describe
     from exceed.report.show import wants_colour, wants_unicode
+    from exceed.report.write import check_target
 
+    check_target(write)
     outcome, survey, recording = pipeline.describe(settings)
     out = sys.stdout
     _out(
@@ -203,8 +212,9 @@ def run_describe(settings: Settings, write: Path | None, colour: bool) -> int:
 def run_trace(settings: Settings, out: Path) -> int:
     """Write the derived table."""
     from exceed import pipeline
-    from exceed.tables import write_trace
+    from exceed.tables import check_table, write_trace
 
+    check_table(out)
     trace, outcome = pipeline.trace_of(settings)
     rows, columns = write_trace(trace, outcome, out)
     from exceed.core.findings import CAUTIONS
@@ -242,8 +252,10 @@ def run_spectrum(settings: Settings, shown: dict[str, Any]) -> int:
     from exceed import spectra
     from exceed.report.show import wants_unicode
     from exceed.report.spectrum import render_spectrum, spectrum_page, spectrum_summary
-    from exceed.report.write import to_json, write_whole
+    from exceed.report.write import check_target, to_json, write_whole
 
+    check_target(shown["json"])
+    check_target(shown["html"])
     with _progress(False) as progress:
         found = spectra.spectrum(settings, progress)
     summary = spectrum_summary(found)

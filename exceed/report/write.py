@@ -96,6 +96,23 @@ def write_whole(target: str | os.PathLike[str], text: str | bytes, *, encoding: 
                 os.unlink(temporary)
 
 
+def check_target(target: str | os.PathLike[str] | None) -> None:
+    """Raise the OutputError that writing there would end in, as far as it can be foreseen: before the work is done."""
+    if target is None or str(target) == "-":
+        return
+    path = Path(target)
+    folder = Path(os.path.realpath(path)).parent
+    error: OSError | None = None
+    if path.is_dir():
+        error = IsADirectoryError(21, "Is a directory")
+    elif not folder.is_dir():
+        error = FileNotFoundError(2, "No such file or directory")
+    elif not os.access(path if path.exists() and not path.is_file() else folder, os.W_OK):
+        error = PermissionError(13, "Permission denied")
+    if error is not None:
+        raise OutputError(problem_of(error, str(target)))
+
+
 def problem_of(error: OSError | ValueError, target: str) -> Problem:
     """What to tell about an output that could not be written."""
     if isinstance(error, FileNotFoundError):
