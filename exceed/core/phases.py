@@ -28,6 +28,8 @@ PHASES: tuple[str, ...] = (
 PHASE_CODE: dict[str, int] = {name: code for code, name in enumerate(PHASES)}
 # what happens so soon after a landing belongs to it, s (an impact, a bounce): judgement
 LANDING_ROLL = 10.0
+# and what happens so soon before a take-off (a rotation) to the flight that begins, s: judgement
+TAKE_OFF_RUN = 10.0
 AIRBORNE = "airborne"  # the group word: every instant from take-off to landing, unknown included
 
 
@@ -85,11 +87,14 @@ class FlightTrack:
     standing: Intervals = field(default_factory=lambda: EMPTY)
 
     def number_at(self, time: float) -> int | None:
-        """The flight that an instant belongs to; its landing roll, a few seconds after touchdown, is part of it."""
+        """The flight that an instant belongs to; the seconds of its take-off run and landing roll are part of it."""
         for flight in self.flights:
             if flight.start <= time <= flight.end:
                 return flight.number
         for flight in self.flights:
             if flight.landing_seen and 0.0 < time - flight.end <= LANDING_ROLL:
+                return flight.number
+        for flight in self.flights:
+            if flight.take_off_seen and 0.0 < flight.start - time <= TAKE_OFF_RUN:
                 return flight.number
         return None

@@ -42,6 +42,8 @@ def gust_velocity(
         if flap_angle is not None:
             fits &= np.abs(flap_angle) <= FLAPS_UP
     increment = np.where(np.isfinite(load_factor), load_factor - undisturbed, np.nan)
+    # a datum out by a hundredth of g would otherwise keep the record on one side of the mean for minutes
+    increment = np.where(np.abs(increment) <= gust.USUAL_DEAD_ZONE, 0.0, increment)
     found = gust.peaks_between_means(time, increment)
     short = gust.is_gust(found.duration)
     if not short.any():

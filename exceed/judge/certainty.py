@@ -104,7 +104,9 @@ def _score(ends: Sequence[float], level: float) -> float:
         a = max(i for i in range(len(ends) - 1) if ends[i] <= level)
     width = ends[a + 1] - ends[a]
     if width <= 1e-12 * max(abs(ends[a]), abs(ends[a + 1]), 1e-300):
-        return 0.0 if level == ends[a] else math.copysign(math.inf, level - ends[a])
+        # nothing is uncertain: what stands at the level to the last digit is not beyond it
+        level_is_above = level >= ends[a] - 1e-12 * max(abs(level), abs(ends[a]))
+        return math.inf if level_is_above else -math.inf
     return _SCORES[a] + (level - ends[a]) / width * (_SCORES[a + 1] - _SCORES[a])
 
 

@@ -15,6 +15,7 @@ from exceed.documents.rules import RATES, Rule, find
 from exceed.judge.compiled import Allowance, Compiled, LevelSpec, Series, TaskSpec
 from exceed.judge.conditions import all_of, compile_condition
 from exceed.judge.limits import FoundLimit, find_limit, why_missing
+from exceed.judge.stalls import MARGINS
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -146,6 +147,7 @@ def _ready(
         # a difference of two samples has no smooth curve between them to estimate a peak from
         judge_on="sample" if rule.rate else rule.judge_on,
         magnitude=magnitude,
+        cap="possible" if judged in MARGINS and side == "below" else None,
         discrete=side == "is" or row.discrete,
         task=_task(rule),
         notes=notes,

@@ -25,6 +25,7 @@ from exceed.judge.sizing import (
     size,
     with_cell,
 )
+from exceed.judge.stalls import MARGINS, sign_of_stall
 
 Index = NDArray[np.int64]
 
@@ -166,7 +167,19 @@ def _all(
         sized = size(rule, trace, grid, strips[index], at[index], float(uncertainty[index]), item.sampled)
         made.append(
             (
-                _event(rule, trace, grid, item, runs, strips[index], at[index], int(places[index]), sized, known_here),
+                _event(
+                    rule,
+                    trace,
+                    grid,
+                    item,
+                    runs,
+                    strips[index],
+                    at[index],
+                    int(places[index]),
+                    sized,
+                    known_here,
+                    fixed,
+                ),
                 sized,
                 _lasted(rule, trace, item, strips[index], at[index], float(uncertainty[index])),
             )
@@ -209,9 +222,13 @@ def _event(
     place: int,
     sized: Sized,
     context: dict[str, float],
+    fixed: Mapping[str, float] | None = None,
 ) -> Event:
     bound = float(strip.limit[at])
-    capped = _capped(rule, trace)
+    capped, sign = _capped(rule, trace), None
+    if capped and _by_margin_only(rule, trace):
+        sign = sign_of_stall(trace, grid, item.first, item.last, fixed)
+        capped = sign is None
     levels = []
     for index, level in enumerate(rule.levels):
         threshold = float(np.asarray(rule.threshold(level, bound)))
@@ -226,6 +243,8 @@ def _event(
             start, end, chance = None, None, 0.0
         levels.append(Level(level.severity, threshold, start, end, beyond, chance))
     notes = [*rule.notes, *sized.notes]
+    if sign is not None:
+        notes.append(f"more than the margin shows it: {sign}")
     larger = _larger_elsewhere(rule, strip, at)
     if larger:
         notes.append(larger)
@@ -257,9 +276,17 @@ def _event(
 
 
 def _capped(rule: Compiled, trace: Trace) -> bool:
-    """Whether the rule, or a method beneath its value, makes an event at most `possible`."""
-    names = [name for name in (rule.judged.removeprefix("rate_of:"), *rule.grid_names) if trace.has(name)]
-    return rule.cap is not None or any(trace.steps[name].cap for name in trace.closure(names))
+    """Whether the rule, or a method beneath its value, limit or condition, makes an event at most `possible`."""
+    return rule.cap is not None or _method_caps(rule, trace)
+
+
+def _method_caps(rule: Compiled, trace: Trace) -> bool:
+    wanted = (rule.judged.removeprefix("rate_of:"), *rule.grid_names, *rule.names)
+    return any(trace.steps[name].cap for name in trace.closure([name for name in wanted if trace.has(name)]))
+
+
+def _by_margin_only(rule: Compiled, trace: Trace) -> bool:
+    return rule.judged in MARGINS and not _method_caps(rule, trace)
 
 
 def _inside(runs: Runs, item: Stretch) -> Runs:

@@ -103,7 +103,11 @@ def root_of_mass(value: float, mass: float) -> Series:
 def why_missing(trace: Trace, name: str) -> str:
     """Why a quantity cannot be had, in words."""
     words = name.replace("_", " ")
-    return trace.missing.get(name) or f"{words} not recorded"
+    why = trace.missing.get(name) or "not recorded"
+    # the reason alone would not say what is missing
+    if why.startswith("not recorded"):
+        return f"{words} {why}"
+    return why if words in why else f"{words}: {why}"
 
 
 def find_limit(limit: Limit, trace: Trace, aircraft: Aircraft | None) -> FoundLimit:
