@@ -44,7 +44,7 @@ MAY = {
     "api": {"pipeline", "report", "settings", "tables"},
     "cli": {
         "cli", "pipeline", "report", "errors", "core", "documents", "read", "settings", "tables", "reference",
-        "envelopes", "spectra",
+        "envelopes", "ledger", "spectra",
     },
     "__init__": {"api", "errors"},
     "__main__": {"cli"},

@@ -72,9 +72,10 @@ def _find(
     if not key or stretch["start_at"] is None:
         return None, None
     at = (stretch["start_at"], stretch["end_at"])
+    # the plus keeps the planner on the index of times: few stretches end after a new flight begins
     rows = table.rows(
         "SELECT s.*, f.flight_key, j.recording_id FROM flight_stretches s JOIN judgements j ON j.id = s.judgement_id "
-        f"JOIN flights f ON f.id = s.flight_id WHERE s.flight_id IN {BORNE} AND j.recording_id <> :recording "
+        f"JOIN flights f ON f.id = s.flight_id WHERE +s.flight_id IN {BORNE} AND j.recording_id <> :recording "
         f"AND s.start_at <= :last AND s.end_at >= :first AND {NEWEST} ORDER BY s.id",
         reg=key, recording=recording_id, first=at[0] - TAKEN_UP, last=at[1] + TAKEN_UP,
     )  # fmt: skip

@@ -7,7 +7,7 @@ from collections.abc import Iterable, Sequence
 from typing import Any
 
 from exceed.ledger import stretch as st
-from exceed.ledger.flights import BORNE, flight_of, place_flights
+from exceed.ledger.flights import flight_of, place_flights
 from exceed.ledger.store import Ledger, Row, Table, chunks, named, utc_now
 
 _UNREAD = "not read or assessed, so not in the ledger"
@@ -137,16 +137,18 @@ class _Scan:
 
     def _known_events(self, recording: Row, recording_id: int) -> None:
         """Find this summary's events among those that are there."""
-        for body in (*recording["events"], *recording["undecided"]):
-            found = self.table.one(
-                "SELECT e.id FROM events e JOIN judgements j ON j.id = e.judgement_id WHERE e.event_id = :name "
-                "AND j.recording_id = :recording ORDER BY e.id DESC",
-                name=body["id"], recording=recording_id,
-            ) or self.table.one(
-                "SELECT event_row AS id FROM sightings WHERE event_id = :name ORDER BY id DESC", name=body["id"]
-            )  # fmt: skip
-            if found is not None:
-                self.rows_of[body["id"]] = int(found["id"])
+        there: dict[str, int] = {}
+        for sql in (
+            "SELECT s.event_id, s.event_row AS id FROM sightings s JOIN judgements j ON j.id = s.judgement_id "
+            "WHERE j.recording_id = :recording ORDER BY s.id",
+            "SELECT e.event_id, e.id FROM events e JOIN judgements j ON j.id = e.judgement_id "
+            "WHERE j.recording_id = :recording ORDER BY e.id",
+        ):
+            for row in self.table.rows(sql, recording=recording_id):
+                there[row["event_id"]] = int(row["id"])
+        for body in _events(recording):
+            if body["id"] in there:
+                self.rows_of[body["id"]] = there[body["id"]]
                 self.result["events"]["known"] += 1
 
     def _judgement(self, recording: Row, row: int, history: Sequence[Row], rules: str, outcome: str) -> None:
@@ -194,19 +196,20 @@ class _Scan:
         """New events beside the old: the same occurrence succeeds, what is no longer found is removed (as a row)."""
         key = st.registration_key(recording["registration"])
         own = [old for old in self._own(row) if old["rule"] in judged] if anew else []
+        known, twins = st.Occurrences(own, "_s"), st.Occurrences(self._twins(recording, key, row), "_at")
         matched: set[int] = set()
         for kind, body in _kinds(recording):
             new = _event_row(kind, body, key)
-            fits = [old for old in own if st.same_occurrence(old, new, same_recording=True)]
+            fits = known.of(new)
             matched |= {old["id"] for old in fits}
-            if not fits and key and new["start_at"] is not None:
-                twin = self._twin(new, key, row)
+            if not fits:
+                fits = twins.of(new)[:1]
+                twin = fits[0] if fits else None
                 if twin is not None and not _supersedes(new, body, twin, rules):
                     self.table.add("sightings", event_row=twin["id"], judgement_id=judgement, event_id=body["id"])
                     self.rows_of[body["id"]] = int(twin["id"])
                     self.result["events"]["known"] += 1
                     continue
-                fits = [] if twin is None else [twin]
             event = self.table.add(
                 "events", event_id=body["id"], judgement_id=judgement, flight_id=flight_of(placed, body),
                 registration=body["registration"], body=_json(body), **new,
@@ -234,16 +237,26 @@ class _Scan:
             recording=recording_id,
         )
 
-    def _twin(self, new: Row, key: str, recording_id: int) -> Row | None:
-        """The same occurrence as another recording of the same aeroplane has it."""
-        return self.table.one(
-            "SELECT e.*, j.rules_sha256 FROM events e JOIN judgements j ON j.id = e.judgement_id "
-            f"WHERE (e.reg_key = :reg OR e.flight_id IN {BORNE}) AND e.rule = :rule AND e.part = :part "
-            "AND e.start_at <= :last AND e.end_at >= :first AND j.recording_id <> :recording "
-            "AND NOT EXISTS (SELECT 1 FROM successions s WHERE s.earlier_id = e.id) ORDER BY e.id",
-            reg=key, rule=new["rule"], part=new["part"], first=new["start_at"] - st.SLACK,
-            last=new["end_at"] + st.SLACK, recording=recording_id,
-        )  # fmt: skip
+    def _twins(self, recording: Row, key: str, recording_id: int) -> list[Row]:
+        """The current events that other recordings of the same aeroplane, as it is or ever was named, show then."""
+        times = [st.epoch(one[end]) for one in _events(recording) for end in ("start", "end")]
+        known = [time for time in times if time is not None]
+        if not key or not known:
+            return []
+        moved = (
+            "SELECT r.flight_id FROM reassignments r JOIN flights f ON f.id = r.flight_id "
+            "WHERE r.reg_key = :reg OR f.reg_key = :reg"
+        )
+        found = {}
+        for owner in ("e.reg_key = :reg", f"e.flight_id IN ({moved})"):
+            for row in self.table.rows(
+                "SELECT e.*, j.rules_sha256 FROM events e JOIN judgements j ON j.id = e.judgement_id "
+                f"WHERE {owner} AND e.end_at >= :first AND e.start_at <= :last AND j.recording_id <> :recording "
+                "AND NOT EXISTS (SELECT 1 FROM successions s WHERE s.earlier_id = e.id)",
+                reg=key, first=min(known) - st.SLACK, last=max(known) + st.SLACK, recording=recording_id,
+            ):  # fmt: skip
+                found[row["id"]] = row
+        return list(found.values())
 
     def _succeed(self, old: Row, later: int | None, judgement: int, kind: str, words: str) -> None:
         self.table.add("successions", earlier_id=old["id"], later_id=later, judgement_id=judgement, kind=kind,
@@ -262,11 +275,7 @@ class _Scan:
     def _inspection(self, inspection: Row) -> None:
         """An inspection is known by its rule, its task, and the occurrences that ask for it."""
         rows = [self.rows_of[name] for name in inspection["events"] if name in self.rows_of]
-        there: dict[int, int] = {}
-        for row in rows:
-            found = self._asked(row, inspection)
-            if found is not None:
-                there[row] = found
+        there = self._asked(rows, inspection)
         fresh = [row for row in dict.fromkeys(rows) if row not in there]
         if not fresh:
             self.result["inspections"]["known"] += bool(rows)
@@ -278,21 +287,28 @@ class _Scan:
         else:
             target = self._new_inspection(inspection, fresh)
             self.result["inspections"]["added"] += 1
-        for row in fresh:
-            self.table.add("inspection_events", inspection_row=target, event_row=row)
+        self.table.add_many("inspection_events", [{"inspection_row": target, "event_row": row} for row in fresh])
 
-    def _asked(self, row: int, inspection: Row) -> int | None:
-        """The inspection that this occurrence, in any of its judgements, has asked for already."""
-        for piece in chunks(sorted(lineage(self.table, row))):
+    def _asked(self, rows: Sequence[int], inspection: Row) -> dict[int, int]:
+        """Event row -> the inspection that its occurrence, in any of its judgements, has asked for already."""
+        judged_before: set[int] = set()
+        for piece in chunks(sorted(set(rows))):
             places, values = named(piece)
-            found = self.table.one(
-                "SELECT i.id FROM inspections i JOIN inspection_events ie ON ie.inspection_row = i.id "
-                f"WHERE ie.event_row IN ({places}) AND i.rule = :rule AND i.task = :task ORDER BY i.id DESC",
+            for end in ("earlier_id", "later_id"):
+                sql = f"SELECT {end} AS row_id FROM successions WHERE {end} IN ({places})"
+                judged_before |= {found["row_id"] for found in self.table.rows(sql, **values)}
+        kin = {row: sorted(lineage(self.table, row)) if row in judged_before else [row] for row in set(rows)}
+        asked: dict[int, int] = {}
+        for piece in chunks(sorted({one for family in kin.values() for one in family})):
+            places, values = named(piece)
+            for found in self.table.rows(
+                "SELECT ie.event_row, i.id FROM inspections i JOIN inspection_events ie ON ie.inspection_row = i.id "
+                f"WHERE ie.event_row IN ({places}) AND i.rule = :rule AND i.task = :task ORDER BY i.id",
                 rule=inspection["rule"], task=inspection["task"], **values,
-            )  # fmt: skip
-            if found is not None:
-                return int(found["id"])
-        return None
+            ):  # fmt: skip
+                asked[found["event_row"]] = int(found["id"])
+        newest = {row: max((asked[one] for one in family if one in asked), default=0) for row, family in kin.items()}
+        return {row: found for row, found in newest.items() if found}
 
     def _new_inspection(self, inspection: Row, fresh: Sequence[int]) -> int:
         name = inspection["id"]

@@ -74,6 +74,16 @@ class Table:
         done = self.connection.execute(text(sql), {key: storable(value) for key, value in values.items()})
         return int(done.scalar_one())
 
+    def add_many(self, table: str, rows: Sequence[Row]) -> None:
+        """New rows that all have the same columns."""
+        if not rows:
+            return
+        names = list(rows[0])
+        if not set(names) <= set(COLUMNS[table]):
+            raise KeyError(f"{table} has no such columns: {names}")
+        sql = f"INSERT INTO {table} ({', '.join(names)}) VALUES ({', '.join(':' + name for name in names)})"
+        self.connection.execute(text(sql), [{key: storable(value) for key, value in row.items()} for row in rows])
+
 
 class Ledger:
     """A ledger that was opened. Use `reading` and `writing`; `close` at the end, or a `with`."""

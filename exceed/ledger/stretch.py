@@ -5,8 +5,10 @@ from __future__ import annotations
 import hashlib
 import json
 import re
-from collections.abc import Mapping, Sequence
+from bisect import bisect_right
+from collections.abc import Iterable, Mapping, Sequence
 from datetime import UTC, datetime
+from itertools import accumulate
 from typing import Any
 
 from exceed.core.findings import SEVERITIES
@@ -74,6 +76,41 @@ def same_occurrence(one: Mapping[str, Any], other: Mapping[str, Any], *, same_re
     if one["start_at"] is None or other["start_at"] is None:
         return False
     return touch((one["start_at"], one["end_at"]), (other["start_at"], other["end_at"]))
+
+
+class Occurrences:
+    """Events (rows with id, rule, part, start, end) in which those that share an instant with another are found fast.
+
+    `clock` says whose times count: `_s` of one recording, `_at` of different ones; rows without them are left out.
+    """
+
+    def __init__(self, rows: Iterable[Row], clock: str) -> None:
+        self._start, self._end = f"start{clock}", f"end{clock}"
+        self._rows: dict[tuple[str, str], list[Row]] = {}
+        for row in rows:
+            if row[self._start] is not None:
+                self._rows.setdefault((row["rule"], row["part"]), []).append(row)
+        self._starts: dict[tuple[str, str], list[float]] = {}
+        self._reach: dict[tuple[str, str], list[float]] = {}
+        for key, group in self._rows.items():
+            group.sort(key=lambda row: (row[self._start], row["id"]))
+            self._starts[key] = [row[self._start] for row in group]
+            # the latest end up to each row: where it lies before an event, no earlier row can touch that
+            self._reach[key] = list(accumulate((row[self._end] for row in group), max))
+
+    def of(self, event: Mapping[str, Any]) -> list[Row]:
+        """The rows that are the same occurrence as an event, in the order they were added."""
+        key = (event["rule"], event["part"])
+        if key not in self._rows or event[self._start] is None:
+            return []
+        found = []
+        place = bisect_right(self._starts[key], event[self._end] + SLACK) - 1
+        while place >= 0 and self._reach[key][place] + SLACK >= event[self._start]:
+            row = self._rows[key][place]
+            if touch((row[self._start], row[self._end]), (event[self._start], event[self._end])):
+                found.append(row)
+            place -= 1
+        return sorted(found, key=lambda row: int(row["id"]))
 
 
 def worse(new: Mapping[str, Any], old: Mapping[str, Any]) -> bool:
