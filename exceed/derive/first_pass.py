@@ -142,7 +142,8 @@ def with_datum(
     uncertainty = max(own, spread) if len(values) > 1 else own
     source = " and ".join(text for _, _, text in estimates)
     if abs(bias) <= COVERAGE * uncertainty:
-        text = f"datum of the accelerometer: {bias:+.3f} g by {source}, not beyond its uncertainty, not corrected"
+        shown = round(bias, 3) + 0.0  # no -0.000
+        text = f"datum of the accelerometer: {shown:+.3f} g by {source}, not beyond its uncertainty, not corrected"
         return _added(channel, uncertainty), text
     moved = replace(
         channel,
