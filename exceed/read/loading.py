@@ -81,8 +81,17 @@ def load(
     raws, notes, rejected_cells = raw_channels(survey, chosen, parsed)
     time = instants(survey, parsed, raws)
     parsed.columns.clear()
+    _give_back(parsed.rows)
     settled = settle.settle(survey, raws, time, known)
     return _recording(survey, wanted, parsed, settled, time, [*notes], rejected_cells, ranges or {})
+
+
+def _give_back(rows: int) -> None:
+    """The parser's pool keeps what it no longer needs; after a large log that is worth returning."""
+    if rows > 200_000:
+        import pyarrow as pa
+
+        pa.default_memory_pool().release_unused()
 
 
 def choose(survey: Survey, wanted: set[str] | frozenset[str] | None) -> tuple[list[Column], list[Column]]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -12,6 +12,7 @@ from exceed.read.container import Digest, Source, Utf8Stream, fail
 from exceed.read.table import Layout, split
 
 BLOCK = 4 << 20
+SEGMENT = 64 << 20
 
 
 @dataclass(slots=True)
@@ -98,6 +99,32 @@ def mendable(stray: Sequence[str], layout: Layout) -> bool:
     return False
 
 
+def _segments(location: str) -> Iterator[Any]:
+    """A plain file in pieces of whole lines: the parser would else hold much of a large file in flight at once."""
+    import pyarrow as pa
+
+    with pa.memory_map(location) as file:
+        size = file.size()
+        begin = 0
+        while begin < size:
+            end = min(begin + SEGMENT, size)
+            while end < size:
+                look = file.read_at(1 << 16, end)
+                found = max(look.find(b"\n"), look.find(b"\r") if b"\n" not in look else -1)
+                if found >= 0:
+                    end += found + 1
+                    break
+                end = min(end + len(look), size)
+            yield pa.BufferReader(_view(file, begin, end))
+            begin = end
+
+
+def _view(file: Any, begin: int, end: int) -> Any:
+    """A piece of a mapped file, not copied."""
+    file.seek(begin)
+    return file.read_buffer(end - begin)
+
+
 class Reader:
     """One text log, read as often as needed. Types: column -> number, text, stamp, stamp_zone or time."""
 
@@ -158,31 +185,38 @@ class Reader:
             return "skip"
 
         stream: Any = None
-        handle: Any
-        skip = layout.skip
+        handles: Iterable[Any]
         if self.data is not None:
-            handle, skip = pa.BufferReader(self.data), 0
+            handles, first_skip = [pa.BufferReader(self.data)], 0
         elif self.source.direct and rewriter(layout, mend) is None:
-            handle = pa.memory_map(self.source.location)
+            handles, first_skip = _segments(self.source.location), layout.skip
         else:
             stream = Utf8Stream(self.source, rewriter(layout, mend))
-            handle = pa.PythonFile(stream, mode="r")
+            handles, first_skip = [pa.PythonFile(stream, mode="r")], layout.skip
+        convert = arrow_csv.ConvertOptions(
+            column_types={str(k): kinds[kind] for k, kind in types.items()},
+            include_columns=[str(k) for k in types],
+            null_values=missing_spellings(set(self.missing)),
+            strings_can_be_null=True,
+            decimal_point=layout.decimal if layout.decimal != layout.delimiter else ".",
+            check_utf8=False,
+        )
+        names = [str(k) for k in range(layout.width)]
+        tables: list[Any] = []
         try:
-            table = arrow_csv.read_csv(
-                handle,
-                arrow_csv.ReadOptions(
-                    column_names=[str(k) for k in range(layout.width)], skip_rows=skip, block_size=BLOCK
-                ),
-                arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven),
-                arrow_csv.ConvertOptions(
-                    column_types={str(k): kinds[kind] for k, kind in types.items()},
-                    include_columns=[str(k) for k in types],
-                    null_values=missing_spellings(set(self.missing)),
-                    strings_can_be_null=True,
-                    decimal_point=layout.decimal if layout.decimal != layout.delimiter else ".",
-                    check_utf8=False,
-                ),
-            )
+            for handle in handles:
+                reading = arrow_csv.ReadOptions(
+                    column_names=names, skip_rows=0 if tables else first_skip, block_size=BLOCK
+                )
+                parsing = arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven)
+                try:
+                    tables.append(arrow_csv.read_csv(handle, reading, parsing, convert))
+                except pa.ArrowInvalid as error:
+                    # a last piece of nothing but line ends
+                    if not (tables and "Empty CSV" in str(error)):
+                        raise
+            table = pa.concat_tables(tables)
+            tables.clear()
         except pa.ArrowInvalid as error:
             if stream is not None and stream.error is not None:
                 raise stream.error from error

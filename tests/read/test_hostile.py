@@ -82,8 +82,8 @@ def test_a_huge_line_in_the_middle_is_refused(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize("packing", ["gz", "bz2", "xz"])
 def test_a_bomb_is_refused_before_it_bursts(tmp_path: Path, packing: str, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(container, "RATIO_FROM", 4 << 20)
-    row = b"0,1,2,3\n" * (1 << 20)
+    monkeypatch.setattr(container, "RATIO_FROM", 1 << 20)
+    row = b"0,1,2,3\n" * (1 << 18)
     data = {"gz": gzip.compress, "bz2": bz2.compress, "xz": lzma.compress}[packing](
         b"time [s],NZ [g],IAS [kt],PALT [ft]\n" + row * 2
     )
