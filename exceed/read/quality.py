@@ -233,18 +233,27 @@ def _clipped(series: Series, out: Checked) -> None:
         if not 2 <= len(at) <= 0.05 * len(values):
             continue
         groups = np.split(at, np.flatnonzero(np.diff(at) > 1) + 1)
-        longest = max(len(group) for group in groups)
-        steep = 0
-        for group in groups[:200]:
-            before = values[group[0] - 1] if group[0] > 0 else extreme
-            after = values[group[-1] + 1] if group[-1] + 1 < len(values) else extreme
-            steep += len(group) >= 2 and min(abs(extreme - before), abs(extreme - after)) > 6 * unit
-        if (longest >= 3 and steep >= 1) or steep >= 2:
+        cut_off = [len(group) for group in groups[:200] if len(group) >= 2 and _cut_off(values, group, side, 6 * unit)]
+        if len(cut_off) >= 2 or any(length >= 3 for length in cut_off):
             if side > 0:
                 high = min(high, extreme)
             else:
                 low = max(low, extreme)
     out.saturation = (low, high)
+
+
+def _cut_off(values: Array, group: NDArray[np.int64], side: int, least: float) -> bool:
+    """Does the curve on both sides of a plateau aim well beyond it? A flown peak flattens first, on one side at least."""
+    first, last = int(group[0]), int(group[-1])
+    if first < 3 or last + 3 >= len(values):
+        return False
+    extreme = float(values[first])
+    for near, middle, far in (values[first - 1 : first - 4 : -1], values[last + 1 : last + 4]):
+        slope, bend = near - middle, (near - middle) - (middle - far)
+        # carried on by a parabola to the plateau's second sample
+        if not side * (near + 2.0 * slope + 3.0 * bend - extreme) > least or not side * (extreme - near) > least / 2:
+            return False
+    return True
 
 
 def _difference(values: Array, wraps: bool) -> Array:

@@ -173,6 +173,18 @@ def test_a_clipped_peak_is_kept_and_its_end_found(tmp_path: Path) -> None:
     assert recording.rejected == ()
 
 
+@given(
+    size=st.floats(1.5, 6.0), width=st.floats(0.8, 4.0), phase=st.floats(0, 1), step=st.sampled_from([0.004, 0.02, 0.1])
+)
+@settings(max_examples=200, deadline=None)
+def test_a_flown_peak_is_not_called_clipped(size: float, width: float, phase: float, step: float) -> None:
+    """Rounded to the recorder's step, the top of a smooth peak may be the same figure three times over."""
+    at = (np.arange(800) + phase) / 8.0
+    values = np.round((1.0 + size * np.exp(-(((at - 50.0) / (0.42 * width)) ** 2))) / step) * step
+    checked = quality.check(Series("load_factor", values, lambda: np.arange(800) / 8.0, 0.125, step), None, {})
+    assert checked.saturation == (-np.inf, np.inf)
+
+
 def test_the_stated_range_rejects_only_what_lies_beyond(tmp_path: Path) -> None:
     load = clipped(-3.0, 5.0)
     load[2000] = 9.0
