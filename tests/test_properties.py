@@ -147,13 +147,18 @@ def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return made
 
 
-def scan(folder: Path, *logs: str, rules: Iterable[str] = ("airframe", "rules.yaml"), jobs: int = 1) -> dict[str, Any]:
+def scan(
+    folder: Path, *logs: str, rules: Iterable[str] = ("airframe", "rules.yaml"), jobs: int = 1, **more: Any
+) -> dict[str, Any]:
     named = [folder / rule if rule.endswith(".yaml") else rule for rule in rules]
     paths = [folder / log for log in logs]
-    summary = exceed.scan(paths, aircraft=folder / "aircraft.yaml", rules=named, mass="860 kg", jobs=jobs).summary
+    summary = exceed.scan(paths, aircraft=folder / "aircraft.yaml", rules=named, mass="860 kg", jobs=jobs,
+                          **more).summary  # fmt: skip
     for one in summary["recordings"]:
         assert one["status"] == "ok", one["problem"]
         assert_adds_up(one)
+        for event in (*one["events"], *one["undecided"]):
+            assert_sound(event, one["recorded_s"])
     return summary
 
 
@@ -173,6 +178,27 @@ def assert_adds_up(recording: Mapping[str, Any]) -> None:
     for row in recording["assessment"]:
         explained = sum(reason["seconds"] for reason in row["reasons"])
         assert explained == pytest.approx(row["unassessed_s"] + row["not_applicable_s"], abs=0.02), row
+
+
+def assert_sound(event: Mapping[str, Any], recorded_s: float) -> None:
+    """What is true of every event: order in time, in its interval, and from level to level."""
+    assert 0.0 <= event["start_s"] <= event["end_s"] <= recorded_s + 0.001
+    assert event["duration_s"] == pytest.approx(event["end_s"] - event["start_s"], abs=0.02)
+    peak, levels = event["peak"], event["levels"]
+    assert event["start_s"] - 0.5 <= peak["time_s"] <= event["end_s"] + 0.5
+    ends = [peak["low"], peak["estimate"], peak["high"]]
+    known = [end for end in ends if end is not None]
+    assert known == sorted(known)
+    certain = [level["probability"] for level in levels]
+    assert certain == sorted(certain, reverse=True)
+    beyond = [level["beyond_s"] for level in levels]
+    assert beyond == sorted(beyond, reverse=True)
+    assert max(beyond) <= event["end_s"] - event["start_s"] + 0.01
+    words = {"established": 0.95, "likely": 0.5, "possible": 0.05, "doubtful": 0.0}
+    assert event["probability"] >= words[event["certainty"]] - 1e-9
+    crossed = [level["severity"] for level in levels if level["beyond_s"] > 0.0]
+    if crossed:
+        assert event["severity"] in crossed
 
 
 def judged(summary: Mapping[str, Any], recording: int = 0) -> list[dict[str, Any]]:
@@ -251,6 +277,36 @@ def test_another_unit_changes_nothing(folder: Path, base: dict[str, Any], metric
     columns = {name: METRIC[name] if name in metric else TRADE[name] for name in TRADE}
     # six decimals of each unit differ in the seventh digit, which shows in the last printed one
     assert_near(judged(scan_table(folder, cells(columns, flown()))), judged(base), time=0.002, peak=0.002)
+
+
+@pytest.mark.parametrize("unit", ["g", "m/s2"])
+@pytest.mark.parametrize("down", [False, True], ids=["up", "down"])
+@pytest.mark.parametrize("increment", [False, True], ids=["total", "increment"])
+def test_sign_datum_and_unit_of_the_accelerometer_change_nothing(
+    folder: Path, base: dict[str, Any], unit: str, down: bool, increment: bool
+) -> None:
+    """Standing and steady flight tell the datum, and with a total the sign; of an increment nothing tells the sign."""
+    table = cells(TRADE, flown())
+    written = (flown()["load_factor"] - increment) * (-1.0 if down else 1.0) * (G0 if unit == "m/s2" else 1.0)
+    table = {name: column for name, column in table.items() if name != TRADE["load_factor"].heading}
+    table[f"Normal acceleration [{unit}]"] = [f"{value:.6f}" for value in written.tolist()]
+    channels: dict[str, Any] = {}
+    if increment and down:
+        (folder / "channels.yaml").write_text(
+            "format: exceed-channels/1\nchannels:\n"
+            f'  - {{column: "Normal acceleration [{unit}]", quantity: load_factor, positive: down, '
+            "datum: increment}\n",
+            encoding="utf-8",
+        )
+        channels = {"channels": folder / "channels.yaml"}
+    found = scan_table(folder, table, **channels)
+    assert_near(judged(found), judged(base), time=0.01, peak=0.01)
+
+
+def test_a_mirrored_flight_has_the_same_events(folder: Path, base: dict[str, Any]) -> None:
+    left = {**flown(), "bank_angle": -flown()["bank_angle"], "heading": -flown()["heading"] % (2.0 * math.pi)}
+    # what has a left and a right is judged by its size
+    assert_near(judged(scan_table(folder, cells(TRADE, left))), judged(base))
 
 
 def test_an_unrelated_column_changes_nothing(folder: Path, base: dict[str, Any]) -> None:
@@ -482,6 +538,40 @@ def test_rows_taken_out_are_never_assessed(folder: Path, base: dict[str, Any], h
     spacing = np.diff(fewer["time"])
     lost = float(np.sum(spacing[spacing > 0.5]))  # what is longer than half a second is a gap, and nobody's time
     assert assessed(summary)["pull"] <= assessed(base)["pull"] - 0.7 * lost + 0.01
+
+
+def assert_not_lost(summary: dict[str, Any], base: dict[str, Any], names: set[str]) -> None:
+    """What was beyond for a second and more is still found, or undecided, or lies in time that is not assessed."""
+    left = {row["rule"]: row["unassessed_s"] for row in summary["recordings"][0]["assessment"] if row["flight"] is None}
+    for event in judged(base):
+        if event["rule"] not in names or event["duration_s"] < 1.0 or not event["limit_exceeded"]:
+            continue
+        still = [
+            one for one in judged(summary) if one["rule"] == event["rule"]
+            and one["start_s"] <= event["end_s"] and one["end_s"] >= event["start_s"]
+        ]  # fmt: skip
+        assert still or left[event["rule"]] > 0.5, event["rule"]
+
+
+PLAIN = {"pull", "push", "steep", "fast", "high", "never-exceed", "normal-operating"}
+
+
+@FEW
+@given(first=st.integers(840, 1100), length=st.integers(1, 200), name=st.sampled_from(list(TRADE)[:4]))
+def test_no_event_is_lost_in_a_hole_without_a_word(
+    folder: Path, base: dict[str, Any], first: int, length: int, name: str
+) -> None:
+    """The hole lies somewhere about the events between 105 s and 138 s."""
+    values = flown()[name].copy()
+    values[first : first + length] = np.nan
+    assert_not_lost(scan_table(folder, cells(TRADE, {**flown(), name: values})), base, PLAIN)
+
+
+@pytest.mark.parametrize("every", [2, 4, 8, 16, 40])
+def test_no_event_is_lost_in_a_slow_log_without_a_word(folder: Path, base: dict[str, Any], every: int) -> None:
+    fewer = {name: values[::every] for name, values in flown().items()}
+    names = PLAIN if every <= 8 else {"never-exceed", "normal-operating"}  # which have a must_see
+    assert_not_lost(scan_table(folder, cells(TRADE, fewer)), base, names)
 
 
 @pytest.mark.parametrize("every", [2, 4, 8, 16])
