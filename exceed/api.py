@@ -90,7 +90,10 @@ def scan(
         mass=mass,
         jobs=jobs,
     )
-    return Result(summarise(pipeline.scan(settings)))
+    found = pipeline.scan(settings)
+    if found.interrupted:
+        raise KeyboardInterrupt
+    return Result(summarise(found))
 
 
 def trace(

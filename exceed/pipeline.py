@@ -20,7 +20,7 @@ from exceed.core.trace import Trace
 from exceed.derive.plan import build_trace, needed_channels
 from exceed.documents.aircraft import Aircraft, same_registration
 from exceed.documents.fleet import belongs
-from exceed.errors import ExceedError, LogError, Problem
+from exceed.errors import ExceedError, LogError, Problem, UsageError
 from exceed.judge.compile import compile_rule
 from exceed.judge.compiled import Compiled
 from exceed.judge.engine import judge
@@ -28,10 +28,12 @@ from exceed.judge.events import CONTEXT
 from exceed.outcomes import outcome
 from exceed.prepare import Member, Run, prepare
 from exceed.read import find_logs, load, survey
+from exceed.read.find import Skipped
+from exceed.read.memory import require
 from exceed.settings import Settings
 
 if TYPE_CHECKING:
-    from exceed.read.find import LogPath, Skipped
+    from exceed.read.find import LogPath
     from exceed.read.look import Survey
 
 # every flight's extremes are given for these, as far as they can be had
@@ -53,7 +55,7 @@ MORE_EXTREMES: tuple[str, ...] = ("lateral_load_factor", "pitch_angle", "vertica
 # threads for blocks of one log; a log of fewer samples is not worth a second one
 THREADS = 2
 WORTH_THREADS = 200_000
-MEMORY_SHARE = 0.6
+UNDONE = "not read: the run was interrupted"
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,18 +75,30 @@ def scan(
 ) -> DayOutcome:
     """The main job. Raises ExceedError for wrong wishes or documents; a log that fails is in the outcome.
 
-    progress : called with (done, all) after each log.
+    progress : called with (done, all) after each log. Interrupted while logs are read, the day holds those done.
     sift : given the logs found, those to read and those to leave out with the reason.
     """
+    if settings.dask is not None and settings.jobs is not None:
+        do = "leave --jobs out: the cluster has its own"
+        raise UsageError(Problem("--jobs", "cannot go with --dask", "one of the two", do))
     logs, skipped = find_logs(settings.paths)
     if sift is not None:
         logs, known = sift(logs)
         skipped = [*skipped, *known]
     run = prepare(settings, [(str(Path(log.location).parent), log.root) for log in logs])
-    from exceed.batch import each
+    if settings.dask is not None:
+        from exceed.cluster import each_on_cluster
 
-    outcomes = each(logs, run, settings.jobs, progress)
-    return day(run, outcomes, skipped)
+        done = each_on_cluster(logs, run, settings.dask, progress)
+    else:
+        from exceed.batch import each
+
+        done = each(logs, run, settings.jobs, progress)
+    found = day(run, done.outcomes, [*skipped, *(Skipped(log.shown, UNDONE) for log in done.left)])
+    notes = list(done.notes)
+    if done.left:
+        notes.append(f"interrupted: {len(done.outcomes)} of {len(logs)} logs were done, this holds for these alone")
+    return replace(found, notes=(*found.notes, *notes), interrupted=bool(done.left))
 
 
 def day(run: Run, outcomes: Iterable[LogOutcome], skipped: Iterable[Skipped] = ()) -> DayOutcome:
@@ -227,10 +241,11 @@ def read(assigned: Assigned, names: Iterable[str] | None) -> Recording:
     found = assigned.survey
     aircraft = assigned.member.aircraft
     ranges = sensor_ranges(aircraft)
-    if names is None:
-        return load(found, None, ranges=ranges)
-    available = set(found.quantities)
-    needed = needed_channels(_indexed(names, available), available, aircraft)
+    needed = None
+    if names is not None:
+        available = set(found.quantities)
+        needed = needed_channels(_indexed(names, available), available, aircraft)
+    require(found, needed)
     return load(found, needed, ranges=ranges)
 
 

@@ -18,6 +18,7 @@ class Settings:
     registration: str | None = None
     mass: str | None = None
     jobs: int | None = None
+    dask: str | None = None
     plots: bool = False
     debug: bool = False
 

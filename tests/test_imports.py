@@ -37,9 +37,12 @@ MAY = {
     "spectra": {"core", "documents", "errors", "pipeline", "prepare", "read", "settings", "tallies"},
     "drawing": {"core", "documents", "derive", "envelopes", "judge", "physics"},
     "tables": {"core", "derive", "errors", "report"},
-    "batch": {"core", "errors", "pipeline", "prepare", "read"},
+    "batch": {"core", "errors", "pipeline", "prepare", "read", "worker"},
+    "worker": {"pipeline"},
+    "cluster": {"batch", "core", "errors", "pipeline", "prepare", "read"},
     "pipeline": {
         "core", "errors", "settings", "documents", "read", "derive", "judge", "prepare", "outcomes", "drawing", "batch",
+        "cluster",
     },
     "api": {"pipeline", "report", "settings", "tables"},
     "cli": {

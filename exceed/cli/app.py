@@ -77,6 +77,9 @@ def scan(
     jobs: Annotated[
         int | None, typer.Option("--jobs", min=1, metavar="N", help="Processes; default: as many as cores.")
     ] = None,
+    dask: Annotated[
+        str | None, typer.Option("--dask", metavar="ADDRESS", help="Read the logs on the cluster of this scheduler.")
+    ] = None,
     ledger: Annotated[
         str | None, typer.Option("--ledger", metavar="URL|default", help="Add what was found to a ledger.")
     ] = None,
@@ -96,7 +99,7 @@ def scan(
     """
     settings = opt.settings(
         paths, fleet=fleet, aircraft=aircraft, rules=rules, channels=channels, loading=loading,
-        registration=registration, mass=mass, jobs=jobs, plots=html is not None, debug=debug,
+        registration=registration, mass=mass, jobs=jobs, dask=dask, plots=html is not None, debug=debug,
     )  # fmt: skip
     shown = {
         "json": json,

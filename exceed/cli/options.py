@@ -72,6 +72,7 @@ def settings(
     registration: str | None = None,
     mass: str | None = None,
     jobs: int | None = None,
+    dask: str | None = None,
     plots: bool = False,
     debug: bool = False,
 ) -> Settings:
@@ -88,6 +89,7 @@ def settings(
         registration=registration,
         mass=mass,
         jobs=jobs,
+        dask=dask,
         plots=plots,
         debug=debug,
     )

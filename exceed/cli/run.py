@@ -5,6 +5,7 @@ from __future__ import annotations
 import contextlib
 import os
 import sys
+import time
 import traceback
 from collections.abc import Iterator
 from pathlib import Path
@@ -78,7 +79,7 @@ def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
 
     check_target(shown["json"])
     check_target(shown["html"])
-    ledger = ScanLedger(shown["ledger"], shown["new_only"])
+    ledger = ScanLedger(shown["ledger"], shown["new_only"], shown["quiet"])
     with _progress(shown["quiet"]) as progress:
         outcome = pipeline.scan(settings, progress, ledger.sift)
     summary = summarise(outcome)
@@ -91,6 +92,9 @@ def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
         _print_table(summary, shown)
     _say_failures(summary, shown)
     ledger.finish()
+    if outcome.interrupted:
+        Terminal.err(f"exceed: {summary['notes'][-1]}")
+        return INTERRUPTED
     return exit_code(summary, shown["fail_at"])
 
 
@@ -176,10 +180,19 @@ def _progress(quiet: bool) -> Iterator[Any]:
     from rich.console import Console
     from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeRemainingColumn
 
-    columns = (TextColumn("reading logs"), BarColumn(), MofNCompleteColumn(), TimeRemainingColumn())
+    columns = (
+        TextColumn("reading logs"), BarColumn(), MofNCompleteColumn(), TextColumn("{task.fields[rate]}"),
+        TimeRemainingColumn(),
+    )  # fmt: skip
+    started = time.monotonic()
     with Progress(*columns, console=Console(stderr=True), transient=True) as bar:
-        task = bar.add_task("logs", total=None)
-        yield lambda done, total: bar.update(task, completed=done, total=total)
+        task = bar.add_task("logs", total=None, rate="")
+
+        def show(done: int, total: int) -> None:
+            rate = done / max(time.monotonic() - started, 1e-3)
+            bar.update(task, completed=done, total=total, rate=f"{rate:.3g}/s")
+
+        yield show
 
 
 def run_describe(settings: Settings, write: Path | None, colour: bool) -> int:

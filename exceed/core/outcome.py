@@ -267,7 +267,8 @@ class RuleSetRow:
 class DayOutcome:
     """What one scan gave. `created` is ISO 8601 in UTC. `skipped`: (path, why) of files that are no logs.
 
-    `aircraft` may be left empty: then it is gathered from the logs.
+    `aircraft` may be left empty: then it is gathered from the logs. `interrupted`: some logs were left undone, named in
+    `skipped`.
     """
 
     logs: tuple[LogOutcome, ...]
@@ -281,3 +282,4 @@ class DayOutcome:
     time_zone: str | None = None
     replaces: str | None = None
     notes: tuple[str, ...] = ()
+    interrupted: bool = False
