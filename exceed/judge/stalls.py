@@ -43,11 +43,14 @@ def sign_of_stall(
 
 def _breaks(time: Array, load_factor: Array, inside: slice) -> bool:
     """Whether the load factor falls away from a sample inside, faster than it is usually eased off."""
-    for place in range(inside.start, inside.stop):
-        here = load_factor[place]
-        if not here >= BREAK_FROM:
-            continue
-        after = (time > time[place]) & (time <= time[place] + BREAK_TIME + 1e-9)
-        if after.any() and np.nanmin(load_factor[after], initial=np.inf) <= here - BREAK_SHARE * here:
-            return True
-    return False
+    lost = np.zeros(len(time), dtype=bool)
+    for ahead in range(1, len(time)):
+        # samples so far ahead, as long as one of them is within the time a break takes
+        near = time[ahead:] - time[:-ahead] <= BREAK_TIME + 1e-9
+        if not near.any():
+            break
+        here = load_factor[:-ahead]
+        with np.errstate(invalid="ignore"):
+            falls = (here >= BREAK_FROM) & (load_factor[ahead:] <= here - BREAK_SHARE * here)
+        lost[:-ahead] |= near & falls
+    return bool(lost[inside].any())
