@@ -79,6 +79,8 @@ def facts_of(aircraft: Aircraft | None) -> Facts:
         aliases["limit_roll_rate"] = "roll_rate"
     else:
         aliases["limit_roll_rate"] = None
+        if aircraft.load_factor:
+            notes.append("the aircraft file gives no reduction of the load factor while rolling: none is applied")
     limit = aircraft.speeds.manoeuvring
     if limit is not None:
         values["manoeuvring"], aliases["manoeuvring_over"] = _speed_table(limit)

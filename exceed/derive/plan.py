@@ -8,12 +8,13 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from exceed.core.constants import KNOT
 from exceed.core.quantities import TRACE_ORDER
 from exceed.core.recording import Channel, Recording
 from exceed.core.trace import Step, Trace
 from exceed.derive import evidence, mass, phases
 from exceed.derive.facts import Facts, facts_of
-from exceed.derive.first_pass import first_pass, inverted_time
+from exceed.derive.first_pass import FirstPass, first_pass, inverted_time
 from exceed.derive.resolve import (
     FOUND_FACTS,
     LOAD_FACTORS,
@@ -28,6 +29,7 @@ from exceed.physics.kinematics import lever_arm_uncertainty
 if TYPE_CHECKING:
     from exceed.documents.aircraft import Aircraft
 
+POSITION_ERROR = "position error table"  # the method of the rows that correct airspeed by the aeroplane's table
 # typical sizes of rotation where it is not recorded (roll, pitch, yaw rate; roll, pitch acceleration): judgement
 _ROTATION = (0.2, 0.1, 0.1, 0.5, 0.3)
 
@@ -112,7 +114,8 @@ def build_trace(
     missing |= {name: f"column {first.channels[name].column} holds no reading" for name in empty if name in missing}
     derived = [name for name in empty if name in steps]
     instead = [f"column {first.channels[name].column} holds no reading: {name} is derived" for name in derived]
-    notes = tuple(dict.fromkeys((*first.notes, *facts.notes, *weight.notes, *instead)))
+    held = _held_correction(steps, facts, first)
+    notes = tuple(dict.fromkeys((*first.notes, *facts.notes, *weight.notes, *instead, *held)))
     return Trace(
         recording,
         MappingProxyType(channels),
@@ -123,6 +126,29 @@ def build_trace(
         notes,
         weight.flights,
     )
+
+
+def _held_correction(steps: Mapping[str, Step], facts: Facts, first: FirstPass) -> list[str]:
+    """What to say where airspeeds were flown beyond the ends of the position error table, where it is held."""
+    table = facts.values.get("position_error")
+    used = [step for step in steps.values() if step.function is not None and step.method == POSITION_ERROR]
+    said = []
+    for step in used:
+        name = "indicated_airspeed" if step.quantity == "calibrated_airspeed" else "calibrated_airspeed"
+        channel = first.channels.get(name)
+        if channel is None or table is None:
+            continue
+        known = (table.indicated if name == "indicated_airspeed" else table.calibrated)[0]
+        when = first.coarse.recording.channel_time(channel)
+        flown = channel.values[first.track.airborne.contains(when)]
+        flown = flown[np.isfinite(flown)]
+        low, high = float(np.min(known)), float(np.max(known))
+        if len(flown) and (flown.min() < low or flown.max() > high):
+            said.append(
+                f"position error: flown {flown.min() / KNOT:.0f} to {flown.max() / KNOT:.0f} kt, its table goes from"
+                f" {low / KNOT:.0f} to {high / KNOT:.0f} kt: beyond its ends the last correction is held"
+            )
+    return said
 
 
 def _any_reading(channel: Channel) -> bool:

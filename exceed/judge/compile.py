@@ -57,10 +57,16 @@ def compile_rule(
         fact = rule.look_up(aircraft)
         if fact is not None and fact.value is None:
             return [_empty(rule, set_name, row, limit, not_applicable=fact.missing)]
+    none = _has_none(name, aircraft)
+    if none is not None:
+        return [_empty(rule, set_name, row, limit, not_applicable=none)]
     if not names:
         return [_empty(rule, set_name, row, limit, unassessed=why_missing(trace, name))]
     if limit.unassessed is not None:
         return [_empty(rule, set_name, row, limit, unassessed=limit.unassessed)]
+    span = _only_a_range(trace, names[0], row)
+    if span is not None:
+        return [_empty(rule, set_name, row, limit, unassessed=span)]
     never = _never(rule, trace, aircraft)
     if never is not None:
         return [_empty(rule, set_name, row, limit, **never)]
@@ -69,6 +75,31 @@ def compile_rule(
         for one in names
         for side in rule.sides
     ]
+
+
+def _only_a_range(trace: Trace, name: str, row: Quantity) -> str | None:
+    """Why a mass that is itself only known as a range cannot be judged: its ends are what is assumed of it."""
+    open_ = [one for one in trace.spans if one in trace.closure([name])]
+    if row.kind != "mass" or not open_:
+        return None
+    low, high = trace.spans[open_[0]]
+    return f"{open_[0].replace('_', ' ')} not known: only the range from {low:.0f} to {high:.0f} kg"
+
+
+def _converted(rule: Rule, trace: Trace, name: str) -> str | None:
+    """What to say where a limit's kind of airspeed is not the recorded one."""
+    if rule.quantity != "airspeed" or name in trace.recording.channels:
+        return None
+    return f"{name.replace('_', ' ')} not recorded: converted by {trace.steps[name].method}"
+
+
+def _has_none(name: str, aircraft: Aircraft | None) -> str | None:
+    """Why there is nothing to judge about a gear that is fixed, or flaps that are not there."""
+    if aircraft is not None and name in ("gear_down", "gear_moving") and aircraft.gear == "fixed":
+        return "the gear is fixed"
+    if aircraft is not None and name == "flap_angle" and aircraft.flaps == "none":
+        return "the aeroplane has no flaps"
+    return None
 
 
 def _never(rule: Rule, trace: Trace, aircraft: Aircraft | None) -> dict[str, str] | None:
@@ -116,7 +147,7 @@ def _ready(
         names |= limit.series.names
     if condition is not None:
         names |= condition.names
-    notes = tuple(note for note in (*limit.notes, trace.steps[name].assumes) if note)
+    notes = tuple(note for note in (*limit.notes, _converted(rule, trace, name), trace.steps[name].assumes) if note)
     release, share = 0.0, None
     if rule.release is not None:
         release, share = (0.0, float(rule.release)) if rule.release_is_percent else (float(rule.release), None)
@@ -136,6 +167,7 @@ def _ready(
         names=frozenset(names),
         limit_source=limit.source or "the rule",
         limit_assumed=limit.assumed,
+        last_flaps=limit.last_flaps,
         lasting=float(rule.lasting),
         joining=float(rule.joining),
         release=release,

@@ -105,6 +105,7 @@ class Compiled:
     names: frozenset[str]
     limit_source: str = ""
     limit_assumed: bool = False
+    last_flaps: float | None = None  # largest setting that the limit has a row for, rad
     lasting: float = 0.0
     joining: float = 0.0
     release: float = 0.0

@@ -15,6 +15,7 @@ from exceed.judge import certainty
 from exceed.judge.block import Block
 from exceed.judge.compiled import Compiled
 from exceed.judge.excursions import CUTS, Runs, joined, released
+from exceed.judge.limits import FLAP_SLACK
 from exceed.judge.scan import RuleScan
 from exceed.judge.sizing import (
     AROUND,
@@ -245,6 +246,9 @@ def _event(
     notes = [*rule.notes, *sized.notes]
     if sign is not None:
         notes.append(f"more than the margin shows it: {sign}")
+    beyond_rows = _beyond_rows(rule, strip, context)
+    if beyond_rows:
+        notes.append(beyond_rows)
     larger = _larger_elsewhere(rule, strip, at)
     if larger:
         notes.append(larger)
@@ -299,6 +303,19 @@ def _when(runs: Runs) -> tuple[float | None, float | None, float]:
     if len(runs) == 0:
         return None, None, 0.0
     return float(runs.start[0]), float(runs.end[-1]), float(np.sum(runs.duration))
+
+
+def _beyond_rows(rule: Compiled, strip: Strip, context: Mapping[str, float]) -> str | None:
+    """Past the last listed flap setting its limit holds, and that is said."""
+    if rule.last_flaps is None:
+        return None
+    angle = abs(context.get("flap_angle", 0.0))
+    if "flap_angle" in strip.block.values:
+        angle = float(np.nanmax(np.abs(strip.block.values["flap_angle"][strip.inside]), initial=angle))
+    if angle <= rule.last_flaps + FLAP_SLACK:
+        return None
+    here, last = np.degrees(angle), np.degrees(rule.last_flaps)
+    return f"flaps {here:.0f} deg are beyond the last listed setting, whose limit is used: {last:.0f} deg"
 
 
 def _larger_elsewhere(rule: Compiled, strip: Strip, at: int) -> str | None:

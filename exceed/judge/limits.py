@@ -43,6 +43,7 @@ class FoundLimit:
     missing: str | None = None
     unassessed: str | None = None
     notes: tuple[str, ...] = ()
+    last_flaps: float | None = None  # largest setting that it has a row for, rad
 
 
 def constant(value: float) -> Series:
@@ -149,7 +150,9 @@ def _fact(name: str, trace: Trace, aircraft: Aircraft | None) -> FoundLimit:
         if not trace.has(derived):
             return FoundLimit(unassessed=why_missing(trace, derived), **about)
         assumes = trace.steps[derived].assumes
-        return FoundLimit(follow(derived), notes=(assumes,) if assumes else (), **about)
+        settings = [float(row.flaps) for row in fact.value if row.flaps is not None]
+        last = max(settings) if settings and trace.has("flap_angle") else None
+        return FoundLimit(follow(derived), notes=(assumes,) if assumes else (), last_flaps=last, **about)
     if name.startswith("aircraft.loading."):
         return _centre_of_gravity(name, fact.value, trace, about)
     if name == "aircraft.speeds.flaps_extended":
@@ -168,7 +171,7 @@ def _speed(limit: Any, trace: Trace, about: dict[str, Any]) -> FoundLimit:
         x = np.array([float(pair[0]) for pair in limit.points])
         y = np.array([float(pair[1]) for pair in limit.points])
         if over == "flap_angle":
-            return FoundLimit(by_flaps(x, y, none_when_up=False), **about)
+            return FoundLimit(by_flaps(x, y, none_when_up=False), last_flaps=float(x[-1]), **about)
         return FoundLimit(linear(over, x, y), **about)
     if limit.scale == "sqrt_mass":
         if not trace.has("mass"):
@@ -184,7 +187,8 @@ def _flap_speeds(rows: Any, trace: Trace, aircraft: Aircraft, about: dict[str, A
         settings = np.array([np.pi])
     else:
         settings = np.array([float(row.flaps) for row in rows])
-    return FoundLimit(by_flaps(settings, np.array([float(row.maximum) for row in rows]), none_when_up=True), **about)
+    series = by_flaps(settings, np.array([float(row.maximum) for row in rows]), none_when_up=True)
+    return FoundLimit(series, last_flaps=float(settings[-1]), **about)
 
 
 def _centre_of_gravity(name: str, rows: Any, trace: Trace, about: dict[str, Any]) -> FoundLimit:

@@ -1,10 +1,11 @@
-"""A stall is only possible where nothing but the margin shows it; the warning or a break of the load factor say more."""
+"""A stall is possible at most where only the margin shows it; the warning or a break of the load factor say more."""
 
 from __future__ import annotations
 
 from pathlib import Path
 
 import pytest
+
 from drills.sortie import BANK, GEAR, IAS, NZ, USUAL, WARNING, Change, events, held, scanned, state
 
 # 50 KCAS at 960 kg, so 48.4 at 900 kg, and 68.5 at 2 g
