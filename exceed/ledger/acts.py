@@ -223,8 +223,11 @@ def _move_inspections(table: Table, flight: int, registration: str, key: str) ->
     return made
 
 
-def blank_names(ledger: Ledger, before: str) -> dict[str, int]:
-    """Blank names and notes of acts before an instant (UTC text); how many rows of each table were. No row goes."""
+def blank_names(ledger: Ledger, before: str) -> tuple[dict[str, int], bool]:
+    """Blank names and notes of acts before an instant (UTC text). No row goes.
+
+    Returns how many rows of each table were blanked, and whether no older page of the file can hold them any more.
+    """
 
     def work(table: Table) -> dict[str, int]:
         counts = {}
@@ -237,6 +240,4 @@ def blank_names(ledger: Ledger, before: str) -> dict[str, int]:
             counts[name] = len(rows)
         return counts
 
-    counts = ledger.writing(work)
-    ledger.forget()
-    return counts
+    return ledger.writing(work), ledger.forget()

@@ -7,6 +7,7 @@ from collections.abc import Iterable, Sequence
 from typing import Any
 
 from exceed.ledger import stretch as st
+from exceed.ledger.asked import lineage, place_inspections
 from exceed.ledger.flights import flight_of, place_flights
 from exceed.ledger.store import Ledger, Row, Table, chunks, named, utc_now
 
@@ -52,6 +53,7 @@ class _Scan:
         self.tool = f"{summary['tool']['name']} {summary['tool']['version']}"
         self.scan_id: int | None = None
         self.scan_key: str | None = None
+        self.seen: dict[str, tuple[str, str]] = {}  # content -> path and registration in this summary
         self.rows_of: dict[str, int] = {}  # event id of this summary -> row of the ledger
         self.result: Row = {
             "scan": None,
@@ -59,7 +61,6 @@ class _Scan:
             "recordings": {"added": 0, "known": 0, "judged_anew": 0},
             "flights": {"added": 0, "known": 0, "longer": 0, "clashes": []},
             "events": {"added": 0, "known": 0},
-            "inspections": {"added": 0, "known": 0},
             "changes": [],
             "left_out": [],
         }
@@ -68,12 +69,20 @@ class _Scan:
         for recording in self.summary["recordings"]:
             if recording["status"] == "failed" or not recording["content_sha256"]:
                 self.result["left_out"].append({"path": recording["path"], "reason": _UNREAD})
+            elif (other := self._twice(recording)) is not None:
+                reason = f"the same content as {other}, which goes under another registration: only that one is in"
+                self.result["left_out"].append({"path": recording["path"], "reason": reason})
             else:
                 self._recording(recording)
-        for inspection in self.summary["inspections"]:
-            self._inspection(inspection)
+        self.result["inspections"] = place_inspections(self.table, self.summary["inspections"], self.rows_of)
         self.result["scan"] = self.scan_key
         return self.result
+
+    def _twice(self, recording: Row) -> str | None:
+        """The log of this scan that has the same content and is said to be another aeroplane's."""
+        key = st.registration_key(recording["registration"])
+        path, first = self.seen.setdefault(recording["content_sha256"], (recording["path"], key))
+        return path if first != key else None
 
     def _scan(self) -> int:
         """The row of this scan, made when the first thing is added."""
@@ -272,81 +281,11 @@ class _Scan:
             }
         )  # fmt: skip
 
-    def _inspection(self, inspection: Row) -> None:
-        """An inspection is known by its rule, its task, and the occurrences that ask for it."""
-        rows = [self.rows_of[name] for name in inspection["events"] if name in self.rows_of]
-        there = self._asked(rows, inspection)
-        fresh = [row for row in dict.fromkeys(rows) if row not in there]
-        if not fresh:
-            self.result["inspections"]["known"] += bool(rows)
-            return
-        still_open = [one for one in dict.fromkeys(there.values()) if not _closed(self.table, one)]
-        if still_open:
-            target = still_open[0]
-            self.result["inspections"]["known"] += 1
-        else:
-            target = self._new_inspection(inspection, fresh)
-            self.result["inspections"]["added"] += 1
-        self.table.add_many("inspection_events", [{"inspection_row": target, "event_row": row} for row in fresh])
-
-    def _asked(self, rows: Sequence[int], inspection: Row) -> dict[int, int]:
-        """Event row -> the inspection that its occurrence, in any of its judgements, has asked for already."""
-        judged_before: set[int] = set()
-        for piece in chunks(sorted(set(rows))):
-            places, values = named(piece)
-            for end in ("earlier_id", "later_id"):
-                sql = f"SELECT {end} AS row_id FROM successions WHERE {end} IN ({places})"
-                judged_before |= {found["row_id"] for found in self.table.rows(sql, **values)}
-        kin = {row: sorted(lineage(self.table, row)) if row in judged_before else [row] for row in set(rows)}
-        asked: dict[int, int] = {}
-        for piece in chunks(sorted({one for family in kin.values() for one in family})):
-            places, values = named(piece)
-            for found in self.table.rows(
-                "SELECT ie.event_row, i.id FROM inspections i JOIN inspection_events ie ON ie.inspection_row = i.id "
-                f"WHERE ie.event_row IN ({places}) AND i.rule = :rule AND i.task = :task ORDER BY i.id",
-                rule=inspection["rule"], task=inspection["task"], **values,
-            ):  # fmt: skip
-                asked[found["event_row"]] = int(found["id"])
-        newest = {row: max((asked[one] for one in family if one in asked), default=0) for row, family in kin.items()}
-        return {row: found for row, found in newest.items() if found}
-
-    def _new_inspection(self, inspection: Row, fresh: Sequence[int]) -> int:
-        name = inspection["id"]
-        while self.table.one("SELECT id FROM inspections WHERE inspection_id = :name", name=name) is not None:
-            name = st.short_name(name, *fresh)
-        return self.table.add(
-            "inspections", inspection_id=name, registration=inspection["registration"],
-            reg_key=st.registration_key(inspection["registration"]), serial=inspection["serial"],
-            rule=inspection["rule"], task=inspection["task"], ata=inspection["ata"],
-            due_before=inspection.get("before"), added_at=utc_now(),
-        )  # fmt: skip
-
-
-def lineage(table: Table, row: int) -> set[int]:
-    """An event's row and those of all earlier and later judgements of the same occurrence."""
-    found, front = {row}, {row}
-    while front:
-        places, values = named(sorted(front)[:500])
-        rest = set(sorted(front)[500:])
-        links = table.rows(
-            f"SELECT earlier_id, later_id FROM successions WHERE earlier_id IN ({places}) OR later_id IN ({places})",
-            **values,
-        )
-        linked = {one[end] for one in links for end in ("earlier_id", "later_id") if one[end] is not None}
-        front = rest | (linked - found)
-        found |= linked
-    return found
-
 
 def _decision(table: Table, row: int) -> str | None:
     places, values = named(sorted(lineage(table, row)))
     found = table.one(f"SELECT verdict FROM decisions WHERE event_row IN ({places}) ORDER BY id DESC", **values)
     return found["verdict"] if found is not None else None
-
-
-def _closed(table: Table, inspection: int) -> bool:
-    last = table.one("SELECT kind FROM inspection_acts WHERE inspection_row = :id ORDER BY id DESC", id=inspection)
-    return last is not None and last["kind"] == "close"
 
 
 def _supersedes(new: Row, body: Row, twin: Row, rules: str) -> bool:

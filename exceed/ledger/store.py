@@ -17,15 +17,18 @@ from pathlib import Path
 from typing import Any, TypeVar
 
 from sqlalchemy import Connection, Engine, create_engine, event, text
-from sqlalchemy.exc import DBAPIError, NoSuchModuleError, SQLAlchemyError
+from sqlalchemy.exc import NoSuchModuleError, SQLAlchemyError
 from sqlalchemy.pool import NullPool
 
-from exceed.errors import ExceedError, OutputError, UsageError
+from exceed.errors import OutputError, UsageError
 from exceed.ledger.address import Address, address
+from exceed.ledger.failures import busy, damaged, failure, plain
 from exceed.ledger.schema import APPLICATION_ID, COLUMNS, DIALECTS, MIGRATIONS, SERVER_SCHEMA
 
 Row = dict[str, Any]
 Result = TypeVar("Result")
+# the first with STRICT tables
+_OLDEST = (3, 37, 0)
 _HEADER = b"SQLite format 3\x00"
 BUSY_S = 20.0
 _TRIES = 6
@@ -117,19 +120,19 @@ class Ledger:
                     with connection.begin():
                         return work(Table(connection))
             except SQLAlchemyError as error:
-                if turn + 1 < _TRIES and _busy(error):
+                if turn + 1 < _TRIES and busy(error):
                     # not all at once again
                     time.sleep(random.uniform(0.05, 0.2) * 2**turn)
                     continue
                 raise failure(error, self.where, write=write) from error
         raise AssertionError("unreachable")
 
-    def forget(self) -> None:
-        """Let no old page keep what was blanked: SQLite's write-ahead log is emptied (a server does this by itself)."""
+    def forget(self) -> bool:
+        """Let no old page keep what was blanked: empty SQLite's write-ahead log. False where a reader forbids it."""
         if self.where.file is None:
-            return
+            return True
         with contextlib.closing(sqlite3.connect(self.where.file, timeout=BUSY_S)) as raw:
-            raw.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+            return bool(raw.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchone()[0] == 0)
 
     def backup(self, out: Path) -> None:
         """A copy of an SQLite ledger in one consistent state, also while others write. Raises ExceedError."""
@@ -152,7 +155,7 @@ class Ledger:
                 target.execute("PRAGMA journal_mode = DELETE")
             os.replace(part, out)
         except (OSError, sqlite3.Error) as error:
-            raise OutputError.one(str(out), f"the copy failed: {_plain(error)}", "", "choose another place") from error
+            raise OutputError.one(str(out), f"the copy failed: {plain(error)}", "", "choose another place") from error
         finally:
             part.unlink(missing_ok=True)
 
@@ -191,13 +194,17 @@ def open_ledger(place: str, *, create: bool = False) -> Ledger:
 
 def _look(where: Address, file: Path, create: bool) -> None:
     """Is this file a ledger, or may it become one? Nothing that is something else is touched."""
+    if sqlite3.sqlite_version_info < _OLDEST:
+        oldest = ".".join(map(str, _OLDEST))
+        raise UsageError.one("SQLite", f"version {sqlite3.sqlite_version} is too old", f"{oldest} or newer",
+                             "use a newer Python, or a PostgreSQL ledger")  # fmt: skip
     try:
         if file.is_dir():
             raise UsageError.one(where.shown, "is a folder", "a file", "add a file name")
         if not file.exists() or file.stat().st_size == 0:
             if not create:
                 raise UsageError.one(where.shown, "there is no ledger here", "a ledger that was begun",
-                                     "begin one: exceed scan PATH --ledger " + ("URL"))  # fmt: skip
+                                     "begin one: exceed scan PATH --ledger URL")  # fmt: skip
             if not file.parent.exists():
                 if where.url.database != str(file) or file.name != "exceed-ledger.sqlite":
                     raise FileNotFoundError(2, "the folder does not exist")
@@ -207,7 +214,7 @@ def _look(where: Address, file: Path, create: bool) -> None:
         with file.open("rb") as stream:
             head = stream.read(100)
     except OSError as error:
-        raise UsageError.one(where.shown, f"cannot be opened: {_plain(error)}", "a file you may write", "check the path"
+        raise UsageError.one(where.shown, f"cannot be opened: {plain(error)}", "a file you may write", "check the path"
                              ) from error  # fmt: skip
     if not head.startswith(_HEADER):
         raise UsageError.one(
@@ -313,7 +320,7 @@ def _sound(ledger: Ledger) -> None:
         return
     found = ledger.reading(lambda table: table.rows("PRAGMA quick_check(1)"))
     if found and found[0].get("quick_check") != "ok":
-        raise _damaged(ledger.where)
+        raise damaged(ledger.where)
 
 
 def _into_wal(ledger: Ledger) -> None:
@@ -327,65 +334,9 @@ def _into_wal(ledger: Ledger) -> None:
         except sqlite3.OperationalError as error:
             if turn + 1 == _TRIES:
                 raise UsageError.one(
-                    ledger.where.shown, f"cannot be begun: {_plain(error)}", "a file you may write", "try again"
+                    ledger.where.shown, f"cannot be begun: {plain(error)}", "a file you may write", "try again"
                 ) from error
             time.sleep(0.1 * 2**turn)
-
-
-def _busy(error: SQLAlchemyError) -> bool:
-    cause = getattr(error, "orig", None)
-    code = getattr(cause, "sqlite_errorcode", None)
-    if code is not None:
-        return code & 0xFF in (sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED)
-    # serialization failure, deadlock (PostgreSQL, appendix A: error codes)
-    return getattr(cause, "sqlstate", None) in ("40001", "40P01")
-
-
-def _damaged(where: Address) -> ExceedError:
-    return UsageError.one(
-        where.shown, "the file is damaged", "a sound ledger", "take the last backup; nothing was changed"
-    )
-
-
-def failure(error: SQLAlchemyError, where: Address, *, write: bool) -> ExceedError:
-    """What to tell of a database's error: one line, no password, no SQL."""
-    cause = getattr(error, "orig", None) or error
-    kept = "nothing was added" if write else "nothing was changed"
-    code = getattr(cause, "sqlite_errorcode", None)
-    if code is not None:
-        short = code & 0xFF
-        if short in (sqlite3.SQLITE_CORRUPT, sqlite3.SQLITE_NOTADB):
-            return _damaged(where)
-        if short == sqlite3.SQLITE_FULL or (write and short == sqlite3.SQLITE_IOERR):
-            return OutputError.one(
-                where.shown, f"the disk is full or failing: {kept}", "room for the ledger", "make room"
-            )
-        if short in (sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED):
-            return OutputError.one(where.shown, f"another program keeps it locked: {kept}", "", "try again later")
-        if short in (sqlite3.SQLITE_READONLY, sqlite3.SQLITE_CANTOPEN, sqlite3.SQLITE_PERM):
-            return OutputError.one(where.shown, f"not allowed to write here: {kept}", "a file and folder you may write",
-                                   "check the rights")  # fmt: skip
-    state = getattr(cause, "sqlstate", None)
-    if where.file is None and isinstance(error, DBAPIError) and (error.connection_invalidated or state is None):
-        return UsageError.one(where.shown, f"the server cannot be reached: {_reason(cause)}", "a server that answers",
-                              f"check host, port, name and password; {kept}")  # fmt: skip
-    if state == "53100":
-        return OutputError.one(where.shown, f"the server's disk is full: {kept}", "room for the ledger", "make room")
-    return OutputError.one(where.shown, f"{kept}: {_reason(cause)}", "", "see the message")
-
-
-def _reason(cause: BaseException) -> str:
-    """A driver's message in one line, without what might be a secret."""
-    from exceed.ledger.address import hidden
-
-    words = " ".join(str(cause).split())
-    # psycopg lists every address it tried; the last colon parts the address from the reason
-    last = words.split(" Is the server running")[0]
-    return hidden(last)[:200] or type(cause).__name__
-
-
-def _plain(error: BaseException) -> str:
-    return getattr(error, "strerror", None) or str(error) or type(error).__name__
 
 
 def chunks(items: Sequence[Any], size: int = 500) -> Iterator[Sequence[Any]]:

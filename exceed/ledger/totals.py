@@ -162,48 +162,18 @@ def totals(table: Table, filters: Filters) -> list[Row]:
     Events that were decided to be no exceedance are counted apart and give no time beyond a limit.
     """
     owners, decisions = Owners.read(table), Decisions.read(table)
-    found: dict[str, Row] = {}
-    for key, frame in sorted(airframes(table, owners).items()):
-        if filters.key is not None and key != filters.key:
-            continue
-        flights = [one for one in frame.flights if filters.in_time(one.start, one.end)]
-        part = Airframe(frame.registration, key, flights)
-        undated = part.undated()
-        numbered = [one for one in flights if one.numbered]
-        base = max(frame.bases, key=lambda row: (row["valid_at"], row["id"]), default=None)
-        found[key] = {
-            "registration": frame.registration,
-            "flights": len(numbered),
-            "flight_h": round(part.hours_flown() + sum(one.length for one in undated) / 3600.0, 4),
-            "landings": sum(one.landings or 0 for one in numbered),
-            "landings_unknown_flights": sum(one.landings is None for one in flights),
-            "undated_flights": len(undated),
-            "undivided_recordings": len(flights) - len(numbered),
-            "clashes": sum(one.apart for one in flights),
-            "events": dict.fromkeys(SEVERITIES, 0),
-            "undecided": 0,
-            "doubtful": 0,
-            "open": 0,
-            "decided_away": 0,
-            "beyond": {},
-            "airframe": None
-            if base is None
-            else {
-                "hours": _rounded(frame.total("hours"), 2),
-                "landings": _rounded(frame.total("landings"), 0),
-                "set_hours": base["hours"],
-                "set_landings": base["landings"],
-                "set_at": iso_utc(base["valid_at"], trim=True),
-                "undated_flights_not_counted": len(frame.undated()),
-            },
-        }
+    found = {
+        key: _empty(frame, filters)
+        for key, frame in sorted(airframes(table, owners).items())
+        if filters.key in (None, key)
+    }
     for row in event_rows(table):
-        key = owners.now(row["flight_id"], (row["registration"], row["reg_key"]))[1]
+        registration, key = owners.now(row["flight_id"], (row["registration"], row["reg_key"]))
         if filters.key not in (None, key) or not filters.in_time(row["start_at"], row["end_at"]):
             continue
-        target = found.get(key)
-        if target is None:
-            continue
+        if key not in found:  # nothing but runs on the ground
+            found[key] = _empty(Airframe(registration, key), filters)
+        target = found[key]
         decision = decisions.of(row, owners)
         target["open"] += open_event(row, decision)
         if decision is not None and decision["as"] in DECIDED_AWAY and not decision["worse_since"]:
@@ -220,6 +190,41 @@ def totals(table: Table, filters: Filters) -> list[Row]:
             {"rule": rule, "events": many, "seconds": round(time, 3)} for rule, (many, time) in sorted(rows)
         ]
     return list(found.values())
+
+
+def _empty(frame: Airframe, filters: Filters) -> Row:
+    """An airframe's row, its events not yet counted."""
+    flights = [one for one in frame.flights if filters.in_time(one.start, one.end)]
+    part = Airframe(frame.registration, frame.key, flights)
+    undated = part.undated()
+    numbered = [one for one in flights if one.numbered]
+    base = max(frame.bases, key=lambda row: (row["valid_at"], row["id"]), default=None)
+    return {
+        "registration": frame.registration,
+        "flights": len(numbered),
+        "flight_h": round(part.hours_flown() + sum(one.length for one in undated) / 3600.0, 4),
+        "landings": sum(one.landings or 0 for one in numbered),
+        "landings_unknown_flights": sum(one.landings is None for one in flights),
+        "undated_flights": len(undated),
+        "undivided_recordings": len(flights) - len(numbered),
+        "clashes": sum(one.apart for one in flights),
+        "events": dict.fromkeys(SEVERITIES, 0),
+        "undecided": 0,
+        "doubtful": 0,
+        "open": 0,
+        "decided_away": 0,
+        "beyond": {},
+        "airframe": None
+        if base is None
+        else {
+            "hours": _rounded(frame.total("hours"), 2),
+            "landings": _rounded(frame.total("landings"), 0),
+            "set_hours": base["hours"],
+            "set_landings": base["landings"],
+            "set_at": iso_utc(base["valid_at"], trim=True),
+            "undated_flights_not_counted": len(frame.undated()),
+        },
+    }
 
 
 def _beyond(found: dict[str, tuple[int, float]], row: Row) -> None:

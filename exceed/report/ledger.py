@@ -265,8 +265,8 @@ def render_judgements(rows: Sequence[Dict], screen: Screen) -> str:
     return _text([*lines, count(len(rows), "judgement")])
 
 
-def recorded_lines(result: Dict, place: str) -> list[str]:
-    """What a scan added to the ledger, for stderr."""
+def recorded_lines(result: Dict, place: str, *, quiet: bool = False) -> list[str]:
+    """What a scan added to the ledger, for stderr; `quiet` leaves only what somebody should look at."""
     made, flights, events, work = (result[key] for key in ("recordings", "flights", "events", "inspections"))
     lines = [
         f"ledger {place}: {count(made['added'], 'recording')} added, {made['known']} known, "
@@ -276,7 +276,9 @@ def recorded_lines(result: Dict, place: str) -> list[str]:
         + f"; {count(events['added'], 'event')} added, {events['known']} known"
         + f"; {count(work['added'], 'inspection')} added, {work['known']} known",
     ]
-    if result["replaces"] is not None:
+    if quiet:
+        lines = [f"ledger {place}:"] if result["changes"] or flights["clashes"] or result["left_out"] else []
+    elif result["replaces"] is not None:
         lines.append(f"  this replaces judgements of scan {result['replaces']}")
     for one in result["changes"]:
         when = one["start"] or f"+{elapsed(one['start_s'])}"

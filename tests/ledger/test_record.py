@@ -116,6 +116,21 @@ def test_an_event_can_be_named_by_the_id_it_has_in_the_other_download(book):
     assert found["recording"]["path"] == "a.csv"
 
 
+def test_the_same_content_under_two_registrations_in_one_scan_is_taken_once_and_said(book):
+    made = summary(one_sortie(), {**one_sortie(registration="ZZ-NMC"), "path": "c/a.csv"})
+    result = record(book, made)
+    assert [row["path"] for row in result["left_out"]] == ["c/a.csv"]
+    assert [row["registration"] for row in all_events(book)] == ["ZZ-NMA"]
+    assert record(book, made)["scan"] is None
+
+
+def test_events_on_the_ground_of_an_aeroplane_that_never_flew_are_counted(book):
+    ground = {**recording("g.csv", events=[event(5.0, 6.0, flight=None)]), "flights": []}
+    record(book, summary(ground))
+    (row,) = all_totals(book)
+    assert (row["registration"], row["flights"], row["events"]["caution"]) == ("ZZ-NMA", 0, 1)
+
+
 def test_another_aeroplane_at_the_same_time_is_another_flight(book):
     record(book, summary(one_sortie()))
     record(book, summary(recording("c.csv", registration="ZZ-NMC", events=[event(812.13, 812.94)])))
