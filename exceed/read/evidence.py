@@ -86,6 +86,11 @@ class Evidence:
                 )
         return None
 
+    def figures(self, one: Settled) -> Array:
+        """Finite figures as written at the grid's instants."""
+        found = self.grid.value(one.raw)
+        return found[np.isfinite(found)]
+
     def si(self, one: Settled) -> Array:
         """Values in SI at the grid's instants."""
         return self.grid.value(one.raw) * one.scale + one.offset
@@ -123,7 +128,7 @@ def is_open(column: Column) -> bool:
 
 def settle(raws: Sequence[RawChannel], time: Array, declared: Mapping[str, str]) -> list[Settled]:
     """Let units be settled one by the other until nothing more follows; then signs; then name what stays open."""
-    from exceed.read import loads, relations, senses
+    from exceed.read import angles, loads, relations, senses
 
     made = [_begin(raw) for raw in raws]
     evidence = Evidence(made, time)
@@ -141,7 +146,7 @@ def settle(raws: Sequence[RawChannel], time: Array, declared: Mapping[str, str])
             break
     loads.companions(evidence)
     for one in evidence.fresh():
-        relations.last_resort(evidence, one)
+        angles.last_resort(evidence, one)
     for one in evidence.fresh():
         _unsettled(one, declared)
     senses.settle(evidence)

@@ -138,3 +138,13 @@ def ratio_of(x: Array, y: Array) -> tuple[float, float, int]:
     if len(share) < 12:
         return float("nan"), 0.0, len(share)
     return float(np.median(share)), float(np.mean(np.sign(share))), len(share)
+
+
+def decide(distances: dict[str, float], close: float, apart: float) -> str | None:
+    """The unit whose reading is close (in the logarithm) while the next is clearly further off."""
+    ranked = sorted((abs(value), unit) for unit, value in distances.items() if np.isfinite(value))
+    if not ranked or ranked[0][0] > close:
+        return None
+    if len(ranked) > 1 and ranked[1][0] - ranked[0][0] < apart:
+        return None
+    return ranked[0][1]

@@ -6,8 +6,9 @@ import re
 from dataclasses import dataclass
 from functools import lru_cache
 
-from exceed.read.synonyms import CLOCK_NAMES, OPEN_SPEED, PHRASES, REFUSED, SIDE, WORDS
+from exceed.read.synonyms import PHRASES
 from exceed.read.units_in_text import split_unit
+from exceed.read.words import CLOCK_NAMES, OPEN_SPEED, REFUSED, SIDE, WORDS
 
 _CAMEL = re.compile(
     r"(?<=[a-z0-9])(?=[A-Z])|(?<=[A-Z])(?=[A-Z][a-z]{2,})|(?<=[A-Za-z]{2})(?=\d)|(?<=\d)(?=[A-Za-z]{2})"

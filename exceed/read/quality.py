@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from exceed.core.constants import STANDARD_GRAVITY
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array
+from exceed.read.measure import clipped_ends, noise_of
 
 BLOCK = 1 << 16
 _DEG = np.pi / 180.0
@@ -108,47 +109,6 @@ class Checked:
     saturation: tuple[float, float] = (-np.inf, np.inf)
 
 
-def _pieces(values: Array, most: int) -> list[Array]:
-    """A few blocks spread over a long array."""
-    if len(values) <= most:
-        return [values]
-    size = most // 8
-    starts = np.linspace(0, len(values) - size, 8).astype(int)
-    return [values[start : start + size] for start in starts]
-
-
-def resolution(values: Array) -> float:
-    """Step of quantisation in the figures as written, 0 where there is none to see."""
-    some = np.concatenate(_pieces(values, 16384))
-    some = some[np.isfinite(some)]
-    levels = np.unique(some)
-    if len(levels) < 3:
-        return 0.0
-    steps = np.diff(levels)
-    largest = float(np.max(np.abs(levels)))
-    steps = steps[steps > 1e-9 * max(largest, 1e-30)]
-    if not len(steps):
-        return 0.0
-    least = float(np.percentile(steps, 1)) if len(steps) > 200 else float(np.min(steps))
-    counts = steps / least
-    # decimals written as doubles differ in the last digits only
-    whole = np.abs(counts - np.round(counts)) < 0.02 * np.maximum(1.0, np.round(counts)) ** 0.5
-    return least if np.mean(whole) > 0.97 else 0.0
-
-
-def noise_of(values: Array) -> float | None:
-    """Robust standard deviation of the sample-to-sample noise, from second differences; None for a short channel."""
-    found = []
-    for piece in _pieces(values, 32768):
-        if len(piece) < 16:
-            continue
-        second = piece[1:-1] - 0.5 * (piece[:-2] + piece[2:])
-        second = second[np.isfinite(second)]
-        if len(second):
-            found.append(1.4826 * float(np.median(np.abs(second))) / np.sqrt(1.5))
-    return float(np.median(found)) if found else None
-
-
 def check(series: Series, sensor: tuple[float, float] | None, others: Mapping[str, Series]) -> Checked:
     """Judge one channel; its rejected samples become NaN in `series.values`.
 
@@ -167,7 +127,8 @@ def check(series: Series, sensor: tuple[float, float] | None, others: Mapping[st
     if sensor is not None:
         out.saturation = sensor
     if series.quantity in _CLIPS:
-        _clipped(series, out)
+        low, high = clipped_ends(series.values, max(series.step, out.noise or 0.0, 1e-12))
+        out.saturation = (max(low, out.saturation[0]), min(high, out.saturation[1]))
     if series.quantity in PHYSICS:
         _spikes(series, others, out)
     if series.quantity in STUCK:
@@ -219,41 +180,6 @@ def _out_of_range(series: Series, sensor: tuple[float, float] | None, out: Check
         return
     with np.errstate(invalid="ignore"):
         _reject(values, np.flatnonzero((values < bounds[0]) | (values > bounds[1])), "out_of_range", out)
-
-
-def _clipped(series: Series, out: Checked) -> None:
-    """A plateau at the very extreme that the signal enters and leaves steeply: the sensor's end."""
-    values = series.values
-    if not np.isfinite(values).any():
-        return
-    unit = max(series.step, (out.noise or 0.0), 1e-12)
-    low, high = out.saturation
-    for side, extreme in ((1, float(np.nanmax(values))), (-1, float(np.nanmin(values)))):
-        at = np.flatnonzero(values == extreme)
-        if not 2 <= len(at) <= 0.05 * len(values):
-            continue
-        groups = np.split(at, np.flatnonzero(np.diff(at) > 1) + 1)
-        cut_off = [len(group) for group in groups[:200] if len(group) >= 2 and _cut_off(values, group, side, 6 * unit)]
-        if len(cut_off) >= 2 or any(length >= 3 for length in cut_off):
-            if side > 0:
-                high = min(high, extreme)
-            else:
-                low = max(low, extreme)
-    out.saturation = (low, high)
-
-
-def _cut_off(values: Array, group: NDArray[np.int64], side: int, least: float) -> bool:
-    """Does the curve on both sides of a plateau aim well beyond it? A flown peak flattens first, on one side at least."""
-    first, last = int(group[0]), int(group[-1])
-    if first < 3 or last + 3 >= len(values):
-        return False
-    extreme = float(values[first])
-    for near, middle, far in (values[first - 1 : first - 4 : -1], values[last + 1 : last + 4]):
-        slope, bend = near - middle, (near - middle) - (middle - far)
-        # carried on by a parabola to the plateau's second sample
-        if not side * (near + 2.0 * slope + 3.0 * bend - extreme) > least or not side * (extreme - near) > least / 2:
-            return False
-    return True
 
 
 def _difference(values: Array, wraps: bool) -> Array:

@@ -6,8 +6,9 @@ import numpy as np
 
 from exceed.core.recording import Array
 from exceed.core.units import UNITS
+from exceed.read import angles
 from exceed.read.evidence import ANGLES, RATES, SPEEDS, Evidence, Settled
-from exceed.read.grid import middle, origin_slope, ratio_of, slope
+from exceed.read.grid import decide, middle, origin_slope, ratio_of, slope
 
 _G = 9.80665
 _R = 287.05287
@@ -28,16 +29,6 @@ def _height(pressure: Array) -> Array:
     with np.errstate(invalid="ignore"):
         low = (_T0 / -_LAPSE) * (1.0 - (pressure / _P0) ** (1 / 5.25588))
         return np.where(pressure > 22632.0, low, 11000.0 - 6341.6 * np.log(np.maximum(pressure, 1.0) / 22632.0))
-
-
-def _decide(distances: dict[str, float], close: float, apart: float) -> str | None:
-    """The unit whose reading is close (in the logarithm) while the next is clearly further off."""
-    ranked = sorted((abs(value), unit) for unit, value in distances.items() if np.isfinite(value))
-    if not ranked or ranked[0][0] > close:
-        return None
-    if len(ranked) > 1 and ranked[1][0] - ranked[0][0] < apart:
-        return None
-    return ranked[0][1]
 
 
 def alternatives(evidence: Evidence) -> None:
@@ -95,7 +86,7 @@ def _which_speed(evidence: Evidence, one: Settled) -> None:
         if len(finite) > 30:
             spread = float(np.percentile(finite, 75) - np.percentile(finite, 25)) / max(1e-9, abs(middle(finite)))
             units = (column.unit,) if column.unit else ("kt", "km/h", "mph", "m/s")
-            fits = _decide({u: np.log(middle(finite) * UNITS[u].factor) for u in units if u}, 0.03, 0.05)
+            fits = decide({u: np.log(middle(finite) * UNITS[u].factor) for u in units if u}, 0.03, 0.05)
             if fits and spread < 0.05:
                 one.quantity = "ground_speed"
                 one.raw.column = column.with_(quantity="ground_speed", alternatives=())
@@ -133,9 +124,9 @@ def settle_unit(evidence: Evidence, one: Settled) -> None:
     if quantity in SPEEDS:
         _speed(evidence, one)
     elif quantity in ANGLES or quantity in ("latitude", "longitude"):
-        _angle(evidence, one)
+        angles.settle_angle(evidence, one)
     elif quantity in RATES:
-        _rate(evidence, one)
+        angles.settle_rate(evidence, one)
     elif quantity in ("pressure_altitude", "geometric_altitude", "height_above_ground"):
         _altitude(evidence, one)
     elif quantity == "vertical_speed":
@@ -147,14 +138,9 @@ def settle_unit(evidence: Evidence, one: Settled) -> None:
     elif quantity == "flap_angle":
         _flaps(evidence, one)
     elif set(one.raw.column.units) == {"%", "1"}:
-        top = float(np.max(np.abs(_figures(evidence, one)), initial=0.0))
+        top = float(np.max(np.abs(evidence.figures(one)), initial=0.0))
         if top > 2.0:
             one.take("%", f"figures up to {top:.3g} are per cent")
-
-
-def _figures(evidence: Evidence, one: Settled) -> Array:
-    figures = evidence.grid.value(one.raw)
-    return figures[np.isfinite(figures)]
 
 
 def _speed(evidence: Evidence, one: Settled) -> None:
@@ -170,7 +156,7 @@ def _speed(evidence: Evidence, one: Settled) -> None:
         error = 1.25 * spread / 1.35 / np.sqrt(len(finite) / 4.0)
         if error > 0.03:
             continue
-        unit = _decide({u: np.log(centre * UNITS[u].factor) for u in one.raw.column.units}, close, apart)
+        unit = decide({u: np.log(centre * UNITS[u].factor) for u in one.raw.column.units}, close, apart)
         if unit:
             one.take(unit, f"{why} fits {unit} (within {abs(centre * UNITS[unit].factor - 1) * 100:.0f} %)")
             return
@@ -231,16 +217,6 @@ def _calibrated(mach: Array, pressure: Array) -> Array:
         return 340.294 * np.sqrt(5.0 * ((impact / _P0 + 1.0) ** (2.0 / 7.0) - 1.0))
 
 
-def _turn_rate(evidence: Evidence) -> Array | None:
-    """rad/s, from heading or track, else a recorded rate."""
-    for name in ("heading", "track_angle"):
-        found = evidence.of(name)
-        if found is not None:
-            return evidence.si_rate(found, wraps=True)
-    found = evidence.of("turn_rate")
-    return evidence.si(found) if found is not None else None
-
-
 def _turning(evidence: Evidence) -> Array | None:
     """True airspeed from bank and rate of turn in level coordinated turns, m/s; wind moves a heading's turn little."""
     bank, heading = evidence.of("bank_angle"), evidence.of("heading")
@@ -255,86 +231,6 @@ def _turning(evidence: Evidence) -> Array | None:
         return np.where(steady, _G * np.tan(angle) / rate, np.nan)
 
 
-def _angle(evidence: Evidence, one: Settled) -> None:
-    finite = _figures(evidence, one)
-    if not len(finite):
-        return
-    top = float(np.percentile(np.abs(finite), 99.5)) if len(finite) > 50 else float(np.max(np.abs(finite)))
-    if top > 2 * np.pi * 1.01:
-        one.take("deg", f"figures up to {top:.4g} are no radians")
-        return
-    if one.quantity == "latitude" and top > np.pi / 2 * 1.01:
-        one.take("deg", f"figures up to {top:.4g} are no radians of latitude")
-        return
-    if one.quantity in ("heading", "track_angle"):
-        before, after, _ = evidence.grid.pair(one.raw)
-        jumps = np.abs(after - before)
-        if np.count_nonzero(jumps > 5.5) >= 1 and np.ptp(finite) > 5.0:
-            one.take("rad", "it wraps at a full circle of 6.28")
-        return
-    if one.quantity == "bank_angle":
-        rate = _turn_rate(evidence)
-        if rate is None:
-            return
-        figures = evidence.grid.value(one.raw)
-        speeds = {}
-        for unit in ("deg", "rad"):
-            angle = np.abs(figures * UNITS[unit].factor)
-            use = (angle > np.radians(1.0)) & (angle < 1.2) & (np.abs(rate) > np.radians(0.5))
-            with np.errstate(invalid="ignore", divide="ignore"):
-                speeds[unit] = middle(np.where(use, _G * np.tan(angle) / np.abs(rate), np.nan))
-        # an aeroplane flies between 15 and 300 m/s; the two readings differ 57 times
-        good = [unit for unit, speed in speeds.items() if 12.0 < speed < 400.0]
-        if len(good) == 1:
-            one.take(good[0], f"the rate of turn fits a bank in {good[0]}")
-        return
-    if one.quantity == "pitch_angle":
-        height, speed = (
-            evidence.of("pressure_altitude", "geometric_altitude", known=False),
-            evidence.of(*SPEEDS[3::-1], known=False),
-        )
-        if height is None or speed is None:
-            return
-        with np.errstate(invalid="ignore", divide="ignore"):
-            path = evidence.grid.rate(height.raw) / np.where(
-                evidence.grid.value(speed.raw) > 0, evidence.grid.value(speed.raw), np.nan
-            )
-        moves, alike, _ = slope(evidence.grid.value(one.raw), path)
-        if abs(alike) > 0.5:
-            # whatever the units of height and speed, radians give 0.25 to 3.3 and degrees 57 times less
-            one.take(
-                "rad" if abs(moves) > 0.12 else "deg",
-                "climb and speed fit a pitch in " + ("rad" if abs(moves) > 0.12 else "deg"),
-            )
-
-
-_DERIVATIVE = {
-    "roll_rate": ("bank_angle",),
-    "pitch_rate": ("pitch_angle",),
-    "yaw_rate": ("heading", "track_angle"),
-    "turn_rate": ("heading", "track_angle"),
-}
-
-
-def _rate(evidence: Evidence, one: Settled) -> None:
-    finite = _figures(evidence, one)
-    if not len(finite):
-        return
-    angle = evidence.of(*_DERIVATIVE[one.quantity])
-    if angle is not None:
-        moves = evidence.si_rate(angle, wraps=True)
-        # the rate's mean over the two seconds that the angle's change spans
-        ratio, alike, _ = origin_slope(evidence.grid.value(one.raw), moves)
-        if abs(alike) > 0.5:
-            unit = _decide({u: np.log(abs(ratio) / UNITS[u].factor) for u in ("deg/s", "rad/s")}, 1.2, 1.0)
-            if unit:
-                one.take(unit, f"'{angle.raw.column.name}' moves as {unit} would")
-                return
-    top = float(np.max(np.abs(finite)))
-    if top > 14.0:
-        one.take("deg/s", f"figures up to {top:.3g} are no rad/s")
-
-
 def _altitude(evidence: Evidence, one: Settled) -> None:
     figures = evidence.grid.value(one.raw)
     pressure = evidence.of("static_pressure")
@@ -342,7 +238,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
         true = _height(evidence.si(pressure))
         ratio, alike, _ = slope(true, figures)
         if alike > 0.9:
-            unit = _decide({u: np.log(abs(ratio) * UNITS[u].factor) for u in ("ft", "m")}, 0.15, 0.5)
+            unit = decide({u: np.log(abs(ratio) * UNITS[u].factor) for u in ("ft", "m")}, 0.15, 0.5)
             if unit:
                 one.take(unit, f"the static pressure fits {unit}")
                 return
@@ -357,7 +253,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
             continue
         ratio, alike, _ = origin_slope(evidence.si_rate(other), climb)
         if alike > 0.8:
-            unit = _decide({u: np.log(abs(ratio) * UNITS[u].factor) for u in ("ft", "m")}, 0.2, 0.5)
+            unit = decide({u: np.log(abs(ratio) * UNITS[u].factor) for u in ("ft", "m")}, 0.2, 0.5)
             if unit:
                 one.take(unit, f"'{other.raw.column.name}' climbs as {unit} would")
                 return
@@ -366,7 +262,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
         ratio, alike, _ = ratio_of(evidence.grid.long_mean(rise.raw), evidence.grid.long_rate(one.raw))
         if abs(alike) > 0.7 and ratio:
             if rise.unit:
-                unit = _decide(
+                unit = decide(
                     {u: np.log(abs(ratio) / UNITS[rise.unit].factor * UNITS[u].factor) for u in ("ft", "m")}, 0.3, 0.5
                 )
                 if unit:
@@ -380,7 +276,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
                     ("m", "ft/min"): 0.3048 / 60,
                     ("ft", "m/s"): 1 / 0.3048,
                 }
-                near = _decide({f"{a} {b}": np.log(abs(ratio) / value) for (a, b), value in pairs.items()}, 0.3, 0.5)
+                near = decide({f"{a} {b}": np.log(abs(ratio) / value) for (a, b), value in pairs.items()}, 0.3, 0.5)
                 if near in ("ft ft/min", "m ft/min", "ft m/s"):
                     unit, other_unit = near.split(" ")
                     one.take(unit, f"altitude and vertical speed fit only as {unit} and {other_unit}")
@@ -398,7 +294,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
         # density ratio falls by about a tenth a kilometre: enough to part feet from metres above a few hundred metres
         for_metres, alike, _ = slope(figures, np.log(thin))
         if slow.unit and alike < -0.9 and np.isfinite(for_metres):
-            unit = _decide({u: np.log(abs(for_metres) / (1.0e-4 * UNITS[u].factor)) for u in ("ft", "m")}, 0.4, 0.6)
+            unit = decide({u: np.log(abs(for_metres) / (1.0e-4 * UNITS[u].factor)) for u in ("ft", "m")}, 0.4, 0.6)
             if unit:
                 one.take(unit, f"the ratio of true to indicated airspeed fits {unit}")
                 return
@@ -409,7 +305,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
             made = _calibrated(evidence.si(mach), _pressure(figures * UNITS[unit].factor))
             with np.errstate(invalid="ignore", divide="ignore"):
                 options[unit] = np.log(middle(np.where(evidence.si(mach) > 0.15, made / evidence.si(cas), np.nan)))
-        unit = _decide(options, 0.06, 0.08)
+        unit = decide(options, 0.06, 0.08)
         if unit:
             one.take(unit, f"Mach number and airspeed fit {unit}")
             return
@@ -417,7 +313,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
     if pitch is not None and speed is not None:
         ratio, alike, _ = slope(evidence.si(speed) * np.sin(evidence.si(pitch)), climb)
         if alike > 0.7:
-            unit = _decide({u: np.log(abs(ratio) * UNITS[u].factor) for u in ("ft", "m")}, 0.45, 0.4)
+            unit = decide({u: np.log(abs(ratio) * UNITS[u].factor) for u in ("ft", "m")}, 0.45, 0.4)
             if unit:
                 one.take(unit, f"climb, pitch and airspeed fit {unit}")
                 return
@@ -425,7 +321,7 @@ def _altitude(evidence: Evidence, one: Settled) -> None:
     if warm is not None:
         falls, alike, _ = slope(figures, evidence.si(warm))
         if alike < -0.93:
-            unit = _decide({u: np.log(abs(falls) / (0.0065 * UNITS[u].factor)) for u in ("ft", "m")}, 0.35, 0.5)
+            unit = decide({u: np.log(abs(falls) / (0.0065 * UNITS[u].factor)) for u in ("ft", "m")}, 0.35, 0.5)
             if unit and np.nanmax(figures) - np.nanmin(figures) > (2000.0 if unit == "m" else 6000.0):
                 one.take(unit, f"the air cools with height as {unit} would have it")
 
@@ -436,13 +332,13 @@ def _vertical(evidence: Evidence, one: Settled) -> None:
         return
     ratio, alike, _ = ratio_of(evidence.grid.long_mean(one.raw), evidence.grid.long_rate(height.raw) * height.scale)
     if abs(alike) > 0.7 and ratio:
-        unit = _decide({u: np.log(abs(ratio) / UNITS[u].factor) for u in ("ft/min", "m/s", "ft/s")}, 0.35, 0.5)
+        unit = decide({u: np.log(abs(ratio) / UNITS[u].factor) for u in ("ft/min", "m/s", "ft/s")}, 0.35, 0.5)
         if unit:
             one.take(unit, f"the altitude moves as {unit} would")
 
 
 def _air_temperature(evidence: Evidence, one: Settled) -> None:
-    finite = _figures(evidence, one)
+    finite = evidence.figures(one)
     if not len(finite):
         return
     if np.min(finite) > 150.0:
@@ -464,13 +360,13 @@ def _air_temperature(evidence: Evidence, one: Settled) -> None:
         return
     falls, alike, _ = slope(evidence.si(height), figures)
     if alike < -0.93 and np.ptp(evidence.si(height)[np.isfinite(evidence.si(height))]) > 800.0:
-        unit = _decide({u: np.log(abs(falls) * UNITS[u].factor / 0.0065) for u in ("degC", "degF")}, 0.25, 0.2)
+        unit = decide({u: np.log(abs(falls) * UNITS[u].factor / 0.0065) for u in ("degC", "degF")}, 0.25, 0.2)
         if unit and unit in good:
             one.take(unit, f"it falls with height as {unit} would")
 
 
 def _by_ground_pressure(evidence: Evidence, one: Settled) -> None:
-    finite = _figures(evidence, one)
+    finite = evidence.figures(one)
     if not len(finite):
         return
     top = float(np.max(finite))
@@ -503,24 +399,3 @@ def _flaps(evidence: Evidence, one: Settled) -> None:
 
 def _fraction(values: Array) -> bool:
     return bool(np.max(values) <= 1.0)
-
-
-def last_resort(evidence: Evidence, one: Settled) -> None:
-    """Angles and rates without a witness: the other angles of the same log, if their unit was settled by the data."""
-    if one.quantity in ANGLES:
-        family: tuple[str, ...] = ANGLES
-    elif one.quantity in RATES:
-        family = (*RATES, *ANGLES)
-    elif one.quantity in ("latitude", "longitude"):
-        family = ("latitude", "longitude")
-    else:
-        return
-    known = {
-        other.unit.split("/")[0]: other
-        for other in evidence.all
-        if other.quantity in family and other.unit and not other.problem
-    }
-    if len(known) == 1:
-        unit, witness = next(iter(known.items()))
-        unit = unit + ("/s" if one.quantity in RATES else "")
-        one.take(unit, f"'{witness.raw.column.name}' beside it is in {witness.unit}")

@@ -14,6 +14,7 @@ from exceed.core.units import UNITS
 from exceed.read import evidence, probe, quality, rates
 from exceed.read.instants import Instants
 from exceed.read.look import Column, Survey
+from exceed.read.measure import resolution
 from exceed.read.raw import OddCells, RawChannel
 from exceed.read.recognise import QUESTIONS, kind_of
 
@@ -161,7 +162,7 @@ def _series(one: evidence.Settled, quantity: str, time: Instants) -> quality.Ser
     """The figures as written become SI, in place where they may."""
     raw = one.raw
     values = raw.values
-    step = abs(one.scale) * quality.resolution(values)
+    step = abs(one.scale) * resolution(values)
     if not values.flags.writeable:
         values = values.copy()
     if one.scale != 1.0:

@@ -8,9 +8,10 @@ from collections.abc import Mapping, Sequence
 from exceed.core.units import AIRSPEED_UNITS
 from exceed.read.clock import find_clock, stated_period
 from exceed.read.container import Source, open_source
+from exceed.read.engines import indexed, tanks
 from exceed.read.look import Column, Survey
 from exceed.read.rates import groups
-from exceed.read.recognise import columns_of, indexed, is_clock, tanks
+from exceed.read.recognise import columns_of, is_clock
 from exceed.read.stamps import ClockPlan
 from exceed.read.table import Layout, layout, registration_in, serial_in
 

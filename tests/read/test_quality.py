@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 from read.made import DEG, FT, KT, log, of_flight, si, truth
 
 from exceed.core.recording import Recording
-from exceed.read import quality
+from exceed.read import measure, quality
 from exceed.read.quality import Series
 
 NZ = si("load_factor")
@@ -214,10 +214,10 @@ def test_what_may_be_steady_is_not_called_stuck(tmp_path: Path) -> None:
 def test_noise_and_step_are_measured() -> None:
     rng = np.random.default_rng(5)
     slow = np.sin(np.arange(20_000) / 300.0)
-    assert quality.noise_of(slow + 0.02 * rng.standard_normal(20_000)) == pytest.approx(0.02, rel=0.05)
+    assert measure.noise_of(slow + 0.02 * rng.standard_normal(20_000)) == pytest.approx(0.02, rel=0.05)
     for step in (0.004, 0.1, 1.0, 0.25):
-        assert quality.resolution(np.round(50 * slow / step) * step) == pytest.approx(step)
-    assert quality.resolution(slow) == 0.0
+        assert measure.resolution(np.round(50 * slow / step) * step) == pytest.approx(step)
+    assert measure.resolution(slow) == 0.0
 
 
 def test_a_slow_accelerometer_is_said(tmp_path: Path) -> None:
