@@ -591,3 +591,14 @@ def test_a_slower_channel_assesses_no_more_and_says_what_it_can_hide(
     # its must_see is 0.5 s: slower than twice that a second, nothing in the air is assessed
     if every >= 8:
         assert found["load-factor-high"] < 60.0
+
+
+def test_every_event_of_the_sample_day_is_sound_and_all_time_is_accounted_for() -> None:
+    every = ["airframe", "aerobatic", "handling", "landing", "gust", "engine"]
+    summary = exceed.scan(Path(__file__).parents[1] / "sample_logs", rules=every).summary
+    assert sum(len(one["events"]) for one in summary["recordings"]) > 15
+    for one in summary["recordings"]:
+        assert one["status"] == "ok", one["problem"]
+        assert_adds_up(one)
+        for event in (*one["events"], *one["undecided"]):
+            assert_sound(event, one["recorded_s"])
