@@ -94,8 +94,8 @@ def _plain(error: BaseException) -> str:
     return " ".join(str(text).split())[:200]
 
 
-def open_source(location: str, shown: str | None = None) -> Source:
-    """Look at the first block of a file. Raises LogError for what cannot be a log."""
+def open_source(location: str, shown: str | None = None, most: int = HEAD_BYTES) -> Source:
+    """Look at the first `most` bytes of a file, unpacked. Raises LogError for what cannot be a log."""
     shown = shown or location
     if not is_uri(location):
         path = Path(location)
@@ -117,12 +117,12 @@ def open_source(location: str, shown: str | None = None) -> Source:
     for piece in unpacked(location, shown, packed, size, cut=cut):
         pieces.append(piece)
         length += len(piece)
-        if length >= HEAD_BYTES:
+        if length >= most:
             whole = False
             break
     head = b"".join(pieces)
-    if len(head) > HEAD_BYTES:
-        head, whole = head[:HEAD_BYTES], False
+    if len(head) > most:
+        head, whole = head[:most], False
     if cut and not head:
         raise fail(shown, cut[0], expected="a whole file", do="copy the log from the recorder again")
     if not head.strip(b"\x00\r\n\t \xef\xbb\xbf"):

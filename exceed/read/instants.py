@@ -69,6 +69,13 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
             expected="a clock column with figures or stamps",
             do="name the clock in a channels file",
         )
+    if len(made.time) > 1 and parsed.rows > 1 and np.ptp(readings[np.isfinite(readings)]) == 0.0:
+        raise fail(
+            survey.path,
+            "its clock stands still: every row has the same time",
+            expected="a time that goes on",
+            do="name another clock in a channels file, or check the recorder's clock",
+        )
     start = None if start0 is None else start0 + made.origin
     if start is None and plan.anchor is not None:
         start, zone = _anchored(survey, parsed, plan, made, notes)

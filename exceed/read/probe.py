@@ -32,7 +32,7 @@ def windows(survey: Survey) -> bytes:
     assert survey.layout is not None
     pieces = []
     with open(survey.source.location, "rb") as stream:
-        head = stream.read(1 << 20)
+        head = stream.read(8 << 20)
         ends = [match.end() for match in re.finditer(rb"\r\n|\r|\n", head)]
         first = ends[survey.layout.skip - 1] if survey.layout.skip else 0
         for k in range(WINDOWS):

@@ -10,7 +10,7 @@ from exceed.core.units import UNITS, units_of
 from exceed.read.cells import form, is_missing
 from exceed.read.engines import declared_meaning
 from exceed.read.look import Column
-from exceed.read.names import Meaning, clock_name, meanings
+from exceed.read.names import Meaning, clock_name, meanings, words_of
 from exceed.read.units_in_text import RAW, plain, says_nothing, split_unit, unit_in
 
 # what a heading means when its unit is of another kind than the name's first meaning
@@ -129,6 +129,17 @@ def recognise(
     column = Column(index, name, unit_text, source, shape, cells[:40])
     if unit_text and plain(unit_text) in RAW and not unit_in(unit_text):
         return column.with_(problem=f"written in {unit_text}: raw sensor output, no physical quantity")
+    if not unit_text:
+        # KIAS as a name says the unit as well
+        unit_text = next(
+            (
+                word
+                for word in words_of(name)
+                if (told := unit_in(word)) is not None and told.quantity and word[0] == "k"
+            ),
+            "",
+        )
+        unit_from = "name"
     multiple = _multiple(name, unit_cell)
     if multiple:
         return column.with_(
@@ -152,7 +163,14 @@ def recognise(
         found = (Meaning(spoken.quantity, 0.8, f"its unit {unit_text} names the speed"),)
     if not found:
         return column.with_(problem=f"not understood: {why}" if why else "not understood")
-    return _with_unit(column, found, unit_text, unit_from, declared)
+    made = _with_unit(column, found, unit_text, unit_from, declared)
+    row = QUANTITIES.get(made.quantity or "")
+    if shape == "word" and made.quantity and not made.problem and row is not None and not row.discrete:
+        seen = ", ".join(f"'{cell}'" for cell in sorted({cell for cell in cells if cell})[:4])
+        return made.with_(
+            problem=f"its cells are words ({seen}), not figures", question=f"What is the {row.name} for each of them?"
+        )
+    return made
 
 
 _MULTIPLE = re.compile(

@@ -6,6 +6,7 @@ import os
 from collections.abc import Mapping, Sequence
 
 from exceed.core.units import AIRSPEED_UNITS
+from exceed.errors import LogError
 from exceed.read.clock import find_clock, stated_period
 from exceed.read.container import Source, open_source
 from exceed.read.engines import indexed, tanks
@@ -14,6 +15,9 @@ from exceed.read.rates import groups
 from exceed.read.recognise import columns_of, is_clock
 from exceed.read.stamps import ClockPlan
 from exceed.read.table import Layout, layout, registration_in, serial_in
+
+# how far a table is looked for behind a long preamble
+LONG_HEAD = 8 << 20
 
 
 def survey(
@@ -40,7 +44,14 @@ def survey(
         from exceed.read.parquet import survey_parquet
 
         return survey_parquet(source, channels, known)
-    found = layout(source)
+    try:
+        found = layout(source)
+    except LogError:
+        # a preamble may be longer than the first block
+        if source.whole or (b"\n" not in source.head and b"\r" not in source.head):
+            raise
+        source = open_source(location, shown, LONG_HEAD)
+        found = layout(source)
     cells = [[row[k] if k < len(row) else "" for row in found.sample] for k in range(found.width)]
     columns = columns_of(found.names, found.units, found.sources, cells, known)
     registration, serial = registration_in(found.facts), serial_in(found.facts)

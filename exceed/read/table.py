@@ -125,31 +125,14 @@ def _rows(lines: list[str], delimiter: str) -> list[list[str]]:
 def _delimiter(source: Source, lines: list[str]) -> tuple[str, int]:
     """The delimiter under which the later lines are most even and most like data."""
     filled = [line for line in lines if line.strip()]
-    tail = filled[len(filled) // 3 :] if len(filled) > 30 else filled
-    tail = spread(tail, 150)
-    best: tuple[float, str, int] | None = None
-    for delimiter in DELIMITERS:
-        if len(filled) > 3 and sum(delimiter in line for line in tail) < 0.3 * len(tail):
-            continue
-        split_rows = [split(line, delimiter) for line in tail]
-        counts = Counter(len(row) for row in split_rows)
-        # rows may lack their empty end: the widest common count is the table's
-        common = [count for count, times in counts.items() if times >= max(1, 0.05 * len(tail))]
-        width = max(common) if common else counts.most_common(1)[0][0]
-        modal = counts.most_common(1)[0][0]
-        if width < 2:
-            continue
-        even = [row for row in split_rows if len(row) in (width, modal)]
-        cells = [cell for row in even[:40] for cell in row[:300]]
-        forms = Counter(form(cell) for cell in cells)
-        data = forms["number"] + forms["stamp"] + 0.6 * forms["empty"]
-        score = len(even) / len(tail) * data / max(1, len(cells))
-        # more columns are better evidence, but only a little: 1,5;2,5 splits on both marks
-        score *= 1.0 + 0.02 * min(width, 20)
-        if forms["number"] + forms["stamp"] == 0:
-            continue
-        if best is None or score > best[0] * 1.001:
-            best = (score, delimiter, width)
+    tail = spread(filled[len(filled) // 3 :] if len(filled) > 30 else filled, 150)
+    best = _most_even(tail)
+    # a long preamble may outweigh the rows that the block still shows
+    for last in (150, 30):
+        if (best is None or best[0] < 0.5) and len(filled) > last:
+            other = _most_even(filled[-last:])
+            if other is not None and (best is None or other[0] > best[0]):
+                best, tail = other, filled[-last:]
     if best is None:
         single = [form(line) for line in tail]
         if single and single.count("number") > 0.8 * len(single):
@@ -161,6 +144,34 @@ def _delimiter(source: Source, lines: list[str]) -> tuple[str, int]:
             do="export the log as CSV",
         )
     return best[1], best[2]
+
+
+def _most_even(tail: list[str]) -> tuple[float, str, int] | None:
+    """(score, delimiter, width) of the delimiter that splits these lines best, None if none gives numbers."""
+    best: tuple[float, str, int] | None = None
+    for delimiter in DELIMITERS:
+        if len(tail) > 3 and sum(delimiter in line for line in tail) < 0.3 * len(tail):
+            continue
+        split_rows = [split(line, delimiter) for line in tail]
+        counts = Counter(len(row) for row in split_rows)
+        # rows may lack their empty end: the widest common count is the table's
+        common = [count for count, times in counts.items() if times >= max(1, 0.05 * len(tail))]
+        width = max(common) if common else counts.most_common(1)[0][0]
+        modal = counts.most_common(1)[0][0]
+        if width < 2:
+            continue
+        even = [row for row in split_rows if len(row) in (width, modal)]
+        cells = [cell for row in even[-40:] for cell in row[:300]]
+        forms = Counter(form(cell) for cell in cells)
+        data = forms["number"] + forms["stamp"] + 0.6 * forms["empty"]
+        score = len(even) / len(tail) * data / max(1, len(cells))
+        # more columns are better evidence, but only a little: 1,5;2,5 splits on both marks
+        score *= 1.0 + 0.02 * min(width, 20)
+        if forms["number"] + forms["stamp"] == 0:
+            continue
+        if best is None or score > best[0] * 1.001:
+            best = (score, delimiter, width)
+    return best
 
 
 def _usual_forms(rows: list[list[str]], width: int) -> list[set[str]]:

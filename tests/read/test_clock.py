@@ -286,3 +286,12 @@ def test_rows_alone_with_a_stated_rate(tmp_path: Path) -> None:
     recording = log(tmp_path, text)
     assert np.allclose(recording.time, np.arange(200) / 8)
     assert "no clock column: rows are counted, 8 a second as the preamble says" in recording.clock.notes
+
+
+def test_a_clock_that_stands_still_is_an_error(tmp_path: Path) -> None:
+    with pytest.raises(LogError) as caught:
+        log(tmp_path, simple(stamps=["5.0"] * 200))
+    assert str(caught.value).endswith(
+        "its clock stands still: every row has the same time\n  expected: a time that goes on\n"
+        "  do: name another clock in a channels file, or check the recorder's clock"
+    )

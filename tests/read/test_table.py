@@ -281,3 +281,64 @@ def test_a_survey_reads_one_block(tmp_path: Path) -> None:
     assert len(found.source.head) == 256 * 1024
     assert found.quantities == ("indicated_airspeed", "load_factor", "pressure_altitude")
     assert found.clock.kind == "elapsed"
+
+
+def test_a_preamble_longer_than_the_first_block(tmp_path: Path) -> None:
+    top = "".join(f"Setting {k}: {'x' * 200}\n" for k in range(2000))
+    recording = log(tmp_path, top + "Registration: ZZ-NMA\n" + simple())
+    assert len(recording.time) == 200
+    assert recording.registration == "ZZ-NMA"
+
+
+def test_a_name_can_say_the_unit(tmp_path: Path) -> None:
+    recording = log(tmp_path, simple(heading="time [s],NZ [g],KIAS,PALT [ft]"))
+    assert recording.channels["indicated_airspeed"].unit == "kt"
+
+
+@pytest.mark.parametrize("unit", ["x100 ft", "ft x 100", "FL", "0.01 ft"])
+def test_a_multiple_of_a_unit_is_no_unit(tmp_path: Path, unit: str) -> None:
+    recording = log(tmp_path, simple(heading=f"time [s],NZ [g],IAS [kt],PALT [{unit}]"))
+    (row,) = recording.unresolved
+    assert row.reason == f"written in '{unit}', a multiple of a unit"
+    assert "pressure_altitude" not in recording.channels
+
+
+def test_words_where_figures_are_due_are_asked_about(tmp_path: Path) -> None:
+    lines = ["time [s],NZ [g],FLAPS"] + [f"{k / 8},1.0{k % 7},{'UP' if k % 90 < 60 else 'LDG'}" for k in range(300)]
+    (row,) = log(tmp_path, "\n".join(lines) + "\n").unresolved
+    assert row.reason == "its cells are words ('LDG', 'UP'), not figures"
+    assert row.question == "What is the flap_angle for each of them?"
+
+
+@pytest.mark.parametrize(
+    "names",
+    [
+        ["NZ1", "NZ2", "NZ3", "NZ4"],
+        ["NZ_0", "NZ_1", "NZ_2", "NZ_3"],
+        ["NZ(1)", "NZ(2)", "NZ(3)", "NZ(4)"],
+        ["NZa", "NZb", "NZc", "NZd"],
+        ["NZ@0.0", "NZ@0.125", "NZ@0.25", "NZ@0.375"],
+    ],
+)
+def test_sub_frames_by_number_letter_and_offset(tmp_path: Path, names: list[str]) -> None:
+    load = [row[1] for row in rows(400)]
+    lines = [",".join(["time [s]", "IAS [kt]", *names])]
+    lines += [f"{k / 8},{100 + k % 9}," + ",".join(f"{load[k + j]:.4f}" for j in range(4)) for k in range(0, 400, 4)]
+    recording = log(tmp_path, "\n".join(lines) + "\n")
+    channel = recording.channels["load_factor"]
+    assert np.allclose(channel.values, load, atol=6e-5)
+    assert channel.rows is None
+    assert recording.channels["indicated_airspeed"].rows is not None
+    assert np.array_equal(recording.channels["indicated_airspeed"].rows, np.arange(0, 400, 4))
+    assert recording.unused == ()
+
+
+def test_sensors_beside_each_other_are_no_sub_frames(tmp_path: Path) -> None:
+    load = [row[1] for row in rows(400)]
+    lines = ["time [s],NZ1 [g],NZ2 [g],NZ3 [m/s2]"] + [
+        f"{k / 8},{n:.4f},{n + 0.002:.4f},{n * 9.80665:.4f}" for k, n in enumerate(load)
+    ]
+    recording = log(tmp_path, "\n".join(lines) + "\n")
+    assert recording.channels["load_factor"].column == "NZ1 [g]"
+    assert len(recording.time) == 400
+    assert {row.column for row in recording.unresolved} == {"NZ2 [g]", "NZ3 [m/s2]"}
