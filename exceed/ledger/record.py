@@ -180,7 +180,7 @@ class _Scan:
         self.result["flights"]["clashes"] += [{"path": recording["path"], "flight": one} for one in counts["clashes"]]
         if history and history[-1]["registration"] != recording["registration"] and recording["registration"]:
             self._renamed(recording["registration"], placed)
-        self._events(recording, row, judgement, rules, placed, judged, anew=bool(history))
+        self._events(recording, row, judgement, rules, placed, anew=bool(history))
 
     def _renamed(self, registration: str, placed: Sequence[Row]) -> None:
         """The same recording was judged as another aeroplane's: its flights are that one's from now on."""
@@ -198,13 +198,12 @@ class _Scan:
         judgement: int,
         rules: str,
         placed: Sequence[Row],
-        judged: set[str],
         *,
         anew: bool,
     ) -> None:
         """New events beside the old: the same occurrence succeeds, what is no longer found is removed (as a row)."""
         key = st.registration_key(recording["registration"])
-        own = [old for old in self._own(row) if old["rule"] in judged] if anew else []
+        own = self._own(row) if anew else []
         known, twins = st.Occurrences(own, "_s"), st.Occurrences(self._twins(recording, key, row), "_at")
         matched: set[int] = set()
         for kind, body in _kinds(recording):

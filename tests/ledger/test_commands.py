@@ -90,6 +90,9 @@ def test_scanning_twice_and_new_only(run, day, place):
     assert re.sub('"created": ".*?"', "", again) == re.sub('"created": ".*?"', "", out)
     # the same content packed is known too, before it is parsed
     (day / LOG).with_suffix(".csv.gz").write_bytes(gzip.compress((day / LOG).read_bytes()))
+    (day / LOG).rename(day / "zz-nma" / "renamed.csv")
+    code, out, err = run("scan", day / "zz-nma" / "nma-0902.csv.gz", "--ledger", place, "--new-only", "--json", "-")
+    assert "1 of 1 logs skipped" in err
     code, out, err = run("scan", day, "--ledger", place, "--new-only", "--jobs", "1", "--json", "-")
     assert code == 0
     assert "2 of 2 logs skipped" in err

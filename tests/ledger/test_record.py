@@ -219,6 +219,26 @@ def test_newer_rules_add_a_judgement_beside_the_old_and_say_what_changed(book):
     assert all_totals(book)[0]["flights"] == 1
 
 
+def test_another_finding_by_the_same_rules_is_a_newer_judgement(book):
+    # another loading sheet, another version of a channels file: the rules are the same, the finding is not
+    record(book, newer(event(812.13, 812.94), rules="rules 1"))
+    result = record(book, newer(event(812.13, 812.94, limit=4.4), rules="rules 1"))
+    assert result["recordings"]["judged_anew"] == 1
+    assert result["changes"][0]["difference"] == "limit: 6.0 -> 4.4"
+
+
+def test_a_second_recorder_that_saw_worse_takes_the_place_of_the_first(book):
+    record(book, summary(one_sortie()))
+    other = recording("qar.csv", flights=[flight(100.0, 3700.0)], events=[event(812.2, 812.9, severity="warning")])
+    result = record(book, summary(other))
+    assert [row["kind"] for row in result["changes"]] == ["changed"]
+    assert [row["severity"] for row in all_events(book)] == ["warning"]
+    # and one that saw less does not
+    third = recording("third.csv", flights=[flight(100.0, 3700.0)], events=[event(812.2, 812.9, severity="advisory")])
+    assert record(book, summary(third))["changes"] == []
+    assert [row["severity"] for row in all_events(book)] == ["warning"]
+
+
 def test_a_judgement_by_other_rules_takes_nothing_from_rules_it_did_not_apply(book):
     record(book, newer(event(812.13, 812.94), rules="rules 1"))
     engine = recording(
