@@ -204,6 +204,10 @@ def _spikes(series: Series, others: Mapping[str, Series], out: Checked) -> None:
             continue
         both = large[:-1] & large[1:] & (np.sign(steps[:-1]) != np.sign(steps[1:]))
         candidates += (np.flatnonzero(both) + max(0, start - 1) + 1).tolist()
+    if len(candidates) > max(200, 0.01 * len(values)):
+        # lone errors are rare by nature: this is how the channel is
+        out.notes.append(f"{len(candidates)} samples jump to and fro: too many for lone errors, all are kept")
+        return
     found = [] if series.quantity.endswith("load_factor") else _at_the_ends(values, least, wraps)
     doubtful = 0
     if not candidates and not found:
@@ -338,7 +342,7 @@ def _stuck(series: Series, others: Mapping[str, Series], out: Checked) -> None:
     lasting, still, groups = STUCK[series.quantity]
     groups = tuple(group for group in groups if all(name in others for name, _ in group))
     long = int(max(lasting / max(series.interval, 1e-6), 20))
-    if len(values) < 3 * long or not groups:
+    if len(values) < 3 * long or not groups or np.nanmin(values) == np.nanmax(values):
         return
     # a stretch longer than twice the spacing of these probes shows equal figures at two of them
     step = max(1, long // 2)

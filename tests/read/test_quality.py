@@ -225,3 +225,17 @@ def test_a_slow_accelerometer_is_said(tmp_path: Path) -> None:
     lines = ["time [s],NZ [g]"] + [f"{k},{value:.3f}" for k, value in enumerate(slow)]
     notes = log(tmp_path, "\n".join(lines) + "\n").channels["load_factor"].notes
     assert "recorded every 1 s: peaks shorter than about 4 s are not sized" in notes
+
+
+def test_a_channel_that_always_jumps_is_kept_and_said() -> None:
+    values = np.where(np.arange(1000) % 2 == 0, 60.0, 100.0)
+    checked = quality.check(Series("indicated_airspeed", values, lambda: np.arange(1000) / 8.0, 0.125, 0.1), None, {})
+    assert checked.rejected == []
+    assert checked.notes == ["998 samples jump to and fro: too many for lone errors, all are kept"]
+
+
+def test_the_first_sample_has_one_neighbour_to_ask() -> None:
+    values = 50.0 + np.sin(np.arange(400) / 30.0)
+    values[0] = 514.0
+    checked = quality.check(Series("indicated_airspeed", values, lambda: np.arange(400) / 8.0, 0.125, 0.1), None, {})
+    assert [(first, reason) for first, _, _, reason, _ in checked.rejected] == [(0, "spike")]
