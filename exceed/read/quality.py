@@ -123,6 +123,9 @@ def check(series: Series, sensor: tuple[float, float] | None, others: Mapping[st
     if len(values) == 0 or series.discrete:
         return out
     _out_of_range(series, sensor, out)
+    if not np.isfinite(values).any():
+        out.lost = len(values)
+        return out
     out.noise = noise_of(values)
     if sensor is not None:
         out.saturation = sensor
@@ -204,7 +207,7 @@ def _spikes(series: Series, others: Mapping[str, Series], out: Checked) -> None:
             continue
         both = large[:-1] & large[1:] & (np.sign(steps[:-1]) != np.sign(steps[1:]))
         candidates += (np.flatnonzero(both) + max(0, start - 1) + 1).tolist()
-    if len(candidates) > max(200, 0.01 * len(values)):
+    if len(candidates) > max(2000, 0.03 * len(values)):
         # lone errors are rare by nature: this is how the channel is
         out.notes.append(f"{len(candidates)} samples jump to and fro: too many for lone errors, all are kept")
         return
