@@ -295,8 +295,6 @@ def _supersedes(new: Row, body: Row, twin: Row, rules: str) -> bool:
     broken = ("gap", "recording_start", "recording_end")
     if old.get("cut_by") in broken and st.longer(new, twin):
         return True
-    if st.worse(twin, new) and twin["rules_sha256"] == rules:
-        return False
     return twin["rules_sha256"] != rules and not (body.get("cut_by") in broken and st.longer(twin, new))
 
 

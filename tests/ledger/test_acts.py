@@ -93,6 +93,7 @@ def test_deciding_that_it_was_no_exceedance_closes_nothing_but_asks_for_a_decisi
     acts.decide(book, all_events(book)[0]["id"], "sensor-fault", "A. Miller", None)
     (row,) = work(book)
     assert row["status"] == "to_be_decided"
+    assert "were decided to be no exceedance" in row["notes"][0]
     acts.decide(book, all_events(book)[0]["id"], "agreed", "A. Miller", "it was real")
     assert work(book)[0]["status"] == "due"
 

@@ -319,10 +319,10 @@ def test_two_engines_are_two_occurrences(book):
 def test_a_better_view_of_a_cut_event_takes_its_place_and_a_poorer_one_does_not(book):
     record(book, summary(recording("1.csv", length=813.0, flights=[flight(100.0, 813.0, broken="end")],
                                    events=[event(812.1, 813.0, cut_by="recording_end")])))  # fmt: skip
-    result = record(book, summary(recording("2.csv", events=[event(812.1, 816.0, severity="warning")])))
+    result = record(book, summary(recording("2.csv", events=[event(812.1, 816.0)])))
     assert [row["kind"] for row in result["changes"]] == ["changed"]
     (found,) = all_events(book)
-    assert (found["end_s"], found["severity"]) == (816.0, "warning")
+    assert (found["end_s"], found["severity"]) == (816.0, "caution")
     poorer = recording(
         "3.csv", start=9 * 3600.0 + 814.0, length=400.0, flights=[flight(0.0, 400.0, broken="startend")],
         events=[event(0.0, 2.0, cut_by="recording_start")],
