@@ -264,17 +264,19 @@ class Trace:
         own = np.full(len(places), step.uncertainty)
         if step.spread is None:
             return own
+        if len(places) == 0:
+            return own
+        around = neighbourhoods(grid.time, places, self.reach(name))
         needed = [source for source in step.inputs.values() if source != TIME and not source.startswith("recorded:")]
-        around = self.evaluate_at(needed, grid, places) if needed else {}
+        values = self._work_out(needed, grid, around, {}, {}) if needed else {TIME: grid.time[around]}
         arguments: dict[str, Any] = dict(step.facts)
         for parameter, source in step.inputs.items():
-            if source == TIME:
-                arguments[parameter] = grid.time[places]
-            elif source.startswith("recorded:"):
-                arguments[parameter] = self._channel(source[9:], grid, places, grid.time[places], {})
+            if source.startswith("recorded:"):
+                arguments[parameter] = self._channel(source[9:], grid, around, grid.time[around], {})
             else:
-                arguments[parameter] = around[source]
-        spread = np.abs(np.broadcast_to(np.asarray(step.spread(**arguments), dtype=np.float64), own.shape))
+                arguments[parameter] = values[source]
+        found = np.broadcast_to(np.asarray(step.spread(**arguments), dtype=np.float64), around.shape)
+        spread = np.abs(found[np.searchsorted(around, places)])
         total: Array = np.hypot(own, np.where(np.isfinite(spread), spread, 0.0))
         return total
 

@@ -7,6 +7,7 @@ beneath a correction), for `time`, or for a fact. One with the default None is u
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from exceed.core.constants import EARTH_RADIUS, STANDARD_GRAVITY
 from exceed.core.intervals import runs
@@ -14,6 +15,13 @@ from exceed.core.recording import Array
 from exceed.physics import airspeed, atmosphere, kinematics, smoothing, turning
 
 MOST_PATCHES = 8  # more of them cost more than the long way for all
+# a step of vertical speed that asks for more than this, beside a value that did not change, is an update come late: a
+# body does not go from exactly no change to that at once (judgement, seen in surveillance data)
+LATE_STEP = STANDARD_GRAVITY
+HELD = 2  # repeats that make a value held
+# the path is compared with what a window so much wider makes of it, which together is how far its methods look
+WIDER = 2.5
+PATH_LOOKS = 2.5
 
 
 def slope(time: Array, values: Array, width: float, max_gap: float) -> Array:
@@ -214,8 +222,64 @@ def _path(
     with np.errstate(invalid="ignore", divide="ignore"):
         ratio = np.where(true_airspeed > 5.0, vertical_speed / true_airspeed, np.nan)
     path = np.arcsin(np.clip(ratio, -1.0, 1.0))
-    bend = slope(time, path, width, max_gap)
+    bend = np.where(_late(time, vertical_speed, width), np.nan, slope(time, path, width, max_gap))
     return np.cos(path) + true_airspeed * bend / STANDARD_GRAVITY, np.cos(path)
+
+
+def _late(time: Array, values: Array, width: float) -> NDArray[np.bool_]:
+    """Where a slope over `width` would take in a late update: a step too steep for a body, beside held values."""
+    count = len(time)
+    touched = np.zeros(count, dtype=bool)
+    if count < HELD + 2:
+        return touched
+    spacing = np.diff(time)
+    change = np.diff(values)
+    with np.errstate(invalid="ignore"):
+        steep = np.abs(change) > LATE_STEP * spacing
+    still = change == 0.0
+    before, after = np.zeros(count - 1, dtype=bool), np.zeros(count - 1, dtype=bool)
+    before[HELD:] = np.logical_and.reduce([still[HELD - k : count - 1 - k] for k in range(1, HELD + 1)])
+    after[: count - 1 - HELD] = np.logical_and.reduce([still[k : count - 1 - HELD + k] for k in range(1, HELD + 1)])
+    for place in np.flatnonzero(steep & (before | after)):
+        low = np.searchsorted(time, time[place] - width, side="left")
+        high = np.searchsorted(time, time[place + 1] + width, side="right")
+        touched[low:high] = True
+    return touched
+
+
+def path_spread(
+    time: Array, true_airspeed: Array, vertical_speed: Array, turn_rate: Array, width: float, max_gap: float
+) -> Array:
+    """How far a wider window would move the load factor: what the samples leave open about the path's curvature."""
+    with np.errstate(invalid="ignore", divide="ignore"):
+        ratio = np.where(true_airspeed > 5.0, vertical_speed / true_airspeed, np.nan)
+    path = np.arcsin(np.clip(ratio, -1.0, 1.0))
+    narrow = slope(time, path, width, max_gap)
+    wide = slope(time, path, WIDER * width, max_gap)
+    return np.abs(true_airspeed * (narrow - wide)) / STANDARD_GRAVITY
+
+
+def path_and_turn_spread(
+    time: Array,
+    true_airspeed: Array,
+    vertical_speed: Array,
+    recorded_bank_angle: Array,
+    turn_rate: Array,
+    width: float,
+    max_gap: float,
+) -> Array:
+    """As `path_spread`, seen along the aeroplane's normal axis."""
+    return path_spread(time, true_airspeed, vertical_speed, turn_rate, width, max_gap) * np.abs(
+        np.cos(recorded_bank_angle)
+    )
+
+
+def path_and_bank_spread(
+    time: Array, true_airspeed: Array, vertical_speed: Array, recorded_bank_angle: Array, width: float, max_gap: float
+) -> Array:
+    """As `path_spread`, brought to the aeroplane's normal axis."""
+    cosine = np.maximum(np.abs(np.cos(recorded_bank_angle)), np.sin(np.radians(15.0)))
+    return path_spread(time, true_airspeed, vertical_speed, np.zeros_like(time), width, max_gap) / cosine
 
 
 def load_factor_from_path_and_turn(

@@ -120,7 +120,7 @@ class Resolver:
         self.steps[row.quantity] = Step(
             row.quantity, row.method, row.function, inputs, bound, reach, "; ".join(assumed) or None,
             row.uncertainty, row.one_sided, row.cap, None, row.source,
-            tuple(inputs[name] for name in row.main if name in inputs),
+            tuple(inputs[name] for name in row.main if name in inputs), row.spread,
         )  # fmt: skip
         return True
 

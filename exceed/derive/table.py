@@ -53,6 +53,7 @@ class Derivation:
     method's own standard uncertainty in SI, besides what its inputs bring. one_sided : a bound by construction.
     cap : highest certainty. corrects : goes before what is recorded, which it corrects. when : why the row does not fit
     the channels' intervals. main : the parameters whose samples are the method's own; the others only correct them.
+    spread : a function of the same parameters that gives the method's own standard uncertainty sample by sample.
     """
 
     quantity: str
@@ -69,6 +70,7 @@ class Derivation:
     corrects: bool = False
     when: Callable[[Mapping[str, float]], str | None] | None = None
     main: tuple[str, ...] = ()
+    spread: Callable[..., Any] | None = None
 
 
 _FLAPS = "flaps not recorded: taken as up"
@@ -177,12 +179,16 @@ DERIVATIONS: tuple[Derivation, ...] = (
     Derivation("load_factor", methods.load_factor_moved, "accelerometer moved to the centre of gravity", "RIGID-BODY",
                corrects=True, when=_quick("load_factor", *_RATES), main=("recorded_load_factor",)),
     # their own uncertainties: root mean square against the flight model in aerobatics, at one sample a second
+    # (besides, what a wider window makes of the same path); without an accelerometer an event is possible at most
     Derivation("load_factor", methods.load_factor_from_path_and_turn, "attitude and flight path", "FLIGHT-PATH",
-               width=1.0, assumes="coordinated flight in still air", uncertainty=0.2, when=_turning),
+               width=1.0, looks=methods.PATH_LOOKS, assumes="coordinated flight in still air", uncertainty=0.2,
+               when=_turning, cap=POSSIBLE, spread=methods.path_and_turn_spread),
     Derivation("load_factor", methods.load_factor_from_path_and_bank, "flight path and bank", "FLIGHT-PATH", width=1.0,
-               assumes="coordinated flight in still air", uncertainty=0.25),
+               looks=methods.PATH_LOOKS, assumes="coordinated flight in still air", uncertainty=0.25, cap=POSSIBLE,
+               spread=methods.path_and_bank_spread),
     Derivation("load_factor", methods.load_factor_from_path, "flight path", "FLIGHT-PATH", width=1.0,
-               assumes="upright coordinated flight in still air", uncertainty=0.35, when=_turning, cap=POSSIBLE),
+               looks=methods.PATH_LOOKS, assumes="upright coordinated flight in still air", uncertainty=0.35,
+               when=_turning, cap=POSSIBLE, spread=methods.path_spread),
     Derivation("load_factor", methods.load_factor_level_turn, "level turn", "LEVEL-TURN", width=0.5,
                assumes="level coordinated turn", uncertainty=0.05, one_sided=True, cap=POSSIBLE),
     Derivation("load_factor", methods.load_factor_wings_level, "vertical acceleration", "FLIGHT-PATH", width=1.0,

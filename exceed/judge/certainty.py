@@ -23,7 +23,7 @@ __all__ = [
 
 Word = Literal["established", "likely", "possible", "doubtful"]
 ESTABLISHED, LIKELY, POSSIBLE = 0.95, 0.5, 0.05
-CAPPED = 0.4999  # a method that can make nothing more than possible: below likely, also after rounding to four digits
+CAPPED = 0.499  # a method that can make nothing more than possible: below likely, also as it is printed
 INTERVALS_TO_SIZE = 4.0
 _Z95 = 1.959964
 # Where the known points of a peak's distribution stand, as standard scores. The ends of the interval were fitted at 2 %
