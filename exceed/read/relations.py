@@ -158,7 +158,7 @@ def _speed(evidence: Evidence, one: Settled) -> None:
             continue
         unit = decide({u: np.log(centre * UNITS[u].factor) for u in one.raw.column.units}, close, apart)
         if unit:
-            one.take(unit, f"{why} fits {unit} (within {abs(centre * UNITS[unit].factor - 1) * 100:.0f} %)")
+            one.take(unit, f"{unit} by {why}, within {abs(centre * UNITS[unit].factor - 1) * 100:.0f} %")
             return
 
 

@@ -89,7 +89,7 @@ def test_an_airspeed_follows_from_turns(tmp_path: Path, unit: str, factor: float
     }
     channel = log(tmp_path, of_flight(columns)).channels["indicated_airspeed"]
     assert channel.unit == unit
-    assert "the rate of turn at the recorded bank fits" in channel.reason
+    assert f"{unit} by the rate of turn at the recorded bank, within" in channel.reason
 
 
 @pytest.mark.parametrize(("height", "factor"), [("ft", FT), ("m", 1.0)])
