@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 from pathlib import Path
 from typing import Any
@@ -35,7 +36,7 @@ def read_text(path: Path | str, name: str | None = None) -> tuple[str, bytes]:
                     "check that this is the right file",
                 )
             )
-        with path.open("rb") as stream:
+        with open(path, "rb", opener=_unblocked) as stream:
             data = stream.read(MAXIMUM_BYTES + 1)
     except FileNotFoundError:
         raise DocumentError(Problem(shown, "there is no such file", "a YAML file", "check the path")) from None
@@ -50,6 +51,13 @@ def read_text(path: Path | str, name: str | None = None) -> tuple[str, bytes]:
             )
         ) from error
     return decode(data, shown), data
+
+
+def _unblocked(path: str, flags: int) -> int:
+    """A descriptor of a file; of a pipe into which nobody writes too, which then reads as empty instead of for ever."""
+    descriptor = os.open(path, flags | os.O_NONBLOCK)
+    os.set_blocking(descriptor, True)
+    return descriptor
 
 
 def decode(data: bytes, name: str) -> str:

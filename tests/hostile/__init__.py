@@ -1,0 +1,1 @@
+"""Input that nobody should hand to a program, and what must come of it."""
