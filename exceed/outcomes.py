@@ -22,6 +22,7 @@ from exceed.core.recording import GAP_INTERVALS, GAP_LEAST, Channel, Recording
 from exceed.core.trace import Step, Trace
 from exceed.documents.aircraft import Aircraft
 from exceed.judge.compiled import Compiled
+from exceed.judge.telltales import telltale_notes
 from exceed.prepare import Member
 
 # samples of a log at which a method's typical uncertainty is taken
@@ -71,6 +72,7 @@ def outcome(
                     *trace.notes,
                     *trace.track.notes,
                     *findings.notes,
+                    *telltale_notes(trace, findings.extremes, member.loading, registration),
                     *member.book.notes,
                     *(str(one) for one in member.book.replaced),
                 )

@@ -131,6 +131,15 @@ class Compiled:
                 return index
         return 0
 
+    @property
+    def allowance_levels(self) -> tuple[LevelSpec, ...]:
+        """The lines that allowances count between, lowest first: the limit itself, then each `up_to`."""
+        if not self.allowed:
+            return ()
+        steps = sorted(self.allowed, key=lambda step: step.share)
+        lines = [LevelSpec("", "share" if step.of_limit else "at", step.share) for step in steps]
+        return (LevelSpec("", "share", 1.0), *lines)
+
     def threshold(self, level: LevelSpec, limit: Array | float) -> Array | float:
         """The value of a level where the limit in force is `limit`."""
         if level.kind == "at":
@@ -138,7 +147,9 @@ class Compiled:
         if level.kind == "beyond":
             return limit + self.side * level.value
         scaled = limit * level.value
-        small = COLLAPSE.get(self.quantity.kind, 0.0)
+        # a sink rate of 300 ft/min is below 5 kt and no small one
+        airspeed = self.quantity.kind != "speed" or self.quantity.shown == "kt"
+        small = COLLAPSE.get(self.quantity.kind, 0.0) if airspeed else 0.0
         if small:
             return (
                 np.where(np.abs(limit) < small, limit, scaled)

@@ -44,7 +44,7 @@ def judge(trace: Trace, rules: list[Compiled], extremes: list[str], *, size: int
         if index in others:
             light = build_events(rule, trace, grid, others[index], context, low)
             found, maybe = _both_ends((found, maybe), light, trace.spans)
-        found, maybe = accumulate(rule, found, maybe)
+        found, maybe = accumulate(rule, found, maybe, scans[index])
         events += found
         undecided += maybe
     near: dict[str, float] = {}

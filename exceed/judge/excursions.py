@@ -210,20 +210,52 @@ def parts(runs: Runs, events: Runs) -> Index:
     return np.where(inside, home, -1).astype(np.int64)
 
 
-def group_by_window(start: Array, flight: Index, window: float | None) -> list[Index]:
-    """Stretches that count together: of one flight (window None), or beginning within `window` s of the first."""
+def enough_in_window(start: Array, flight: Index, window: float | None, least: int) -> list[Index]:
+    """Groups of stretches of which `least` begin within `window` s (None: in one flight), wherever the window lies.
+
+    Windows that share a stretch make one group.
+    """
     groups: list[Index] = []
     for number in np.unique(flight):
         members = np.flatnonzero(flight == number)
         if window is None:
-            groups.append(members)
+            groups += [members] if len(members) >= least else []
             continue
-        taken = 0
-        while taken < len(members):
-            stop = int(np.searchsorted(start[members], start[members[taken]] + window, side="right"))
-            groups.append(members[taken:stop])
-            taken = stop
+        begins = start[members]
+        full = [
+            (first, int(np.searchsorted(begins, begins[first] + window, side="right"))) for first in range(len(members))
+        ]
+        groups += _merged([(a, b) for a, b in full if b - a >= least], members)
     return groups
+
+
+def much_in_window(start: Array, end: Array, flight: Index, window: float | None, most: float) -> list[Index]:
+    """Groups of stretches whose time within some `window` s (None: within one flight) adds up to more than `most` s."""
+    groups: list[Index] = []
+    for number in np.unique(flight):
+        members = np.flatnonzero(flight == number)
+        begins, ends = start[members], end[members]
+        if window is None:
+            groups += [members] if float(np.sum(ends - begins)) > most else []
+            continue
+        full = []
+        for last in range(len(members)):
+            first = int(np.searchsorted(ends, ends[last] - window, side="right"))
+            if used_up(begins[first : last + 1], ends[first : last + 1], most, window) is not None:
+                full.append((first, last + 1))
+        groups += _merged(full, members)
+    return groups
+
+
+def _merged(spans: list[tuple[int, int]], members: Index) -> list[Index]:
+    """Index ranges [first, stop) that overlap become one."""
+    joined_: list[list[int]] = []
+    for first, stop in spans:
+        if joined_ and first < joined_[-1][1]:
+            joined_[-1][1] = max(stop, joined_[-1][1])
+        else:
+            joined_.append([first, stop])
+    return [members[first:stop] for first, stop in joined_]
 
 
 def used_up(start: Array, end: Array, allowance: float, window: float | None) -> int | None:

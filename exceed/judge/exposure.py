@@ -2,27 +2,34 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import replace
 
 import numpy as np
 
 from exceed.core.findings import SEVERITIES, Event
-from exceed.core.intervals import Array
+from exceed.core.intervals import Array, Intervals, complement, normal
 from exceed.judge.compiled import Allowance, Compiled
-from exceed.judge.excursions import Index, group_by_window, used_up
+from exceed.judge.excursions import Index, Runs, enough_in_window, much_in_window
+from exceed.judge.scan import RuleScan
 
 
-def accumulate(rule: Compiled, events: list[Event], undecided: list[Event]) -> tuple[list[Event], list[Event]]:
+def accumulate(
+    rule: Compiled, events: list[Event], undecided: list[Event], scan: RuleScan
+) -> tuple[list[Event], list[Event]]:
     """What is left of a rule's excursions once its allowance, total or count is applied."""
     if rule.allowed:
-        return _allowed(rule, events), undecided
+        return _allowed(rule, events, scan.beyond_lines()), undecided
+    starts, ends = _spans(events)
     if rule.count is not None:
         least, _, window = rule.count
-        return _grouped(events, window, lambda group: _counted(group, least)), []
+        groups = enough_in_window(starts, _flights(events), window, least)
+        return [_as_one([events[i] for i in group], _counted(group, least)) for group in groups], []
     if rule.total is not None:
-        seconds, _, longest = rule.total
-        return _grouped(events, longest, lambda group: _totalled(group, seconds, longest)), []
+        seconds, _, window = rule.total
+        groups = much_in_window(starts, ends, _flights(events), window, seconds)
+        return [
+            _as_one([events[i] for i in group], _totalled(ends[group] - starts[group], seconds)) for group in groups
+        ], []
     return events, undecided
 
 
@@ -34,23 +41,12 @@ def _spans(events: list[Event]) -> tuple[Array, Array]:
     return np.array([event.start for event in events]), np.array([event.end for event in events])
 
 
-def _grouped(events: list[Event], window: float | None, make: Callable[[list[Event]], Event | None]) -> list[Event]:
-    if not events:
-        return []
-    groups = group_by_window(_spans(events)[0], _flights(events), window)
-    made = [make([events[index] for index in group]) for group in groups]
-    return [event for event in made if event is not None]
+def _counted(group: Index, least: int) -> str:
+    return f"{len(group)} excursions; an event from {least} on"
 
 
-def _counted(group: list[Event], least: int) -> Event | None:
-    return _as_one(group, f"{len(group)} excursions; an event from {least} on") if len(group) >= least else None
-
-
-def _totalled(group: list[Event], seconds: float, window: float | None) -> Event | None:
-    starts, ends = _spans(group)
-    if used_up(starts, ends, seconds, window) is None:
-        return None
-    return _as_one(group, f"{float(np.sum(ends - starts)):.1f} s in all; an event above {seconds:g} s")
+def _totalled(durations: Array, seconds: float) -> str:
+    return f"{float(np.sum(durations)):.1f} s in all; an event above {seconds:g} s"
 
 
 def _as_one(group: list[Event], note: str) -> Event:
@@ -70,23 +66,19 @@ def _beyond(event: Event) -> float:
     return (event.peak.value - event.limit.value) * (-1.0 if event.side == "below" else 1.0)
 
 
-def _allowed(rule: Compiled, events: list[Event]) -> list[Event]:
-    """Within every allowance an excursion is a near-limit note; the one that uses it up, and those after, are events.
+def _allowed(rule: Compiled, events: list[Event], lines: list[Runs]) -> list[Event]:
+    """Within every allowance an excursion is a near-limit note; the one that uses one up, and those after, are events.
 
-    Several allowances nest: an excursion draws on every one whose `up_to` it does not exceed, and beyond the furthest
-    it is an event at once.
+    Several allowances nest: `up_to 107 % for 20 s, up_to 115 % for 5 s` is 20 s beyond the limit, of which 5 s beyond
+    107 %. Beyond the furthest it is an event at once.
     """
     steps = sorted(rule.allowed, key=lambda step: step.share)
-    reached = [_reached(rule, event) for event in events]
-    over = [
-        _overdrawn(
-            step, events, [_covers(rule, step, value, event) for value, event in zip(reached, events, strict=True)]
-        )
-        for step in steps
-    ]
+    drawn = [[_drawn(event, beyond, lines[-1]) for event in events] for beyond in lines[:-1]]
+    over = [_overdrawn(step, events, draws) for step, draws in zip(steps, drawn, strict=True)]
     kept: list[Event] = []
     for number, event in enumerate(events):
-        covering = [step for step in steps if _covers(rule, step, reached[number], event)]
+        reached = _reached(rule, event)
+        covering = [step for step in steps if _covers(rule, step, reached, event)]
         spent = next((step for step, used in zip(steps, over, strict=True) if number in used), None)
         if not covering:
             kept.append(replace(event, notes=(*event.notes, "beyond what is allowed for any time")))
@@ -99,6 +91,13 @@ def _allowed(rule: Compiled, events: list[Event]) -> list[Event]:
                 replace(event, severity="advisory", limit_exceeded=False, task=task, notes=(*event.notes, note))
             )
     return kept
+
+
+def _drawn(event: Event, beyond: Runs, furthest: Runs) -> Intervals:
+    """The time that an excursion spent beyond a line, and not beyond the furthest one."""
+    mine = (beyond.end >= event.start) & (beyond.start <= event.end)
+    time = normal(beyond.start[mine], beyond.end[mine])
+    return complement(normal(furthest.start, furthest.end), time)
 
 
 def _reached(rule: Compiled, event: Event) -> float:
@@ -122,20 +121,27 @@ def _words(rule: Compiled, step: Allowance) -> str:
     return f"up to {bound} for {step.seconds:g} s within {span}"
 
 
-def _overdrawn(step: Allowance, events: list[Event], draws: list[bool]) -> set[int]:
+def _overdrawn(step: Allowance, events: list[Event], drawn: list[Intervals]) -> set[int]:
     """Which events find this allowance used up: the one that does it and, while it stays so, those after."""
-    drawing = [index for index, draw in enumerate(draws) if draw]
-    if step.within == "event":
-        return {index for index in drawing if events[index].duration > step.seconds}
     over: set[int] = set()
     flights = _flights(events)
-    for number in np.unique(flights):
-        members = [index for index in drawing if flights[index] == number]
-        starts, ends = _spans([events[index] for index in members])
-        for last in range(len(members)):
-            first = 0
-            if step.window is not None:
-                first = int(np.searchsorted(ends[: last + 1], ends[last] - step.window, side="right"))
-            if used_up(starts[first : last + 1], ends[first : last + 1], step.seconds, step.window) is not None:
-                over.add(members[last])
+    for index, own in enumerate(drawn):
+        if len(own) == 0:
+            continue
+        parts = [own]
+        if step.within != "event":
+            parts = [drawn[i] for i in range(index + 1) if flights[i] == flights[index]]
+        starts = np.concatenate([part.start for part in parts])
+        ends = np.concatenate([part.end for part in parts])
+        if step.window is not None:
+            # within a stretch the time in the window only grows, so its ends are enough
+            used = any(
+                float(np.sum(np.maximum(np.minimum(ends, at) - np.maximum(starts, at - step.window), 0.0)))
+                > step.seconds
+                for at in own.end
+            )
+        else:
+            used = float(np.sum(ends - starts)) > step.seconds
+        if used:
+            over.add(index)
     return over

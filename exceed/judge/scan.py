@@ -46,6 +46,7 @@ class RuleScan:
 
     begins: list[list[Edges]] = field(default_factory=list)  # one list a level
     ends: list[list[Edges]] = field(default_factory=list)
+    lines: list[tuple[list[Edges], list[Edges]]] = field(default_factory=list)  # one a line of the allowances
     band: tuple[list[Edges], list[Edges]] = field(default_factory=lambda: ([], []))
     breaks: list[Index] = field(default_factory=list)
     candidates: list[Index] = field(default_factory=list)
@@ -55,6 +56,10 @@ class RuleScan:
 
     def runs(self, level: int) -> Runs:
         return pair(self.begins[level], self.ends[level])
+
+    def beyond_lines(self) -> list[Runs]:
+        """Stretches beyond the limit and beyond each allowance's end."""
+        return [pair(*line) for line in self.lines]
 
     def release_band(self) -> Runs:
         return pair(*self.band)
@@ -68,6 +73,11 @@ class RuleScan:
             mine.extend(more)
         for mine, more in zip(self.ends, other.ends, strict=True):
             mine.extend(more)
+        if not self.lines:
+            self.lines = [([], []) for _ in other.lines]
+        for (begins, ends), (more_begins, more_ends) in zip(self.lines, other.lines, strict=True):
+            begins.extend(more_begins)
+            ends.extend(more_ends)
         self.band[0].extend(other.band[0])
         self.band[1].extend(other.band[1])
         self.breaks.extend(other.breaks)
@@ -171,6 +181,9 @@ def scan_rule(rule: Compiled, block: Block, uncertainty: float = 0.0) -> RuleSca
             begins, ends = where.edges(excess, live, crossing=not rule.discrete)
             scan.begins[index].append(begins)
             scan.ends[index].append(ends)
+    for line in rule.allowance_levels:
+        begins, ends = _Places(block, known).edges(rule.excess(value, rule.threshold(line, limit)), live, crossing=True)
+        scan.lines.append(([begins], [ends]))
     if np.any(release > 0.0) and (live & (lowest > -release))[core].any():
         begins, ends = _Places(block, known).edges(lowest + release, live, crossing=False)
         scan.band[0].append(begins)

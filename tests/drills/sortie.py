@@ -124,6 +124,11 @@ def more(column: str, values: Callable[[Array], Any]) -> Change:
     return change
 
 
+def level(column: str, value: float) -> Change:
+    """A column more that stays at one value, a little shaken."""
+    return more(column, lambda time: value * (1.0 - 0.0005 * (1.0 + np.sin(1.3 * time))))
+
+
 def without(*names: str) -> Change:
     def change(_time: Array, columns: Columns) -> None:
         for name in names:

@@ -27,6 +27,7 @@ from drills.sortie import (
     WHEELS,
     Change,
     held,
+    level,
     more,
     pulse,
     state,
@@ -72,11 +73,6 @@ def cosine(value: float, limit: float, base: float, width: float = 2.0, middle: 
     """What a bump that `pulse` makes on a channel at `base` gives."""
     half = width * acos(2.0 * (limit - base) / (value - base) - 1.0) / (2.0 * pi)
     return {"peak": value, "limit": limit, "start": middle - half, "end": middle + half}
-
-
-def level(column: str, value: float) -> Change:
-    """A column more that stays at one value, a little shaken."""
-    return more(column, lambda time: value * (1.0 - 0.0005 * (1.0 + np.sin(1.3 * time))))
 
 
 NZ_BASE = 1.0 + 0.004 * -0.966  # sin(2.1 * 140)

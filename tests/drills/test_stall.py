@@ -40,7 +40,8 @@ def test_a_condition_that_rests_on_a_capped_method_caps_the_event(tmp_path: Path
         tmp_path, [state(GEAR, "DOWN", 140, 500)], facts={"speeds": {"gear_operating": "90 KIAS"}}, columns=USUAL
     )
     (event,) = events(found, "gear-operating")
-    assert (event["certainty"], event["levels"][0]["probability"]) == ("possible", 0.4999)
+    assert event["certainty"] == "possible"
+    assert 0.49 < event["levels"][0]["probability"] < 0.5
 
 
 def test_a_load_factor_of_a_level_turn_is_possible_at_most_and_clears_nothing(tmp_path: Path) -> None:
