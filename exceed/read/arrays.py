@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 from exceed.core.recording import Array
 from exceed.read.cells import is_missing
 
+LARGE = 200_000  # rows
+
 
 def floats(column: Any) -> tuple[Array, int]:
     """(n,) float64 with NaN for empty cells, and how many are empty. Takes any arrow number column."""
@@ -27,6 +29,14 @@ def floats(column: Any) -> tuple[Array, int]:
         out[at : at + size] = chunk.to_numpy(zero_copy_only=False)
         at += size
     return out, int(column.null_count)
+
+
+def give_back(rows: int) -> None:
+    """The parser's pool keeps what it no longer needs; of a large log that is worth returning, column by column."""
+    if rows > LARGE:
+        import pyarrow as pa
+
+        pa.default_memory_pool().release_unused()
 
 
 def numbers_of_text(

@@ -8,7 +8,7 @@ from typing import Any
 
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Clock, Recording, Rejected, Unresolved, frozen
-from exceed.read import probe, settle
+from exceed.read import arrays, probe, settle
 from exceed.read.container import fail
 from exceed.read.evidence import Settled
 from exceed.read.instants import Instants, instants
@@ -76,22 +76,15 @@ def load(
         chosen = sorted([*chosen, *witnesses], key=lambda column: column.index)
     parsed = _parse(survey, chosen)
     count = parsed.rows
+    arrays.give_back(count)
     if count == 0:
         raise fail(survey.path, "holds no rows of data", do="check that the export is complete")
     raws, notes, rejected_cells = raw_channels(survey, chosen, parsed)
     time = instants(survey, parsed, raws)
     parsed.columns.clear()
-    _give_back(parsed.rows)
+    arrays.give_back(parsed.rows)
     settled = settle.settle(survey, raws, time, known)
     return _recording(survey, wanted, parsed, settled, time, [*notes], rejected_cells, ranges or {})
-
-
-def _give_back(rows: int) -> None:
-    """The parser's pool keeps what it no longer needs; after a large log that is worth returning."""
-    if rows > 200_000:
-        import pyarrow as pa
-
-        pa.default_memory_pool().release_unused()
 
 
 def choose(survey: Survey, wanted: set[str] | frozenset[str] | None) -> tuple[list[Column], list[Column]]:

@@ -12,7 +12,7 @@ from exceed.read.container import Digest, Source, Utf8Stream, fail
 from exceed.read.table import Layout, split
 
 BLOCK = 4 << 20
-SEGMENT = 64 << 20
+SEGMENT = 32 << 20
 
 
 @dataclass(slots=True)
@@ -103,7 +103,8 @@ def _segments(location: str) -> Iterator[Any]:
     """A plain file in pieces of whole lines: the parser would else hold much of a large file in flight at once."""
     import pyarrow as pa
 
-    with pa.memory_map(location) as file:
+    # read, not mapped: pages of a mapped file count as this process's memory
+    with pa.OSFile(location) as file:
         size = file.size()
         begin = 0
         while begin < size:
@@ -115,14 +116,9 @@ def _segments(location: str) -> Iterator[Any]:
                     end += found + 1
                     break
                 end = min(end + len(look), size)
-            yield pa.BufferReader(_view(file, begin, end))
+            file.seek(begin)
+            yield pa.BufferReader(file.read_buffer(end - begin))
             begin = end
-
-
-def _view(file: Any, begin: int, end: int) -> Any:
-    """A piece of a mapped file, not copied."""
-    file.seek(begin)
-    return file.read_buffer(end - begin)
 
 
 class Reader:

@@ -62,6 +62,7 @@ def raw_channels(
                 values = values if values.flags.writeable else values.copy()
                 values[-1] = np.nan
             pieces.append(values)
+            arrays.give_back(len(values))
             if cells is not None:
                 name = survey.columns[place].name
                 odd.append((survey.columns[place], cells[0], cells[1], name))
