@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 from exceed.ledger import stretch as st
@@ -19,9 +19,9 @@ def record(ledger: Ledger, summary: Row) -> Row:
 
     Returns a dict: `scan` (its key, None where nothing was added), `replaces` (the scan whose judgements the newest
     ones here replace, or None), `recordings` {added, known, judged_anew}, `flights` {added, known, longer, clashes},
-    `events` {added, known}, `inspections` {added, known}, `changes` (list of added, removed, changed events of
-    judgements anew: kind, event, rule, title, registration, start, path, difference, decision), `left_out`
-    (path, reason).
+    `events` {added, known, standing: of earlier judgements, by rules that were not assessed this time},
+    `inspections` {added, known}, `changes` (added, removed, changed events of judgements anew: kind, event, rule,
+    title, severity, registration, start, start_s, path, difference, decision), `left_out` (path, reason).
     """
     return ledger.writing(lambda table: _Scan(table, summary).run())
 
@@ -60,7 +60,7 @@ class _Scan:
             "replaces": None,
             "recordings": {"added": 0, "known": 0, "judged_anew": 0},
             "flights": {"added": 0, "known": 0, "longer": 0, "clashes": []},
-            "events": {"added": 0, "known": 0},
+            "events": {"added": 0, "known": 0, "standing": 0},
             "changes": [],
             "left_out": [],
         }
@@ -129,20 +129,43 @@ class _Scan:
             self.table.add("copies", recording_id=recording_id, sha256=sha256)
 
     def _same(self, history: Sequence[Row], rules: str, outcome: str) -> Row | None:
-        """The judgement that says just this and still holds for at least one of its rules."""
+        """The judgement that says just this and still stands."""
         holds: dict[str, int] = {}
         for judgement in history:
+            able = _able(json.loads(judgement["assessment"]))
             for rule in _rules(judgement):
-                holds[rule] = judgement["id"]
-        current = set(holds.values()) or {judgement["id"] for judgement in history[-1:]}
+                # one that could not assess a rule does not take the place of one that could
+                if rule in able or rule not in holds:
+                    holds[rule] = judgement["id"]
         for judgement in reversed(history):
-            if judgement["id"] not in current and judgement is not history[-1]:
+            if judgement["rules_sha256"] != rules or judgement["result_sha256"] != outcome:
                 continue
-            if judgement["rules_sha256"] == rules and judgement["result_sha256"] == outcome:
-                before = json.loads(judgement["judged_with"])
-                if not st.documents_changed(before, self.summary["judged_with"]):
-                    return judgement
+            if st.documents_changed(json.loads(judgement["judged_with"]), self.summary["judged_with"]):
+                continue
+            if judgement is history[-1] or self._stands(judgement, holds):
+                return judgement
         return None
+
+    def _stands(self, judgement: Row, holds: Mapping[str, int]) -> bool:
+        """Has no later judgement found anything else by the rules that this one assessed?"""
+        said = self._said(judgement["id"])
+        for rule in _able(json.loads(judgement["assessment"])):
+            holder = holds[rule]
+            if holder != judgement["id"] and self._said(holder).get(rule) != said.get(rule):
+                return False
+        return True
+
+    def _said(self, judgement: int) -> dict[str, list[tuple[str, str]]]:
+        """What a judgement found, by rule: ids, and the finding where it is not one that another download shows."""
+        found: dict[str, list[tuple[str, str]]] = {}
+        for sql in (
+            "SELECT e.rule, e.event_id, e.kind, e.body FROM events e WHERE e.judgement_id = :id ORDER BY e.event_id",
+            "SELECT e.rule, s.event_id, '' AS kind, '' AS body FROM sightings s JOIN events e ON e.id = s.event_row "
+            "WHERE s.judgement_id = :id ORDER BY s.event_id",
+        ):
+            for row in self.table.rows(sql, id=judgement):
+                found.setdefault(row["rule"], []).append((row["event_id"], row["kind"] + row["body"]))
+        return found
 
     def _known_events(self, recording: Row, recording_id: int) -> None:
         """Find this summary's events among those that are there."""
@@ -178,18 +201,25 @@ class _Scan:
         for key in ("added", "known", "longer"):
             self.result["flights"][key] += counts[key]
         self.result["flights"]["clashes"] += [{"path": recording["path"], "flight": one} for one in counts["clashes"]]
-        if history and history[-1]["registration"] != recording["registration"] and recording["registration"]:
-            self._renamed(recording["registration"], placed)
+        if history and recording["registration"]:
+            was = next((one["registration"] for one in reversed(history) if one["registration"]), None)
+            self._rename(was, recording["registration"], placed)
         self._events(recording, row, judgement, rules, placed, anew=bool(history))
 
-    def _renamed(self, registration: str, placed: Sequence[Row]) -> None:
-        """The same recording was judged as another aeroplane's: its flights are that one's from now on."""
+    def _rename(self, was: str | None, now: str, placed: Sequence[Row]) -> None:
+        """The same recording is judged as another aeroplane's now: its flights go there, unless a person moved them."""
+        before, after = st.registration_key(was), st.registration_key(now)
+        if before == after:
+            return
         for flight in {one["flight_id"] for one in placed}:
-            self.table.add(
-                "reassignments", flight_id=flight, registration=registration,
-                reg_key=st.registration_key(registration), by_name=None,
-                note="the recording was judged anew under this registration", added_at=utc_now(),
-            )  # fmt: skip
+            owner = self.table.one(
+                "SELECT reg_key FROM reassignments WHERE flight_id = :id ORDER BY id DESC", id=flight
+            ) or self.table.one("SELECT reg_key FROM flights WHERE id = :id", id=flight)
+            if owner is not None and owner["reg_key"] == before:
+                self.table.add(
+                    "reassignments", flight_id=flight, registration=now, reg_key=after, by_name=None,
+                    note="the recording was judged anew under this registration", added_at=utc_now(),
+                )  # fmt: skip
 
     def _events(
         self,
@@ -231,10 +261,14 @@ class _Scan:
             self.result["events"]["known" if fits else "added"] += 1
             if anew and not fits:
                 self._change("added", body, recording["path"], "", None)
-        able = {one["rule"] for one in recording["assessment"] if one["flight"] is None and one["assessed_s"] > 0.0}
+        able = _able(recording["assessment"])
         for old in own:
-            # a rule that could not be assessed this time takes nothing back
-            if old["id"] not in matched and old["rule"] in able:
+            if old["id"] in matched:
+                continue
+            # a rule that was not applied or could not be assessed this time takes nothing back
+            if old["rule"] not in able:
+                self.result["events"]["standing"] += 1
+            else:
                 self._succeed(old, None, judgement, "removed", "")
                 self._change("removed", json.loads(old["body"]), recording["path"], "", old)
 
@@ -313,6 +347,11 @@ def _kinds(recording: Row) -> Iterable[tuple[str, Row]]:
 
 def _events(recording: Row) -> Iterable[Row]:
     return (body for _, body in _kinds(recording))
+
+
+def _able(assessment: Sequence[Row]) -> set[str]:
+    """The rules that were assessed for some of the time."""
+    return {one["rule"] for one in assessment if one["flight"] is None and one["assessed_s"] > 0.0}
 
 
 def _rules(judgement: Row) -> set[str]:

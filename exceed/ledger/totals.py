@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import json
 from collections import defaultdict
-from dataclasses import dataclass, field
+from collections.abc import Iterable
+from dataclasses import dataclass, field, replace
 
 from exceed.core.findings import SEVERITIES
 from exceed.ledger.flights import NEWEST
 from exceed.ledger.history import DECIDED_AWAY, Decisions, Filters, Owners, event_rows, open_event
 from exceed.ledger.store import Row, Table
+from exceed.ledger.stretch import SAME_TAKE_OFF
 from exceed.report.show import iso_utc
 
 Span = tuple[float, float]
@@ -28,6 +30,7 @@ class Flown:
     numbered: bool
     apart: bool
     recordings: tuple[str, ...]
+    take_off_seen: bool = True
 
     @property
     def start(self) -> float | None:
@@ -69,9 +72,38 @@ def flown(table: Table, owners: Owners) -> list[Flown]:
                 owners.keys[flight], registration, key, tuple(spans), length, max(landings, default=None),
                 any(row["flight_number"] is not None for row in rows), bool(rows[0]["apart"]),
                 tuple(dict.fromkeys(row["path"] for row in rows)),
+                any(row["take_off_seen"] for row in rows),
             )
         )  # fmt: skip
     return sorted(found, key=lambda one: (one.start is None, one.start or 0.0, one.key))
+
+
+def distinct(flights: Iterable[Flown]) -> list[Flown]:
+    """Flights without doubles: of one aeroplane's that share time with the same take-off, only one is counted.
+
+    Two rows of one flight come about where it was first known without a registration, or was reassigned.
+    """
+    found: list[Flown] = []
+    for one in sorted(flights, key=lambda one: (one.start is None, one.start or 0.0)):
+        twin = next((other for other in reversed(found[-3:]) if _same_flight(other, one)), None)
+        if twin is None:
+            found.append(one)
+            continue
+        spans = union([*twin.spans, *one.spans])
+        known = [row.landings for row in (twin, one) if row.landings is not None]
+        found[found.index(twin)] = replace(
+            twin, spans=tuple(spans), length=sum(last - first for first, last in spans),
+            landings=max(known, default=None), numbered=twin.numbered or one.numbered,
+        )  # fmt: skip
+    return found
+
+
+def _same_flight(one: Flown, other: Flown) -> bool:
+    if not one.reg_key or one.reg_key != other.reg_key or one.apart or other.apart or not (one.spans and other.spans):
+        return False
+    shared = any(min(a[1], b[1]) > max(a[0], b[0]) for a in one.spans for b in other.spans)
+    seen = one.take_off_seen and other.take_off_seen
+    return shared and not (seen and abs(one.spans[0][0] - other.spans[0][0]) > SAME_TAKE_OFF)
 
 
 def flight_list(table: Table, filters: Filters) -> list[Row]:
@@ -116,7 +148,8 @@ class Airframe:
 
     def landings_made(self, since: float, until: float | None = None) -> int:
         high = until if until is not None else float("inf")
-        return sum(one.landings or 0 for one in self.flights if one.end is not None and since <= one.end <= high)
+        flights = distinct(self.flights)
+        return sum(one.landings or 0 for one in flights if one.end is not None and since <= one.end <= high)
 
     def total(self, name: str, at: float | None = None) -> float | None:
         """Total `hours` or `landings` at an instant (None: now), from the newest total set before it.
@@ -143,7 +176,7 @@ class Airframe:
 
     def flights_after(self, moment: float) -> int:
         """Flights that began after an instant."""
-        return sum(one.start is not None and one.start > moment for one in self.flights)
+        return sum(one.start is not None and one.start > moment for one in distinct(self.flights))
 
 
 def airframes(table: Table, owners: Owners) -> dict[str, Airframe]:
@@ -194,7 +227,7 @@ def totals(table: Table, filters: Filters) -> list[Row]:
 
 def _empty(frame: Airframe, filters: Filters) -> Row:
     """An airframe's row, its events not yet counted."""
-    flights = [one for one in frame.flights if filters.in_time(one.start, one.end)]
+    flights = distinct(one for one in frame.flights if filters.in_time(one.start, one.end))
     part = Airframe(frame.registration, frame.key, flights)
     undated = part.undated()
     numbered = [one for one in flights if one.numbered]

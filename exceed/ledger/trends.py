@@ -8,7 +8,7 @@ from datetime import UTC, datetime
 from exceed.core.findings import CERTAINTIES, SEVERITIES
 from exceed.ledger.history import DECIDED_AWAY, Decisions, Filters, Owners, at_least, event_rows
 from exceed.ledger.store import Row, Table
-from exceed.ledger.totals import Airframe, flown
+from exceed.ledger.totals import Airframe, Flown, distinct, flown
 
 CONFIDENCE = 0.95
 # under the table and on the page
@@ -70,7 +70,7 @@ def trends(table: Table, filters: Filters) -> list[Row]:
         decision = decisions.of(row, owners)
         gone = decision is not None and decision["as"] in DECIDED_AWAY and not decision["worse_since"]
         (away if gone else events)[month] += 1
-    flights: dict[str | None, list] = defaultdict(list)  # type: ignore[type-arg]
+    flights: dict[str | None, list[Flown]] = defaultdict(list)
     for one in flown(table, owners):
         if filters.key in (None, one.reg_key) and filters.in_time(one.start, one.end):
             flights[None if one.start is None else month_of(one.start)].append(one)
@@ -84,12 +84,12 @@ def trends(table: Table, filters: Filters) -> list[Row]:
     return found
 
 
-def _row(month: str | None, events: int, away: int, flights: list) -> Row:  # type: ignore[type-arg]
+def _row(month: str | None, events: int, away: int, flights: list[Flown]) -> Row:
     groups: dict[str, Airframe] = {}
     for one in flights:
         groups.setdefault(one.reg_key, Airframe(one.registration, one.reg_key)).flights.append(one)
     hours = sum(group.hours_flown() + sum(one.length for one in group.undated()) / 3600.0 for group in groups.values())
-    number = sum(one.numbered for one in flights)
+    number = sum(one.numbered for one in distinct(flights))
     return {
         "period": month or "undated",
         "events": events,

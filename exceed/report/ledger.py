@@ -265,6 +265,11 @@ def render_judgements(rows: Sequence[Dict], screen: Screen) -> str:
     return _text([*lines, count(len(rows), "judgement")])
 
 
+def _news(result: Dict) -> list[Any]:
+    """What of a scan's result somebody should look at."""
+    return [*result["changes"], *result["flights"]["clashes"], *result["left_out"], *[1] * result["events"]["standing"]]
+
+
 def recorded_lines(result: Dict, place: str, *, quiet: bool = False) -> list[str]:
     """What a scan added to the ledger, for stderr; `quiet` leaves only what somebody should look at."""
     made, flights, events, work = (result[key] for key in ("recordings", "flights", "events", "inspections"))
@@ -277,7 +282,7 @@ def recorded_lines(result: Dict, place: str, *, quiet: bool = False) -> list[str
         + f"; {count(work['added'], 'inspection')} added, {work['known']} known",
     ]
     if quiet:
-        lines = [f"ledger {place}:"] if result["changes"] or flights["clashes"] or result["left_out"] else []
+        lines = [f"ledger {place}:"] if len(_news(result)) else []
     elif result["replaces"] is not None:
         lines.append(f"  this replaces judgements of scan {result['replaces']}")
     for one in result["changes"]:
@@ -293,5 +298,8 @@ def recorded_lines(result: Dict, place: str, *, quiet: bool = False) -> list[str
             f"  {one['path']}: a flight overlaps flight {one['flight']} but took off at another time: "
             "is a clock or a registration wrong? It is counted as a flight of its own"
         )
+    if events["standing"]:
+        stand = count(events["standing"], "event")
+        lines.append(f"  {stand} of earlier judgements stand: their rules were not applied or not assessed this time")
     lines += [f"  {one['path']}: {one['reason']}" for one in result["left_out"]]
     return lines

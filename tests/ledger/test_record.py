@@ -65,7 +65,7 @@ def test_the_same_content_twice_adds_no_row_at_all(book):
     assert row_counts(book) == before
     assert result["scan"] is None
     assert result["recordings"] == {"added": 0, "known": 1, "judged_anew": 0}
-    assert result["events"] == {"added": 0, "known": 1}
+    assert result["events"] == {"added": 0, "known": 1, "standing": 0}
     assert result["inspections"] == {"added": 0, "known": 1}
 
 
@@ -98,7 +98,7 @@ def test_a_download_that_overlaps_an_earlier_one_adds_only_what_is_new(book, shi
     result = record(book, summary(later))
     assert result["flights"]["added"] == 1
     assert result["flights"]["known"] == 1
-    assert result["events"] == {"added": 1, "known": 1}
+    assert result["events"] == {"added": 1, "known": 1, "standing": 0}
     assert [found["severity"] for found in all_events(book)] == ["caution", "warning"]
     (total,) = all_totals(book)
     assert total["flights"] == 2
@@ -256,7 +256,10 @@ def test_a_rule_that_can_no_longer_be_assessed_takes_nothing_back(book):
     record(book, newer(event(812.13, 812.94), rules="rules 1"))
     result = record(book, newer(unassessed=["load-factor-high"]))
     assert result["changes"] == []
+    assert result["events"]["standing"] == 1
     assert len(all_events(book)) == 1
+    # nor does it stand between the judgement that could and the same one again
+    assert record(book, newer(event(812.13, 812.94), rules="rules 1"))["scan"] is None
 
 
 def test_going_back_to_older_rules_is_a_judgement_again(book):
@@ -345,6 +348,24 @@ def test_the_same_recording_under_another_registration_moves_its_flight(book):
     record(book, summary(one_sortie(registration="ZZ-NMC"), rules="rules 2"))
     assert [row["registration"] for row in all_totals(book) if row["flights"]] == ["ZZ-NMC"]
     assert [row["registration"] for row in all_events(book)] == ["ZZ-NMC"]
+
+
+def test_a_recording_judged_without_its_registration_in_between_stays_its_aeroplanes(book):
+    record(book, summary(one_sortie()))
+    (row,) = book.reading(lambda table: flight_list(table, Filters()))
+    acts.reassign(book, row["id"], "ZZ-NMC", "A. Miller")
+    record(book, summary(one_sortie(registration=None), rules="rules 2"))
+    record(book, summary(one_sortie(), rules="rules 3"))
+    assert [row["registration"] for row in all_events(book)] == ["ZZ-NMC"]  # a person said so
+
+
+def test_a_flight_known_first_without_a_registration_is_not_counted_twice(book):
+    record(book, summary(one_sortie(registration=None)))
+    record(book, summary(recording("other.csv", flights=[flight(100.0, 3700.0)])))
+    assert sorted(row["flights"] for row in all_totals(book)) == [1, 1]
+    record(book, summary(one_sortie(), rules="rules 2"))
+    (row,) = [row for row in all_totals(book) if row["registration"] == "ZZ-NMA"]
+    assert (row["flights"], row["landings"], row["flight_h"]) == (1, 1, 1.0)
 
 
 def test_a_scan_that_fails_in_the_middle_leaves_nothing(book):

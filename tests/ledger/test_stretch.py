@@ -115,3 +115,43 @@ def test_writers_at_once_take_turns_on_either_database(place):
 )
 def test_registrations_compare_by_letters_and_digits(one, other):
     assert stretch.registration_key(one) == stretch.registration_key(other)
+
+
+RULES = ("load-factor-high", "never-exceed")
+FOUND = st.tuples(st.sampled_from(RULES), st.sampled_from([100.0, 300.0]), st.sampled_from(["caution", "warning"]))
+JUDGEMENTS = st.tuples(
+    st.sampled_from([RULES, RULES[:1], RULES[1:]]),  # rules applied
+    st.sampled_from([(), RULES[:1]]),  # of these, not assessed
+    st.lists(FOUND, max_size=3, unique_by=lambda row: row[:2]),
+    st.sampled_from(["rules 1", "rules 2"]),
+)
+
+
+def judged(judgement):
+    applied, lost, rows, rules = judgement
+    able = [rule for rule in applied if rule not in lost]
+    events = [event(start, start + 1.0, rule=rule, severity=severity) for rule, start, severity in rows if rule in able]
+    return able, summary(recording("a.csv", events=events, rules=applied, unassessed=lost), rules=f"{rules} {applied}")
+
+
+@settings(deadline=None, max_examples=25)
+@given(st.lists(JUDGEMENTS, min_size=1, max_size=6))
+@example([(RULES, (), [(RULES[0], 100.0, "caution")], "1"), (RULES[:1], (), [], "1"),
+          (RULES, (), [(RULES[0], 100.0, "caution")], "1")])  # fmt: skip
+def test_what_stands_is_what_the_newest_judgement_that_could_assess_a_rule_found(judgements):
+    stands: dict[str, list[tuple[float, str]]] = {}
+    with (
+        tempfile.TemporaryDirectory() as folder,
+        open_ledger(f"sqlite:///{Path(folder) / 'ledger.sqlite'}", create=True) as book,
+    ):
+        for judgement in judgements:
+            able, made = judged(judgement)
+            record(book, made)
+            assert record(book, made)["scan"] is None
+            for rule in able:
+                found = [row for row in made["recordings"][0]["events"] if row["rule"] == rule]
+                stands[rule] = sorted((row["start_s"], row["severity"]) for row in found)
+        events, _ = book.reading(lambda table: history.events(table, Filters()))
+        for rule, expected in stands.items():
+            assert sorted((row["start_s"], row["severity"]) for row in events if row["rule"] == rule) == expected
+        assert {row["rule"] for row in events} <= set(stands)
