@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -12,7 +12,6 @@ from exceed.read.container import Digest, Source, Utf8Stream, fail
 from exceed.read.table import Layout, split
 
 BLOCK = 4 << 20
-SEGMENT = 32 << 20
 
 
 @dataclass(slots=True)
@@ -99,28 +98,6 @@ def mendable(stray: Sequence[str], layout: Layout) -> bool:
     return False
 
 
-def _segments(location: str) -> Iterator[Any]:
-    """A plain file in pieces of whole lines: the parser would else hold much of a large file in flight at once."""
-    import pyarrow as pa
-
-    # read, not mapped: pages of a mapped file count as this process's memory
-    with pa.OSFile(location) as file:
-        size = file.size()
-        begin = 0
-        while begin < size:
-            end = min(begin + SEGMENT, size)
-            while end < size:
-                look = file.read_at(1 << 16, end)
-                found = max(look.find(b"\n"), look.find(b"\r") if b"\n" not in look else -1)
-                if found >= 0:
-                    end += found + 1
-                    break
-                end = min(end + len(look), size)
-            file.seek(begin)
-            yield pa.BufferReader(file.read_buffer(end - begin))
-            begin = end
-
-
 class Reader:
     """One text log, read as often as needed. Types: column -> number, text, stamp, stamp_zone or time."""
 
@@ -181,14 +158,16 @@ class Reader:
             return "skip"
 
         stream: Any = None
-        handles: Iterable[Any]
+        handle: Any
+        skip = layout.skip
         if self.data is not None:
-            handles, first_skip = [pa.BufferReader(self.data)], 0
+            handle, skip = pa.BufferReader(self.data), 0
         elif self.source.direct and rewriter(layout, mend) is None:
-            handles, first_skip = _segments(self.source.location), layout.skip
+            # read, not mapped: pages of a mapped file count as this process's memory
+            handle = pa.OSFile(self.source.location)
         else:
             stream = Utf8Stream(self.source, rewriter(layout, mend))
-            handles, first_skip = [pa.PythonFile(stream, mode="r")], layout.skip
+            handle = pa.PythonFile(stream, mode="r")
         convert = arrow_csv.ConvertOptions(
             column_types={str(k): kinds[kind] for k, kind in types.items()},
             include_columns=[str(k) for k in types],
@@ -197,22 +176,12 @@ class Reader:
             decimal_point=layout.decimal if layout.decimal != layout.delimiter else ".",
             check_utf8=False,
         )
-        names = [str(k) for k in range(layout.width)]
-        tables: list[Any] = []
+        reading = arrow_csv.ReadOptions(
+            column_names=[str(k) for k in range(layout.width)], skip_rows=skip, block_size=BLOCK
+        )
+        parsing = arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven)
         try:
-            for handle in handles:
-                reading = arrow_csv.ReadOptions(
-                    column_names=names, skip_rows=0 if tables else first_skip, block_size=BLOCK
-                )
-                parsing = arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven)
-                try:
-                    tables.append(arrow_csv.read_csv(handle, reading, parsing, convert))
-                except pa.ArrowInvalid as error:
-                    # a last piece of nothing but line ends
-                    if not (tables and "Empty CSV" in str(error)):
-                        raise
-            table = pa.concat_tables(tables)
-            tables.clear()
+            table = arrow_csv.read_csv(handle, reading, parsing, convert)
         except pa.ArrowInvalid as error:
             if stream is not None and stream.error is not None:
                 raise stream.error from error
