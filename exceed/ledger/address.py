@@ -25,6 +25,7 @@ class Address:
     url: URL
     shown: str
     file: Path | None
+    default: bool = False
 
 
 def data_folder(environment: Mapping[str, str] | None = None) -> Path:
@@ -39,7 +40,7 @@ def address(text: str) -> Address:
     """`default` or a URL as the place of a ledger. Raises UsageError, which never repeats a password."""
     if text == "default":
         file = data_folder() / FILE_NAME
-        return Address(URL.create("sqlite", database=str(file)), str(file), file)
+        return Address(URL.create("sqlite", database=str(file)), str(file), file, default=True)
     if "://" not in text:
         raise UsageError.one("--ledger", f"'{hidden(text)}' is no URL", _EXPECTED, f"write 'sqlite:///{hidden(text)}'")
     try:

@@ -20,7 +20,7 @@ from sqlalchemy import Connection, Engine, create_engine, event, text
 from sqlalchemy.exc import NoSuchModuleError, SQLAlchemyError
 from sqlalchemy.pool import NullPool
 
-from exceed.errors import OutputError, UsageError
+from exceed.errors import OutputError, Problem, UsageError
 from exceed.ledger.address import Address, address
 from exceed.ledger.failures import busy, damaged, failure, plain
 from exceed.ledger.schema import APPLICATION_ID, COLUMNS, DIALECTS, MIGRATIONS, SERVER_SCHEMA
@@ -203,10 +203,9 @@ def _look(where: Address, file: Path, create: bool) -> None:
             raise UsageError.one(where.shown, "is a folder", "a file", "add a file name")
         if not file.exists() or file.stat().st_size == 0:
             if not create:
-                raise UsageError.one(where.shown, "there is no ledger here", "a ledger that was begun",
-                                     "begin one: exceed scan PATH --ledger URL")  # fmt: skip
+                raise _no_ledger(where)
             if not file.parent.exists():
-                if where.url.database != str(file) or file.name != "exceed-ledger.sqlite":
+                if not where.default:
                     raise FileNotFoundError(2, "the folder does not exist")
                 file.parent.mkdir(parents=True, mode=0o700)
             _private(file)
@@ -222,6 +221,12 @@ def _look(where: Address, file: Path, create: bool) -> None:
         )
     if int.from_bytes(head[68:72], "big") not in (0, APPLICATION_ID):
         raise UsageError.one(where.shown, "is an SQLite file of another program", "a ledger", "choose another file")
+
+
+def _no_ledger(where: Address) -> UsageError:
+    place = "default" if where.default else "URL"
+    do = f"begin one: exceed scan PATH --ledger {place}"
+    return UsageError(Problem(where.shown, "there is no ledger here", "a ledger that was begun", do))
 
 
 def _private(file: Path) -> None:
@@ -294,8 +299,7 @@ def _upgrade(ledger: Ledger, create: bool) -> None:
 
     found = _fits(ledger.where, ledger.reading(check))
     if found == 0 and not create:
-        raise UsageError.one(ledger.where.shown, "there is no ledger here", "a ledger that was begun",
-                             "begin one: exceed scan PATH --ledger URL")  # fmt: skip
+        raise _no_ledger(ledger.where)
     if found < len(MIGRATIONS):
         if not server:
             _into_wal(ledger)

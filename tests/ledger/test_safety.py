@@ -66,6 +66,23 @@ def test_scans_that_write_at_once_wait_for_one_another(tmp_path):
     assert len(paths) == 24
 
 
+def test_a_backup_while_others_write_is_whole(tmp_path):
+    writer_now = subprocess.Popen([sys.executable, WRITER, "many", str(tmp_path), "p", "12", "0"])
+    taken = 0
+    while writer_now.poll() is None:
+        if not (tmp_path / "committed.txt").exists() or not (tmp_path / "committed.txt").read_text():
+            continue
+        folder = tmp_path / f"backup-{taken}"
+        folder.mkdir()
+        with open_ledger(f"sqlite:///{tmp_path / 'ledger.sqlite'}") as book:
+            book.backup(folder / "ledger.sqlite")
+        (folder / "committed.txt").write_text("")
+        assert holds(folder)[0]
+        taken += 1
+    assert writer_now.returncode == 0
+    assert taken
+
+
 def test_one_scan_twice_at_once_is_one(tmp_path):
     crowd = [subprocess.Popen([sys.executable, WRITER, "many", str(tmp_path), "same", "5", "0"]) for _ in range(2)]
     assert [one.wait(timeout=60) for one in crowd] == [0, 0]

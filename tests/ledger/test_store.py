@@ -32,6 +32,8 @@ def test_the_default_lies_in_the_users_data_folder(tmp_path, monkeypatch):
     assert data_folder({"XDG_DATA_HOME": "/d"}) == Path("/d/exceed")
     assert data_folder({"XDG_DATA_HOME": "d"}) == data_folder({}) == Path.home() / ".local/share/exceed"
     monkeypatch.setenv("XDG_DATA_HOME", str(tmp_path / "new" / "data"))
+    with pytest.raises(UsageError, match="begin one: exceed scan PATH --ledger default"):
+        open_ledger("default")
     with open_ledger("default", create=True):
         pass
     file = tmp_path / "new" / "data" / "exceed" / "exceed-ledger.sqlite"
