@@ -30,7 +30,7 @@ if TYPE_CHECKING:
     from exceed.prepare import LoadedFleet, Run
 
 # s: to reach the scheduler, to wait for a first worker, between looks at the cluster while nothing comes in
-CONNECT = 10.0
+CONNECT = 5.0
 LOOK = 2.0
 # s without any worker, or without the scheduler, after which the rest is given up
 PATIENCE = 60.0
@@ -63,7 +63,8 @@ def each_on_cluster(
         work = assess
     _installed()
     logs = list(logs)
-    placed, absolute = [_absolute(log) for log in logs], _absolute_run(run)
+    placed = [_absolute(log) for log in logs]
+    absolute = _absolute_run(run, logs, placed)
     with _quiet(), _client(address) as client:
         _check(client, placed, address)
         if not logs:
@@ -107,7 +108,8 @@ def _client(address: str) -> Iterator[Any]:
     from distributed.comm import connect
 
     async def knock() -> None:
-        comm = await connect(address, timeout=CONNECT)
+        # someone who takes the call and says nothing is not covered by the library's own timeout
+        comm = await asyncio.wait_for(connect(address, timeout=CONNECT), 1.5 * CONNECT)
         await comm.close()
 
     try:
@@ -115,7 +117,7 @@ def _client(address: str) -> Iterator[Any]:
         asyncio.run(knock())
         client = Client(address, timeout=CONNECT, set_as_default=False)
     except (OSError, ValueError, TypeError, RuntimeError) as error:
-        text = " ".join(str(error).split())[:160]
+        text = " ".join(str(error).split())[:160] or "no answer"
         raise UsageError(
             Problem(
                 "--dask",
@@ -193,14 +195,17 @@ def _absolute(log: LogPath) -> LogPath:
     return log if is_uri(log.location) else replace(log, location=os.path.abspath(log.location))
 
 
-def _absolute_run(run: Run) -> Run:
+def _absolute_run(run: Run, logs: Sequence[LogPath], placed: Sequence[LogPath]) -> Run:
+    """The run with the folders of logs, and of fleet files, as another process finds them."""
+
     def fleet(one: LoadedFleet) -> LoadedFleet:
         return replace(one, fleet=one.fleet.model_copy(update={"path": os.path.abspath(one.fleet.path)}))
 
-    # the folder of a log, as `Run.fleet_of` looks for it
-    folders = {
-        folder if is_uri(folder) else str(Path(os.path.abspath(folder))): path for folder, path in run.by_folder.items()
-    }
+    folders = {}
+    for log, there in zip(logs, placed, strict=True):
+        path = run.by_folder.get(str(Path(log.location).parent))
+        if path is not None:
+            folders[str(Path(there.location).parent)] = path
     return replace(run, by_folder=folders, fleets={path: fleet(one) for path, one in run.fleets.items()})
 
 

@@ -52,20 +52,12 @@ def serve(descriptor: int) -> None:
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     with Connection(descriptor) as connection:
         try:
-            # taken before anything heavy is imported, so that the parent is not kept waiting
+            # taken before it is opened, which imports what it needs: the parent is not kept waiting
             blob = connection.recv_bytes()
             work, run = pickle.loads(blob)
-            _warm()
             connection.send_bytes(READY)
             while True:
                 connection.send(work(connection.recv(), run))
         except (EOFError, ConnectionError):
             # the parent has what it wanted, or is gone
             return
-
-
-def _warm() -> None:
-    """Load what the first log would load."""
-    import pyarrow.csv  # noqa: F401
-
-    import exceed.pipeline  # noqa: F401

@@ -38,7 +38,7 @@ MAY = {
     "drawing": {"core", "documents", "derive", "envelopes", "judge", "physics"},
     "tables": {"core", "derive", "errors", "report"},
     "batch": {"core", "errors", "pipeline", "prepare", "read", "worker"},
-    "worker": {"pipeline"},
+    "worker": set(),
     "cluster": {"batch", "core", "errors", "pipeline", "prepare", "read"},
     "pipeline": {
         "core", "errors", "settings", "documents", "read", "derive", "judge", "prepare", "outcomes", "drawing", "batch",

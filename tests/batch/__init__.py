@@ -1,0 +1,1 @@
+"""Many logs: processes, a cluster, what is interrupted, killed, too large or far away."""
