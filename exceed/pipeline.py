@@ -129,10 +129,10 @@ def assess(log: LogPath, run: Run) -> LogOutcome:
         return failed(log.shown, LogError(Problem(log.shown, "there is not enough memory for this log", "",
                                                   "split the log, or give the machine more memory")))  # fmt: skip
     except Exception as error:  # a bug met in one log must not lose the others
-        words = traceback.format_exc() if run.settings.debug else f"{type(error).__name__}: {error}"
-        problem = Problem(log.shown, f"internal error, this is a fault of exceed: {words}", "",
-                          "run again with --debug and report it with the log")  # fmt: skip
-        return failed(log.shown, LogError(problem))
+        words = f"internal error, this is a fault of exceed: {type(error).__name__}: {error}"
+        problem = Problem(log.shown, words, "", "run again with --debug and report it with the log")
+        traced = [Problem(log.shown, traceback.format_exc())] if run.settings.debug else []
+        return failed(log.shown, LogError(problem, *traced))
 
 
 def failed(path: str, error: ExceedError) -> LogOutcome:
@@ -146,6 +146,7 @@ def _assess(log: LogPath, run: Run) -> LogOutcome:
     member = assigned.member
     names = wanted(member, plots=run.settings.plots)
     recording = read(assigned, names)
+    _something_recorded(assigned.survey)
     trace = build_trace(recording, member.aircraft, quantities=names, mass=run.mass, loading=list(member.loading))
     compiled = ready_rules(trace, member)
     threads = THREADS if len(recording.time) > WORTH_THREADS else 1
@@ -157,6 +158,22 @@ def _assess(log: LogPath, run: Run) -> LogOutcome:
         plots = log_plots(log.shown, trace, compiled, findings, member.aircraft)
     return outcome(
         log.shown, member, assigned.registration, trace, findings, compiled, notes=assigned.notes, plots=plots
+    )
+
+
+def _something_recorded(found: Survey) -> None:
+    """Raise LogError for a log of which nothing but the clock is understood: not assessed, which is no all clear."""
+    if found.quantities:
+        return
+    columns = [column.name for column in found.columns if column.index not in found.clock.columns]
+    named = ", ".join(columns[:6]) + (f" and {len(columns) - 6} more" if len(columns) > 6 else "")
+    raise LogError(
+        Problem(
+            found.path,
+            f"none of its columns is understood: {named or 'there is only a clock'}",
+            "a column of load factor, airspeed, height or attitude",
+            "name the columns in a channels file; 'exceed describe LOG --write FILE' starts one",
+        )
     )
 
 

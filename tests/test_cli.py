@@ -718,7 +718,8 @@ def test_a_fault_of_ours_is_one_line_and_with_debug_its_traceback(here: Path, mo
     assert "Traceback" not in done.out + done.err
     traced = call("scan", "lark.csv", "--jobs", "1", "--debug")
     assert traced.code == 3
-    assert "Traceback (most recent call last):" in traced.out + traced.err
+    assert "lark.csv: Traceback (most recent call last):\n  File " in traced.err
+    assert "\nRuntimeError: wheels fell off\n" in traced.err
     described = call("describe", "lark.csv")
     assert (described.code, described.out) == (3, "")
     assert described.err == (

@@ -91,6 +91,10 @@ def run_scan(settings: Settings, shown: dict[str, Any]) -> int:
     if shown["json"] != "-" and not shown["quiet"]:
         _print_table(summary, shown)
     _say_failures(summary, shown)
+    if settings.debug:
+        for recording in summary["recordings"]:
+            if recording["status"] == "failed":
+                Terminal.err("\n".join(recording["notes"]))
     ledger.finish()
     if outcome.interrupted:
         Terminal.err(f"exceed: {summary['notes'][-1]}")

@@ -5,6 +5,7 @@ They rest on cells of one second, so their cost hardly grows with the sampling r
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from types import MappingProxyType
@@ -261,5 +262,6 @@ def with_uncertainty(channel: Channel, aircraft: Aircraft | None) -> Channel:
     if channel.bias is not None and channel.bias.uncertainty:
         parts.append(channel.bias.uncertainty)
     bias = channel.bias if channel.bias is not None and channel.bias.value != 0.0 else None
-    total = float(np.sqrt(sum(part**2 for part in parts)))
+    # hypot: figures beyond all sense (1e200) must not overflow on their way to being told
+    total = math.hypot(*parts)
     return replace(channel, standard_uncertainty=total, uncertainty_source=source, bias=bias)

@@ -50,8 +50,11 @@ def not_assessed(summary: Dict, screen: Screen) -> list[str]:
                     reasons = _reasons(row["reasons"], row["not_applicable_s"] > 0.0)
                     some.setdefault((row["unassessed_s"], reasons), {})[title] = None
                 continue
-            table = never if row["unassessed_s"] > 0.0 else moot
-            key = registered, ", ".join(map(_worded, row["reasons"])) or "no reason given"
+            # a recording of one row has no time in which a rule could apply or not
+            timeless = not row["reasons"] and row["not_applicable_s"] == 0.0
+            table = never if row["unassessed_s"] > 0.0 or timeless else moot
+            reason = "there is no recorded time" if timeless else "no reason given"
+            key = registered, ", ".join(map(_worded, row["reasons"])) or reason
             rules, logs = table.setdefault(key, ({}, {}))
             rules[title] = None
             logs[recording["path"]] = None

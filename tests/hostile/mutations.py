@@ -1,4 +1,4 @@
-"""Changes to good bytes: a few edits anywhere, of the kinds that break parsers; drawn by Hypothesis, so that they shrink."""
+"""Changes to good bytes: a few edits anywhere, of the kinds that break parsers, drawn by Hypothesis."""
 
 from __future__ import annotations
 
@@ -13,20 +13,25 @@ PHASES = (Phase.explicit, Phase.generate, Phase.shrink)
 
 # numbers, words and marks that parsers of tables and clocks trip over
 LOG_WORDS: tuple[bytes, ...] = (
-    b"", b"nan", b"NaN", b"inf", b"-inf", b"1e308", b"-1e308", b"1e999", b"5e-324", b"-0", b"0", b"-1", b"99999999999999999999",
-    b"1,5", b"1.2.3", b"0x1p3", b"--", b"n/a", b"null", b"true", b"\"", b"\"\"", b"'", b",", b",,,,", b";", b"\t", b"|", b"\n", b"\r", b"\r\n",
-    b"\n\n", b"\0", b"\x1a", b"\x1b[2J", b"\xff", b"\xef\xbb\xbf", b"\xc3", b"\xe2\x80\xae", b"\xed\xa0\x80", b"#", b"# Registration: ZZ-X\n",
-    b"0000-01-01T00:00:00Z", b"9999-12-31T23:59:60Z", b"2031-02-29", b"24:00:00", b"25:61:61", b"12:30", b"1e18", b"253402300800",
-    b"time", b"NZ [g]", b"[kt]", b"[m/s]", b"g", b"=1+1", b"<b>", b"[red]", b"%s", b"9" * 400, b" " * 400,
+    b"", b"nan", b"NaN", b"inf", b"-inf", b"1e308", b"-1e308", b"1e999", b"5e-324", b"-0", b"0", b"-1",
+    b"99999999999999999999", b"1,5", b"1.2.3", b"0x1p3", b"--", b"n/a", b"null", b"true", b"\"", b"\"\"", b"'",
+    b",", b",,,,", b";", b"\t", b"|", b"\n", b"\r", b"\r\n", b"\n\n", b"\0", b"\x1a", b"\x1b[2J", b"\xff",
+    b"\xef\xbb\xbf", b"\xc3", b"\xe2\x80\xae", b"\xed\xa0\x80", b"#", b"# Registration: ZZ-X\n",
+    b"0000-01-01T00:00:00Z", b"9999-12-31T23:59:60Z", b"2031-02-29", b"24:00:00", b"25:61:61", b"12:30",
+    b"1e18", b"253402300800", b"time", b"NZ [g]", b"[kt]", b"[m/s]", b"g", b"=1+1", b"<b>", b"[red]", b"%s",
+    b"9" * 400, b" " * 400,
 )  # fmt: skip
 # marks, tags, numbers and units that our YAML has to answer
 YAML_WORDS: tuple[bytes, ...] = (
-    b"", b"~", b"null", b"yes", b"no", b"12:30", b"0x10", b"1e3", b"nan g", b"inf kt", b"-0 g", b"1e999 kg", b"-9 kg", b"0 kt",
-    b"99999999999999999999 ft", b"6 g", b"6", b"54 KIAS", b"54 KCAS", b"250 km/h IAS", b"100 %", b"6,5 g", b"6 kph", b"g", b"\"", b"'", b"|",
-    b">", b"{", b"}", b"[", b"]", b"[[[[[[[[", b"{{{{", b"- ", b"- - - -", b": ", b":", b"? ", b"# ", b"&a ", b"*a", b"&a [*a]", b"<<: *a", b"!!int ",
-    b"!!python/object:os.system ", b"---\n", b"...\n", b"%YAML 9.9\n", b"\t", b"\n", b"\r", b"\0", b"\x1b[2J", b"\xff", b"\xef\xbb\xbf", b"\xe2\x80\xae",
-    b"\xed\xa0\x80", b"\xe2\x80\xa8", b"format: exceed-fleet/1\n", b"aircraft.load_factor.maximum", b"aircraft.", b"quantity: ", b"rate_of: ",
-    b"times: ", b"over: mass", b"points: []", b"points: [[0 ft, 1 kt]]", b"x" * 400, b" " * 400, b"../../../etc/passwd", b"/dev/zero", b"**/*",
+    b"", b"~", b"null", b"yes", b"no", b"12:30", b"0x10", b"1e3", b"nan g", b"inf kt", b"-0 g", b"1e999 kg",
+    b"-9 kg", b"0 kt", b"99999999999999999999 ft", b"6 g", b"6", b"54 KIAS", b"54 KCAS", b"250 km/h IAS",
+    b"100 %", b"6,5 g", b"6 kph", b"g", b"\"", b"'", b"|", b">", b"{", b"}", b"[", b"]", b"[[[[[[[[", b"{{{{",
+    b"- ", b"- - - -", b": ", b":", b"? ", b"# ", b"&a ", b"*a", b"&a [*a]", b"<<: *a", b"!!int ",
+    b"!!python/object:os.system ", b"---\n", b"...\n", b"%YAML 9.9\n", b"\t", b"\n", b"\r", b"\0", b"\x1b[2J",
+    b"\xff", b"\xef\xbb\xbf", b"\xe2\x80\xae", b"\xed\xa0\x80", b"\xe2\x80\xa8", b"format: exceed-fleet/1\n",
+    b"aircraft.load_factor.maximum", b"aircraft.", b"quantity: ", b"rate_of: ", b"times: ", b"over: mass",
+    b"points: []", b"points: [[0 ft, 1 kt]]", b"x" * 400, b" " * 400, b"../../../etc/passwd", b"/dev/zero",
+    b"**/*",
 )  # fmt: skip
 
 

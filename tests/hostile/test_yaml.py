@@ -1,4 +1,4 @@
-"""YAML that nobody should hand to a reader of ours: each file is answered by name, quickly, and nothing in it is obeyed.
+"""YAML that nobody should hand to a reader of ours: each file is answered by place, and nothing in it is obeyed.
 
 The kinds of trap are those that are common knowledge of YAML (alias bombs, tags that call functions, merge keys,
 recursion), from memory.
