@@ -129,15 +129,6 @@ def test_windows_of_a_large_log_settle_what_the_whole_would(tmp_path: Path, monk
         assert (a.unit, a.sign, a.datum, a.scale, a.offset) == (b.unit, b.sign, b.datum, b.scale, b.offset)
 
 
-def test_pieces_of_a_large_file_are_the_whole(tmp_path: Path, monkeypatch: object) -> None:
-    from exceed.read import parse
-
-    monkeypatch.setattr(parse, "SEGMENT", 10_000)  # type: ignore[attr-defined]
-    same(read_log(written(tmp_path, of_flight(COLUMNS))))
-    same(read_log(written(tmp_path, of_flight(COLUMNS).replace("\n", "\r\n") + "\r\n\r\n")))
-    same(read_log(written(tmp_path, of_flight(COLUMNS).replace("\n", "\r"))))
-
-
 def test_pandas_index_columns_do_not_disturb(tmp_path: Path) -> None:
     table = pa.table(
         {"time_s": np.arange(400) / 8, "nz_g": 1 + 0.1 * np.sin(np.arange(400)), "__index_level_0__": np.arange(400)}
