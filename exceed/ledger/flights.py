@@ -10,10 +10,13 @@ from exceed.ledger.stretch import SAME_TAKE_OFF, TAKEN_UP, epoch, overlap, regis
 
 # the flights that ever bore a registration
 BORNE = "(SELECT id FROM flights WHERE reg_key = :reg UNION SELECT flight_id FROM reassignments WHERE reg_key = :reg)"
-# only what the newest judgement of each recording says of its flights counts
+# Only what the newest judgement of each recording says of its flights counts, and one that could tell them apart
+# counts before one that could not (as without the aircraft file). For a stretch `s` of a judgement `j`.
 NEWEST = (
     "NOT EXISTS (SELECT 1 FROM judgements later JOIN flight_stretches seen ON seen.judgement_id = later.id "
-    "WHERE later.recording_id = j.recording_id AND later.turn > j.turn)"
+    "WHERE later.recording_id = j.recording_id AND ("
+    "(seen.flight_number IS NOT NULL AND (s.flight_number IS NULL OR later.turn > j.turn)) OR "
+    "(seen.flight_number IS NULL AND s.flight_number IS NULL AND later.turn > j.turn)))"
 )
 
 

@@ -368,6 +368,20 @@ def test_a_flight_known_first_without_a_registration_is_not_counted_twice(book):
     assert (row["flights"], row["landings"], row["flight_h"]) == (1, 1, 1.0)
 
 
+def test_flights_told_apart_count_before_a_later_judgement_that_could_not(book):
+    def judged(*flights, rules):
+        record(book, summary(recording("a.csv", length=12000.0, flights=flights), rules=rules))
+        (row,) = all_totals(book)
+        return row["flights"], row["undivided_recordings"], row["flight_h"]
+
+    whole = flight(0.0, 12000.0, None, landings=None)
+    assert judged(whole, rules="1") == (0, 1, pytest.approx(3.3333))
+    apart = (flight(100.0, 3700.0, 1), flight(8000.0, 9800.0, 2))
+    assert judged(*apart, rules="2") == (2, 0, 1.5)
+    assert judged(whole, rules="3") == (2, 0, 1.5)
+    assert judged(flight(100.0, 3700.0, 1), rules="4") == (1, 0, 1.0)
+
+
 def test_a_scan_that_fails_in_the_middle_leaves_nothing(book):
     broken = copy.deepcopy(summary(one_sortie(), recording("z.csv", events=[event(5.0, 6.0)])))
     broken["recordings"][1]["events"][0]["severity"] = None
