@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import replace
 from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
 
@@ -10,7 +11,7 @@ import numpy as np
 
 from exceed.core.constants import KNOT
 from exceed.core.quantities import TRACE_ORDER
-from exceed.core.recording import Channel, Recording
+from exceed.core.recording import Channel, Recording, frozen
 from exceed.core.trace import Step, Trace
 from exceed.derive import evidence, mass, phases
 from exceed.derive.facts import Facts, facts_of
@@ -86,6 +87,7 @@ def build_trace(
 
     quantities = None if quantities is None else list(quantities)
     facts = facts_of(aircraft)
+    recording, disowned = _believed(recording)
     first = first_pass(recording, aircraft, facts.stall_speed)
     weight = masses_of(first, aircraft, facts, mass, _several(loading))
     channels: dict[str, Channel] = {**first.channels, **weight.channels}
@@ -115,7 +117,7 @@ def build_trace(
     derived = [name for name in empty if name in steps]
     instead = [f"column {first.channels[name].column} holds no reading: {name} is derived" for name in derived]
     held = _held_correction(steps, facts, first)
-    notes = tuple(dict.fromkeys((*first.notes, *facts.notes, *weight.notes, *instead, *held)))
+    notes = tuple(dict.fromkeys((*disowned, *first.notes, *facts.notes, *weight.notes, *instead, *held)))
     return Trace(
         recording,
         MappingProxyType(channels),
@@ -126,6 +128,20 @@ def build_trace(
         notes,
         weight.flights,
     )
+
+
+def _believed(recording: Recording) -> tuple[Recording, list[str]]:
+    """The recording without the readings that the user calls faulty, and what to say of them."""
+    channels, said = dict(recording.channels), []
+    for quantity, start, end, reason in recording.faulty:
+        channel = channels.get(quantity)
+        if channel is None:
+            continue
+        when = recording.channel_time(channel)
+        values = np.where((when >= start) & (when <= end), np.nan, channel.values)
+        channels[quantity] = replace(channel, values=frozen(values))
+        said.append(f"column {channel.column}: called faulty from {start:.1f} to {end:.1f} s and left out: {reason}")
+    return (replace(recording, channels=MappingProxyType(channels)), said) if said else (recording, [])
 
 
 def _held_correction(steps: Mapping[str, Step], facts: Facts, first: FirstPass) -> list[str]:

@@ -15,8 +15,8 @@ from exceed.judge import certainty
 from exceed.judge.block import Block
 from exceed.judge.compiled import Compiled
 from exceed.judge.excursions import CUTS, Runs, joined, released
-from exceed.judge.limits import FLAP_SLACK
-from exceed.judge.scan import RuleScan
+from exceed.judge.remarks import beyond_rows, by_margin_only, capped, larger_elsewhere
+from exceed.judge.scan import RuleScan, slowest_seeing
 from exceed.judge.sizing import (
     AROUND,
     Sized,
@@ -26,7 +26,7 @@ from exceed.judge.sizing import (
     size,
     with_cell,
 )
-from exceed.judge.stalls import MARGINS, sign_of_stall
+from exceed.judge.stalls import sign_of_stall
 
 Index = NDArray[np.int64]
 
@@ -100,9 +100,17 @@ def build_events(
             question = _open_question(rule, kept, sized, lasted)
             if question is not None:
                 undecided.append(question)
-        elif kind == "undecided":
+        elif kind == "undecided" and not _unassessed(rule, grid, stretch.first):
             undecided.append(kept)
     return _one_a_place(events, 0.0), _one_a_place(undecided, max(rule.joining, ONE_QUESTION))
+
+
+def _unassessed(rule: Compiled, grid: Grid, place: int) -> bool:
+    """Whether the channel is too slow there for what the rule must see: nothing was cleared, nothing is left open."""
+    if rule.must_see is None:
+        return False
+    around = grid.time[max(place - 1, 0) : place + 2]
+    return len(around) > 1 and float(np.max(np.diff(around))) > slowest_seeing(rule.must_see)
 
 
 def _stretch(rule: Compiled, runs: Runs, index: int) -> Stretch:
@@ -226,14 +234,14 @@ def _event(
     fixed: Mapping[str, float] | None = None,
 ) -> Event:
     bound = float(strip.limit[at])
-    capped, sign = _capped(rule, trace), None
-    if capped and _by_margin_only(rule, trace):
+    at_most_possible, sign = capped(rule, trace), None
+    if at_most_possible and by_margin_only(rule, trace):
         sign = sign_of_stall(trace, grid, item.first, item.last, fixed)
-        capped = sign is None
+        at_most_possible = sign is None
     levels = []
     for index, level in enumerate(rule.levels):
         threshold = float(np.asarray(rule.threshold(level, bound)))
-        chance = certainty.cap_at_possible(sized.chances[index]) if capped else sized.chances[index]
+        chance = certainty.cap_at_possible(sized.chances[index]) if at_most_possible else sized.chances[index]
         inside = _inside(runs[index], item)
         start, end, beyond = _when(inside)
         if start is None and sized.peak is not None and level.lasting <= 0.0:
@@ -246,12 +254,7 @@ def _event(
     notes = [*rule.notes, *sized.notes]
     if sign is not None:
         notes.append(f"more than the margin shows it: {sign}")
-    beyond_rows = _beyond_rows(rule, strip, context)
-    if beyond_rows:
-        notes.append(beyond_rows)
-    larger = _larger_elsewhere(rule, strip, at)
-    if larger:
-        notes.append(larger)
+    notes += [note for note in (beyond_rows(rule, strip, context), larger_elsewhere(rule, strip, at)) if note]
     when = sized.value.time
     row = grid.axis_row(place)
     return Event(
@@ -279,20 +282,6 @@ def _event(
     )
 
 
-def _capped(rule: Compiled, trace: Trace) -> bool:
-    """Whether the rule, or a method beneath its value, limit or condition, makes an event at most `possible`."""
-    return rule.cap is not None or _method_caps(rule, trace)
-
-
-def _method_caps(rule: Compiled, trace: Trace) -> bool:
-    wanted = (rule.judged.removeprefix("rate_of:"), *rule.grid_names, *rule.names)
-    return any(trace.steps[name].cap for name in trace.closure([name for name in wanted if trace.has(name)]))
-
-
-def _by_margin_only(rule: Compiled, trace: Trace) -> bool:
-    return rule.judged in MARGINS and not _method_caps(rule, trace)
-
-
 def _inside(runs: Runs, item: Stretch) -> Runs:
     if not item.sampled or len(runs) == 0:
         return runs.pick(slice(0, 0))
@@ -303,32 +292,6 @@ def _when(runs: Runs) -> tuple[float | None, float | None, float]:
     if len(runs) == 0:
         return None, None, 0.0
     return float(runs.start[0]), float(runs.end[-1]), float(np.sum(runs.duration))
-
-
-def _beyond_rows(rule: Compiled, strip: Strip, context: Mapping[str, float]) -> str | None:
-    """Past the last listed flap setting its limit holds, and that is said."""
-    if rule.last_flaps is None:
-        return None
-    angle = abs(context.get("flap_angle", 0.0))
-    if "flap_angle" in strip.block.values:
-        angle = float(np.nanmax(np.abs(strip.block.values["flap_angle"][strip.inside]), initial=angle))
-    if angle <= rule.last_flaps + FLAP_SLACK:
-        return None
-    here, last = np.degrees(angle), np.degrees(rule.last_flaps)
-    return f"flaps {here:.0f} deg are beyond the last listed setting, whose limit is used: {last:.0f} deg"
-
-
-def _larger_elsewhere(rule: Compiled, strip: Strip, at: int) -> str | None:
-    """A larger value than the peak's may stand where the limit in force was further out."""
-    if rule.discrete:
-        return None
-    part = np.where(strip.live[strip.inside], rule.side * strip.value[strip.inside], -np.inf)
-    most = rule.side * float(np.max(part))
-    unit, decimals = rule.quantity.unit, rule.quantity.decimals
-    here, there = round(unit.from_si(float(strip.value[at])), decimals + 1), round(unit.from_si(most), decimals + 1)
-    if rule.side * (there - here) <= 0.0:
-        return None
-    return f"a larger value, {there:.{decimals + 1}f} {rule.quantity.shown}, stands elsewhere under another limit"
 
 
 def _open_question(rule: Compiled, event: Event, sized: Sized, lasted: float) -> Event | None:

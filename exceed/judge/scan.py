@@ -36,8 +36,15 @@ ASSESSED, REJECTED, NO_VALUE, NO_LIMIT, NO_CONDITION, FAULTY, RATE = range(7)
 
 # tolerance on the interval when a rule says what it must see
 MUST_SEE_TOLERANCE = 1.1
+# a channel so many times too slow for a rule may still show a peak beyond its limit
+ALMOST = 2.0
 # the room between samples is at most so many times the largest step between neighbours (see certainty.upward_room)
 ROOM_PER_STEP = 4.0
+
+
+def slowest_seeing(must_see: float) -> float:
+    """The longest sampling interval, s, at which an excursion of `must_see` s is seen."""
+    return must_see * MUST_SEE_TOLERANCE / certainty.INTERVALS_TO_SIZE
 
 
 @dataclass(slots=True)
@@ -249,7 +256,7 @@ def _count_seconds(
     shares = block.shares[core]
     slow = None
     if rule.must_see is not None:
-        slow = block.too_slow(rule.must_see * MUST_SEE_TOLERANCE / certainty.INTERVALS_TO_SIZE)[core]
+        slow = block.too_slow(slowest_seeing(rule.must_see))[core]
         if holds is not None:
             slow = np.where((known & ~holds)[core], 0.0, slow)
     codes: NDArray[np.int8] | None = None
@@ -339,9 +346,8 @@ def _find_candidates(
     )
     hopeful = inside & (deciding + room > 0.0)
     if rule.must_see is not None:
-        # where the channel is too slow for the rule nothing is assessed, so nothing there is left to decide
-        longest = rule.must_see * MUST_SEE_TOLERANCE / certainty.INTERVALS_TO_SIZE
-        hopeful &= block.too_slow(longest) <= 0.0
+        # where the channel is far too slow for the rule no peak can be sized; where it is a little, one still may be
+        hopeful &= block.too_slow(ALMOST * slowest_seeing(rule.must_see)) <= 0.0
     if not hopeful[core].any():
         return
     n = len(block)
