@@ -28,19 +28,12 @@ FAMILIES = {
     "maximum Mach number": ("maximum-operating-mach",),
     "gear speed": ("gear-extended", "gear-operating"),
 }
-# known shortfalls: strict, so that mending one turns its line red until it is taken out
-KNOWN = {
-    "zz-nma/nma-0902.csv": "three equal samples of a held pull (6.46 g) are taken for the end of a 9 g range",
-    "zz-nma/nma-1145.csv": "moved to the CG with a pitch acceleration differentiated at 8 Hz, whose error "
-    "(0.07 g here) is not in the interval: 6.48 to 6.65 g for a true 6.45 g",
-}
 PEAKS = [
-    pytest.param(
-        path, row, id=f"{path}-{row['family']}",
-        marks=[pytest.mark.xfail(strict=True, reason=KNOWN[path])] if path in KNOWN else [],
-    )
-    for path, facts in TRUTH.items() for row in facts["expected"] if row["family"] != "stall"
-]  # fmt: skip
+    pytest.param(path, row, id=f"{path}-{row['family']}")
+    for path, facts in TRUTH.items()
+    for row in facts["expected"]
+    if row["family"] != "stall"
+]
 
 
 def run(*options: str) -> subprocess.CompletedProcess[str]:

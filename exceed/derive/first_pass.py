@@ -259,9 +259,11 @@ def with_uncertainty(channel: Channel, aircraft: Aircraft | None) -> Channel:
         source = f"published recording requirement {row.source}"
     else:
         source = "resolution only: no accuracy is known"
-    if channel.bias is not None and channel.bias.uncertainty:
-        parts.append(channel.bias.uncertainty)
     bias = channel.bias if channel.bias is not None and channel.bias.value != 0.0 else None
+    own = stated is not None or channel.standard_uncertainty is not None
+    # a stated accuracy has the datum in it; what recording rules ask leaves it out, and a correction brings its own
+    if channel.bias is not None and channel.bias.uncertainty and (bias is not None or not own):
+        parts.append(channel.bias.uncertainty)
     # hypot: figures beyond all sense (1e200) must not overflow on their way to being told
     total = math.hypot(*parts)
     return replace(channel, standard_uncertainty=total, uncertainty_source=source, bias=bias)

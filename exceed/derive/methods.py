@@ -215,6 +215,43 @@ def load_factor_moved(
     )
 
 
+def load_factor_moved_spread(
+    recorded_load_factor: Array,
+    recorded_roll_rate: Array,
+    recorded_pitch_rate: Array,
+    recorded_yaw_rate: Array,
+    roll_acceleration: Array,
+    pitch_acceleration: Array,
+    accelerometer_position: Array,
+) -> Array:
+    """Standard uncertainty of what differentiated rates move: the share of angular acceleration, taken as uniform.
+
+    Between samples a rate may bend as it likes: a slope of samples 1/8 s apart may be all of the true acceleration's
+    size off, as in a pull that is held for a moment. (n,), 1. [JCGM-100] 4.3.7 for the uniform distribution.
+    """
+    still = np.zeros_like(recorded_load_factor)
+    with_spin = load_factor_moved(
+        recorded_load_factor,
+        recorded_roll_rate,
+        recorded_pitch_rate,
+        recorded_yaw_rate,
+        roll_acceleration,
+        pitch_acceleration,
+        accelerometer_position,
+    )
+    without = load_factor_moved(
+        recorded_load_factor,
+        recorded_roll_rate,
+        recorded_pitch_rate,
+        recorded_yaw_rate,
+        still,
+        still,
+        accelerometer_position,
+    )
+    spread: Array = np.abs(with_spin - without) / np.sqrt(3.0)
+    return spread
+
+
 def _path(
     time: Array, true_airspeed: Array, vertical_speed: Array, width: float, max_gap: float
 ) -> tuple[Array, Array]:

@@ -177,7 +177,8 @@ DERIVATIONS: tuple[Derivation, ...] = (
                width=0.1, uncertainty=_SPIN),
     # load factor
     Derivation("load_factor", methods.load_factor_moved, "accelerometer moved to the centre of gravity", "RIGID-BODY",
-               corrects=True, when=_quick("load_factor", *_RATES), main=("recorded_load_factor",)),
+               corrects=True, when=_quick("load_factor", *_RATES), main=("recorded_load_factor",),
+               spread=methods.load_factor_moved_spread),
     # their own uncertainties: root mean square against the flight model in aerobatics, at one sample a second
     # (besides, what a wider window makes of the same path); without an accelerometer an event is possible at most
     Derivation("load_factor", methods.load_factor_from_path_and_turn, "attitude and flight path", "FLIGHT-PATH",
