@@ -25,6 +25,7 @@ Word = Literal["established", "likely", "possible", "doubtful"]
 ESTABLISHED, LIKELY, POSSIBLE = 0.95, 0.5, 0.05
 CAPPED = 0.499  # a method that can make nothing more than possible: below likely, also as it is printed
 INTERVALS_TO_SIZE = 4.0
+WORTH_ASKING = 0.2  # of the sensor's standard uncertainty: less between samples is no question of its own; judgement
 _Z95 = 1.959964
 # Where the known points of a peak's distribution stand, as standard scores. The ends of the interval were fitted at 2 %
 # and 98.5 %, so that shapes unlike those fitted are covered 95 times in 100 as well.
@@ -135,7 +136,10 @@ def is_undecided(peak: Peak, level: float) -> bool:
         return False
     if peak.saturated:
         return True
-    return peak.sized and probability_beyond(peak, level) >= POSSIBLE and hidden_beyond(peak, level) >= POSSIBLE
+    # at a limit to the digit the least of spreads would do: what sampling hides must count beside the sensor's error
+    hides = _ends(peak, False)[-1] - peak.side * peak.recorded >= WORTH_ASKING * peak.standard_uncertainty
+    sure = probability_beyond(peak, level) >= POSSIBLE and hidden_beyond(peak, level) >= POSSIBLE
+    return peak.sized and hides and sure
 
 
 def _opened(peak: Peak) -> Peak:

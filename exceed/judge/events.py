@@ -23,6 +23,7 @@ from exceed.judge.sizing import (
     Strip,
     duration_uncertainty,
     estimated_span,
+    hides_nothing,
     size,
     with_cell,
 )
@@ -81,27 +82,32 @@ def build_events(
     """(events, undecided) of one rule in one trace, each in order of time."""
     runs = [scan.runs(index) for index in range(len(rule.levels))]
     breaks = np.unique(np.concatenate(scan.breaks)) if scan.breaks else np.empty(0, np.int64)
-    whole = joined(released(runs[0], scan.release_band()), rule.joining, breaks)
+    whole = joined(released(runs[0], scan.release_band(), breaks), rule.joining, breaks)
     places = np.unique(np.concatenate(scan.candidates)) if scan.candidates else np.empty(0, np.int64)
     stretches = [_stretch(rule, whole, index) for index in range(len(whole))]
     stretches += _hidden(places, whole, grid, rule.joining)
     if not stretches:
         return [], []
     events: list[Event] = []
+    between: list[Event] = []  # those of which no sample is beyond a level
     undecided: list[Event] = []
+    well_sampled = hides_nothing(rule, trace, grid)
     for stretch, (event, sized, lasted) in zip(
         stretches, _all(rule, trace, grid, stretches, runs, context, fixed), strict=True
     ):
         if event is None or sized is None:
             continue
+        if well_sampled and not stretch.sampled and not (sized.peak and sized.peak.saturated):
+            continue
         kind, kept = _sorted(rule, stretch, event, sized, lasted)
         if kind == "event":
-            events.append(kept)
+            (events if stretch.sampled else between).append(kept)
             question = _open_question(rule, kept, sized, lasted)
             if question is not None:
                 undecided.append(question)
         elif kind == "undecided" and not _unassessed(rule, grid, stretch.first):
             undecided.append(kept)
+    events += _one_a_place(between, rule.joining)
     return _one_a_place(events, 0.0), _one_a_place(undecided, max(rule.joining, ONE_QUESTION))
 
 

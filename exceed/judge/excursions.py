@@ -176,15 +176,16 @@ def merge(runs: Runs, together: Mask) -> Runs:
     )
 
 
-def released(runs: Runs, band: Runs) -> Runs:
+def released(runs: Runs, band: Runs, breaks: Index) -> Runs:
     """A next stretch begins only after the value came back inside by the release: within one run of `band` all is one.
 
-    `band` are the stretches beyond the level moved inwards by the release, so each of `runs` lies in one of them.
+    `band` are the stretches beyond the level moved inwards by the release, so each of `runs` lies in one of them. A
+    break (see `joined`), the end of a flight above all, lets the next one begin as well.
     """
     if len(runs) < 2 or len(band) == 0:
         return runs
     home = np.searchsorted(band.first, runs.first, side="right") - 1
-    return merge(runs, home[1:] == home[:-1])
+    return merge(runs, (home[1:] == home[:-1]) & _unbroken(runs, breaks))
 
 
 def joined(runs: Runs, gap: float, breaks: Index) -> Runs:
@@ -195,10 +196,14 @@ def joined(runs: Runs, gap: float, breaks: Index) -> Runs:
     if len(runs) < 2 or gap <= 0.0:
         return runs
     close = runs.start[1:] - runs.end[:-1] < gap
-    count = np.searchsorted(breaks, runs.first[1:], side="right") - np.searchsorted(
-        breaks, runs.last[:-1], side="right"
-    )
-    return merge(runs, close & (count == 0))
+    return merge(runs, close & _unbroken(runs, breaks))
+
+
+def _unbroken(runs: Runs, breaks: Index) -> Mask:
+    """(k - 1,) no break between a stretch and the next."""
+    after = np.searchsorted(breaks, runs.first[1:], side="right")
+    before = np.searchsorted(breaks, runs.last[:-1], side="right")
+    return np.asarray(after == before)
 
 
 def parts(runs: Runs, events: Runs) -> Index:

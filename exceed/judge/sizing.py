@@ -24,6 +24,8 @@ AROUND = 12
 # attitude takes longer, its speed and height longer still (judgement; the load factor's is what the yardstick holds)
 QUICKEST = {"load factor": 0.3, "angular rate": 0.3, "angle": 1.0, "rotation": 1.0}
 QUICKEST_OTHERS = 3.0
+# samples in the quickest excursion from which on nothing hides between them: twice those that size one
+WELL_SAMPLED = 2.0 * certainty.INTERVALS_TO_SIZE
 NOT_SIZED = "not sized: the channel is too slow for the peak between its samples"
 SATURATED = "the sensor was at the end of its range: at least this much"
 
@@ -98,6 +100,17 @@ def size(rule: Compiled, trace: Trace, grid: Grid, strip: Strip, at: int, uncert
     return Sized(shown, chances, peak.estimate, peak, tuple(notes))
 
 
+def hides_nothing(rule: Compiled, trace: Trace, grid: Grid) -> bool:
+    """Whether the value is too slow for its channel to hide an excursion between samples, unlike what follows a pull.
+
+    Then no sample beyond a level means none was; what is left is the sensor's error, which opens no question.
+    """
+    name = rule.judged.removeprefix("rate_of:")
+    if trace.has(name) and "load_factor" in trace.closure([name]):
+        return False
+    return WELL_SAMPLED * grid.interval <= QUICKEST.get(rule.quantity.kind, QUICKEST_OTHERS)
+
+
 def levels_at(rule: Compiled, limit: float) -> list[float]:
     """Each level's threshold where the limit in force is `limit`."""
     return [float(np.asarray(rule.threshold(level, limit))) for level in rule.levels]
@@ -130,7 +143,8 @@ def estimated_span(
     rule: Compiled, strip: Strip, at: int, peak: certainty.Peak, level: float
 ) -> tuple[float, float] | None:
     """Start and end of the estimate's curve beyond a level that no sample is beyond; None where it is not beyond."""
-    if rule.side * (peak.estimate - level) <= 0.0:
+    # what prints alike is no excursion: flown along a limit, the curve between samples is beyond it by a hair
+    if rule.side * (peak.estimate - level) <= 0.5 * rule.quantity.unit.factor * 10.0 ** -(rule.quantity.decimals + 1):
         return None
     window, centre = strip.neighbourhood(at)
     time, value = strip.block.time[window], strip.value[window]

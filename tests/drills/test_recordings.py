@@ -64,7 +64,8 @@ rules:
   - {id: often, quantity: load_factor, limit: 3 g, above: {advisory: 100 %}, count: {at_least: 2, within: flight}}
   - {id: allowed, quantity: airspeed, limit: 110 KIAS, above: {caution: 100 %},
      allowed: [{up_to: 120 %, for: 15 s, within: flight}]}
-  - {id: always, quantity: pressure_altitude, above: {advisory: 50 ft}, joining: 1 h}
+  - {id: high, quantity: pressure_altitude, above: {advisory: 2000 ft}, joining: 1 h}
+  - {id: aloft, quantity: pressure_altitude, above: {advisory: 2000 ft}, release: 5000 ft}
 """
 
 
@@ -80,6 +81,9 @@ def test_two_flights_are_told_apart_in_everything(tmp_path: Path) -> None:
     # two in the second flight, one in the first
     (often,) = events(found, "often")
     assert (often["flight"], often["notes"][-1]) == (2, "2 excursions; an event from 2 on")
+    # neither joining nor release reaches from one flight into the next
+    assert [event["flight"] for event in events(found, "high")] == [1, 2]
+    assert [event["flight"] for event in events(found, "aloft")] == [1, 2]
     for number in (1, 2):
         row = coverage(found, "load-factor-high", number)
         flight = found["flights"][number - 1]
@@ -147,6 +151,23 @@ def test_a_slow_channel_near_its_limit_is_one_line_and_no_question(tmp_path: Pat
     (near,) = found["within_sensor_error"]
     assert near["rule"] == "never-exceed"
     assert near["seconds"] == pytest.approx(20.6, abs=0.7)
+
+
+@pytest.mark.parametrize("step", [0.0, 0.1, 1.0])
+def test_flown_along_a_limit_there_is_neither_event_nor_question(tmp_path: Path, step: float) -> None:
+    """The digits stand at the limit or one below, and the curve between them is beyond it by less than they say."""
+
+    def along(time: Array, columns: Columns) -> None:
+        there = (time > 112) & (time < 178)
+        near = 110.0 - 0.3 * (1.0 + np.sin(0.7 * time))
+        slow = np.interp(time, [110, 125, 165, 180], [100, 0, 0, 100])
+        speed = np.minimum(near, np.where(slow > 0, 110 - 0.1 * slow, 110.0))
+        columns[IAS] = np.where(there, np.round(speed / step) * step if step else speed, columns[IAS])
+
+    found = scanned(tmp_path, [along], facts={"speeds": {"never_exceed": "110 KIAS"}})
+    assert found["events"] == found["undecided"] == []
+    (near,) = found["within_sensor_error"]
+    assert near["seconds"] > 10.0
 
 
 def test_a_peak_that_sampling_may_have_hidden_is_undecided_and_its_inspection_to_be_decided(tmp_path: Path) -> None:
