@@ -70,7 +70,8 @@ def masses_of(
     if len(coarse) == 0:
         return Masses(missing={"mass": "the recording is empty", "centre_of_gravity": "the recording is empty"})
     used = _fuel_used(first, aircraft, facts, notes)
-    loads = _loads(first, aircraft, sheets)
+    loads = _loads(first, aircraft, sheets, notes)
+    notes += _zero_fuel_notes(aircraft, loads)
     spans = _spans(first)
     series, arms = np.full(len(coarse), np.nan), np.full(len(coarse), np.nan)
     unknown = []
@@ -212,10 +213,32 @@ class _Load:
         return self.moment + (total - self.zero_fuel) * self.fuel_arm
 
 
-def _loads(first: FirstPass, aircraft: Aircraft | None, sheets: Sequence[LoadingSheet]) -> dict[int, _Load]:
+def _zero_fuel_notes(aircraft: Aircraft | None, loads: Mapping[int, _Load]) -> list[str]:
+    """The centre of gravity without fuel against the envelope: no sample shows it, yet the loading must allow it."""
+    rows = () if aircraft is None else aircraft.loading.envelope
+    if not rows:
+        return []
+    mass, forward, aft = (np.array([float(row[column]) for row in rows]) for column in range(3))
+    said = []
+    for place, load in sorted(loads.items()):
+        if load.moment is None:
+            continue
+        arm = load.moment / load.zero_fuel
+        low, high = float(np.interp(load.zero_fuel, mass, forward)), float(np.interp(load.zero_fuel, mass, aft))
+        if not low <= arm <= high:
+            said.append(
+                f"flight {place + 1}: without fuel, at {load.zero_fuel:.0f} kg, the centre of gravity would be at"
+                f" {arm:.3f} m, outside its limits from {low:.3f} to {high:.3f} m"
+            )
+    return said
+
+
+def _loads(
+    first: FirstPass, aircraft: Aircraft | None, sheets: Sequence[LoadingSheet], notes: list[str]
+) -> dict[int, _Load]:
     if not sheets or aircraft is None or aircraft.mass.empty is None:
         return {}
-    from exceed.documents.loading import sheet_for_flights, station_masses
+    from exceed.documents.loading import overloaded, sheet_for_flights, station_masses
 
     recording, flights = first.coarse.recording, first.track.flights
     start = recording.clock.start
@@ -227,6 +250,7 @@ def _loads(first: FirstPass, aircraft: Aircraft | None, sheets: Sequence[Loading
     found = {}
     for place, sheet in sheet_for_flights(sheets, registration, recording.path, take_offs).items():
         weights = station_masses(sheet, aircraft)
+        notes.extend(f"flight {place + 1}: {note}" for note in overloaded(sheet, aircraft))
         stations = aircraft.loading.stations
         tanks = {
             name for name in weights if stations[name].density is not None or sheet.stations[name].kind == "volume"

@@ -324,6 +324,23 @@ def test_a_loading_sheet_within_all_limits_is_silent(tmp_path: Path) -> None:
         assert coverage(found, rule)["assessed_s"] == found["recorded_s"]
 
 
+def test_a_loading_that_only_fuel_keeps_within_limits_is_said(tmp_path: Path) -> None:
+    """(640 * 0.98 + 82 * 1.12 + 45 * 1.8) / 767 = 1.0430 m against 1.02 m; 50.4 kg of fuel at 0.9 m do not mend it."""
+    envelope = [["640 kg", "0.90 m", "1.02 m"], ["960 kg", "0.96 m", "1.05 m"]]
+    stations = {**LOADED["loading"]["stations"], "baggage": {"arm": "1.80 m", "maximum": "40 kg"}}
+    facts = {"loading": {**LOADED["loading"], "envelope": envelope, "stations": stations}}
+    found = scanned(
+        tmp_path, facts=facts, loading={"stations": {"pilot": "82 kg", "baggage": "45 kg", "main_fuel": "70 L"}}
+    )
+    limit = 1.02 + 0.03 * (767 - 640) / 320
+    arm = (640 * 0.98 + 82 * 1.12 + 45 * 1.8) / 767
+    assert (
+        f"flight 1: without fuel, at 767 kg, the centre of gravity would be at {arm:.3f} m, outside its limits from "
+        f"{0.90 + 0.06 * 127 / 320:.3f} to {limit:.3f} m"
+    ) in found["notes"]
+    assert "flight 1: station baggage carries 45.0 kg, more than its maximum of 40 kg" in found["notes"]
+
+
 def test_without_a_sheet_there_is_no_centre_of_gravity_to_judge(tmp_path: Path) -> None:
     found = scanned(tmp_path, facts=LOADED)
     assert reason(found, "centre-of-gravity-aft") == "centre of gravity: no loading sheet"
