@@ -13,6 +13,8 @@ import subprocess
 import sys
 from multiprocessing.connection import Connection, Pipe
 
+from exceed.lean import without_pandas
+
 READY = b"ready"
 
 
@@ -50,6 +52,7 @@ def _code(descriptor: int) -> str:
 def serve(descriptor: int) -> None:
     """Answer each log that comes through the pipe with its outcome, until the pipe is closed."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    without_pandas()
     with Connection(descriptor) as connection:
         try:
             # taken before it is opened, which imports what it needs: the parent is not kept waiting

@@ -38,7 +38,8 @@ MAY = {
     "drawing": {"core", "documents", "derive", "envelopes", "judge", "physics"},
     "tables": {"core", "derive", "errors", "report"},
     "batch": {"core", "errors", "pipeline", "prepare", "read", "worker"},
-    "worker": set(),
+    "lean": set(),
+    "worker": {"lean"},
     "cluster": {"batch", "core", "errors", "pipeline", "prepare", "read"},
     "pipeline": {
         "core", "errors", "settings", "documents", "read", "derive", "judge", "prepare", "outcomes", "drawing", "batch",
@@ -47,7 +48,7 @@ MAY = {
     "api": {"pipeline", "report", "settings", "tables"},
     "cli": {
         "cli", "pipeline", "report", "errors", "core", "documents", "read", "settings", "tables", "reference",
-        "envelopes", "ledger", "spectra",
+        "envelopes", "lean", "ledger", "spectra",
     },
     "__init__": {"api", "errors"},
     "__main__": {"cli"},

@@ -17,6 +17,7 @@ from exceed.cli import options as opt
 from exceed.cli import streams
 from exceed.cli.run import Terminal, guarded
 from exceed.errors import OutputError
+from exceed.lean import without_pandas
 
 app = typer.Typer(
     name="exceed",
@@ -308,6 +309,8 @@ def selfcheck(
 def main(arguments: list[str] | None = None) -> Any:
     """Entry point. A closed pipe changes nothing of a run; an output that fails is said; an interrupt ends with 130."""
     streams.install()
+    if arguments is None:
+        without_pandas()
     try:
         try:
             return app(args=arguments, standalone_mode=True)

@@ -10,9 +10,9 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import NamedTuple
-from urllib.parse import unquote, urlsplit
+from urllib.parse import quote, unquote, urlsplit
 
-from exceed.errors import LogError, Problem, UsageError
+from exceed.errors import Problem, UsageError
 from exceed.read.container import is_uri
 
 PACKINGS = (".gz", ".bz2", ".zst", ".xz", ".zip")
@@ -221,7 +221,7 @@ def _remote(address: str, skipped: list[Skipped]) -> list[LogPath]:
         if info.type == fs.FileType.File:
             return [LogPath(path.rsplit("/", 1)[-1], address, address.rsplit("/", 1)[0])]
         if info.type == fs.FileType.NotFound:
-            raise LogError(
+            raise UsageError(
                 Problem(
                     address, "there is nothing at this address", "an object or a prefix that holds some", "check it"
                 )
@@ -229,18 +229,23 @@ def _remote(address: str, skipped: list[Skipped]) -> list[LogPath]:
         inside = system.get_file_info(fs.FileSelector(path, recursive=True))
     except (pa.ArrowException, OSError, ValueError) as error:
         text = " ".join(str(error).split())[:160]
-        raise LogError(
+        raise UsageError(
             Problem(address, f"cannot be opened: {text}", "an address that you may read", "check it")
         ) from error
     found = []
-    scheme = address.split("://", 1)[0]
     for one in inside:
         if one.type != fs.FileType.File:
             continue
-        shown = one.path[len(path) :].strip("/")
+        shown = one.path.strip("/")[len(path.strip("/")) :].strip("/")
         reason = _no_log(one.path.rsplit("/", 1)[-1])
         if reason:
             skipped.append(Skipped(shown, reason))
         else:
-            found.append(LogPath(shown, f"{scheme}://{one.path}", address))
+            found.append(LogPath(shown, _below(address, shown), address))
     return sorted(found)
+
+
+def _below(address: str, inside: str) -> str:
+    """The address of an object below a prefix: the store's host and its options (`?endpoint_override=...`) stay."""
+    prefix, mark, options = address.partition("?")
+    return f"{prefix.rstrip('/')}/{quote(inside)}{mark}{options}"

@@ -6,13 +6,14 @@ import json
 import subprocess
 import sys
 from pathlib import Path
+from urllib.parse import unquote
 
 import fsspec
 import pyarrow.fs as fs
 import pytest
 
 from exceed import pipeline
-from exceed.errors import ExceedError
+from exceed.errors import UsageError
 from exceed.prepare import prepare
 from exceed.read import find_logs, read_log
 from exceed.report.summary import summarise
@@ -26,7 +27,8 @@ class Store:
 
     @staticmethod
     def from_uri(address: str) -> tuple[fs.FileSystem, str]:
-        scheme, _, path = address.partition("://")
+        scheme, _, path = address.partition("?")[0].partition("://")
+        path = unquote(path)
         if scheme != "store":
             return REAL.from_uri(address)
         return fs.PyFileSystem(fs.FSSpecHandler(fsspec.filesystem("memory"))), "/" + path.lstrip("/")
@@ -78,14 +80,23 @@ def test_what_is_no_log_in_a_store_is_said(store):
     assert ("fleet.yaml", "a YAML file") in [tuple(one) for one in skipped]
 
 
+def test_a_stores_options_and_odd_names_stay_in_the_address_of_each_object(store, day):
+    name = "50% of day 1?.csv"
+    fsspec.filesystem("memory").pipe_file(f"/bucket/day/odd/{name}", (day / "zz-nma/nma-1020.csv").read_bytes())
+    logs, _ = find_logs([f"{store}/odd?region=here&scheme=http://x"])
+    assert [log.shown for log in logs] == [name]
+    assert logs[0].location == f"{store}/odd/50%25%20of%20day%201%3F.csv?region=here&scheme=http://x"
+    assert read_log(logs[0]).rows == read_log(day / "zz-nma/nma-1020.csv").rows
+
+
 def test_nothing_at_an_address_is_a_users_mistake(store):
-    with pytest.raises(ExceedError, match="there is nothing at this address"):
+    with pytest.raises(UsageError, match="there is nothing at this address"):
         find_logs([f"{store}/no-such-folder"])
 
 
 @pytest.mark.parametrize("address", ["nothing://bucket/log.csv", "store2://x"])
 def test_a_scheme_that_nobody_knows_is_a_users_mistake(address):
-    with pytest.raises(ExceedError, match="cannot be opened"):
+    with pytest.raises(UsageError, match="cannot be opened"):
         find_logs([address])
 
 
