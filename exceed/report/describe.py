@@ -169,9 +169,12 @@ def _columns_left(recording: Dict, screen: Screen) -> list[str]:
 
 def _methods(recording: Dict, screen: Screen) -> list[str]:
     lines: list[str] = []
+    # a column is shown as the log writes it, a quantity as words
+    names = {row["column"] for row in recording["channels"]}
     for row in recording["methods"]:
         text = f"{words(row['quantity'])}: {row['method']}"
-        text += f" from {', '.join(map(words, row['inputs']))}" if row["inputs"] else ""
+        inputs = [name if name in names else words(name) for name in row["inputs"]]
+        text += f" from {', '.join(inputs)}" if inputs else ""
         text += f"; assumes: {row['assumes']}" if row["assumes"] else ""
         text += (
             f"; standard uncertainty {_measured(row['standard_uncertainty'])}" if row["standard_uncertainty"] else ""
@@ -197,5 +200,5 @@ def _feeds(feeds: tuple[FeedRow, ...], screen: Screen) -> list[str]:
             if row.lacks:
                 reasons.setdefault(row.lacks, []).append(row.title)
         for lacks, names in reasons.items():
-            lines += screen.wrap(screen.safe(f"not: {', '.join(names)} (lacks {', '.join(lacks)})"), "    ", "      ")
+            lines += screen.wrap(screen.safe(f"not: {', '.join(names)}: {', '.join(lacks)}"), "    ", "      ")
     return lines

@@ -85,10 +85,19 @@ def totals_of(recordings: list[Dict]) -> Dict:
     }
 
 
+# p at which possible, likely, established begin; a test compares them with the judgement's
+CERTAINTY_BOUNDS = (0.05, 0.5, 0.95)
+
+
 @lru_cache(maxsize=16)
 def certainty_rank(certainty: str) -> int:
     """Place of a certainty in its order, doubtful 0."""
     return CERTAINTIES.index(certainty)
+
+
+def certainty_word(probability: float) -> str:
+    """The word for a probability that the true value went beyond a level; the bounds are those of the judgement."""
+    return CERTAINTIES[sum(probability >= least for least in CERTAINTY_BOUNDS)]
 
 
 @lru_cache(maxsize=16)

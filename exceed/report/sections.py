@@ -181,6 +181,8 @@ def inspections(summary: Dict, screen: Screen) -> list[str]:
         if row["ata"]:
             parts.append(f"ATA {screen.safe(row['ata'])}")
         parts.append(f"{screen.safe(names.get(row['rule'], row['rule']))}, {count(len(row['events']), 'event')}")
+        if row["before"]:
+            parts.append(f"before {screen.safe(row['before'])}")
         task = screen.safe(row["task"])
         if screen.width is None:
             lines.append("  " + ", ".join(parts) + f": {task}")

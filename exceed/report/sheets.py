@@ -82,7 +82,7 @@ def _rows(view: View, recording: Dict, event: Dict) -> list[tuple[str, str]]:
         (words(speed), view.one(event, speed)),
         (words(height), view.one(event, height)),
         ("configuration", ", ".join(f"{word} {view.one(event, name)}" for word, name in _CONFIGURATION)),
-        ("sensor", _sensor(method, aircraft)),
+        ("sensor", _sensor(method, aircraft, {row["column"] for row in recording["channels"]})),
         ("repeats in this flight", f"{count(same, 'event')} of this rule, this one among them"),
         ("judged with", _judged_with(view, recording, aircraft)),
         ("log", f"{recording['path']}, content sha256 {recording['content_sha256'] or 'not known'}"),
@@ -121,12 +121,11 @@ def _used(row: Dict, view: View, recording: Dict) -> bool:
     return row["path"] not in known or row["path"] in recording["rule_sets"]
 
 
-def _sensor(method: Dict | None, aircraft: Dict) -> str:
+def _sensor(method: Dict | None, aircraft: Dict, columns: set[str]) -> str:
     parts = []
     if method is not None:
-        parts.append(
-            method["method"] + (f" from {', '.join(map(words, method['inputs']))}" if method["inputs"] else "")
-        )
+        inputs = ", ".join(name if name in columns else words(name) for name in method["inputs"])
+        parts.append(method["method"] + (f" from {inputs}" if inputs else ""))
         if method["standard_uncertainty"] is not None:
             spread = method["standard_uncertainty"]
             parts.append(f"standard uncertainty {spread['value']:.2g} {spread['unit']}")

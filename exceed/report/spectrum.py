@@ -265,7 +265,7 @@ def _paper(summary: Dict, *, figure: bool = False) -> Paper:
     if totals["failed"]:
         said[0] += f", {totals['failed']} failed"
     lists = (
-        ("Not counted, failed", tuple(_failures(summary))),
+        ("Failed or skipped", tuple(_failures(summary))),
         ("Logs", tuple(_log_line(log) for log in summary["recordings"] if log["status"] != "failed")),
         ("How it was counted", (*summary["counted_as"], *summary["notes"])),
     )

@@ -15,13 +15,19 @@ from exceed.core.findings import CAUTIONS, Coverage, Event, Extreme, RejectedFin
 from exceed.core.outcome import ChannelRow, DayOutcome, FlightRow, LogOutcome, MethodRow
 from exceed.core.quantities import QUANTITIES
 from exceed.core.units import UNITS
-from exceed.report.gather import aircraft_rows, inspection_rows, ordered_events, plain_registration, seconds, totals_of
+from exceed.report.gather import (
+    CERTAINTY_BOUNDS,
+    aircraft_rows,
+    inspection_rows,
+    ordered_events,
+    plain_registration,
+    seconds,
+    totals_of,
+)
 from exceed.report.show import iso_utc
 
 Dict = dict[str, Any]
 FORMAT = "exceed/summary/1"
-# p at which a certainty begins; rounding a probability never carries it over one of these
-_STEPS = (0.05, 0.5, 0.95)
 
 
 class Scale:
@@ -171,7 +177,8 @@ def _probability(p: float | None) -> float | None:
         return None
     for digits in (4, 6, 9):
         rounded = round(p, digits)
-        if all((p >= step) == (rounded >= step) for step in _STEPS):
+        # rounding never carries it over the begin of a certainty
+        if all((p >= step) == (rounded >= step) for step in CERTAINTY_BOUNDS):
             return rounded
     return p
 

@@ -11,7 +11,7 @@ from typing import Any
 
 from exceed.report import sections, unassessed
 from exceed.report.arrange import aeroplane, flight_times, grouped, limit_source
-from exceed.report.gather import certainty_rank, severity_rank
+from exceed.report.gather import certainty_rank, certainty_word, severity_rank
 from exceed.report.layout import Column, Screen, columns, on_point
 from exceed.report.show import (
     MARKS,
@@ -22,6 +22,7 @@ from exceed.report.show import (
     local_text,
     peak_texts,
     probability,
+    shown,
 )
 
 Dict = dict[str, Any]
@@ -198,6 +199,7 @@ def _table(summary: Dict, screen: Screen, groups: list[Group], heading: Heading)
         for event in found:
             lines.append(_tinted(body[place], event["severity"], screen))
             place += 1
+        lines += _shared(found, screen)
         lines += _notes(found, screen)
     return lines
 
@@ -211,7 +213,8 @@ def _tinted(line: str, severity: str, screen: Screen) -> str:
 
 def _time(event: Dict, *, roomy: bool, dated: bool) -> str:
     if event["start"] is None:
-        return elapsed(event["start_s"])
+        # without the tenths a line of 80 columns has room for how long it lasted
+        return elapsed(event["start_s"]) if roomy else elapsed(event["start_s"])[:-2]
     if dated:
         return str(event["start"])
     clock = str(event["start"])[11:-1]
@@ -247,6 +250,24 @@ def _short_heading(
     owner = screen.safe(recording["registration"] or "no registration")
     parts = [owner, "" if flight is None else f"flight {flight}", screen.safe(recording["path"])]
     return [screen.heading(line) for line in screen.wrap(", ".join(part for part in parts if part), " ", "   ")]
+
+
+def _shared(found: list[Dict], screen: Screen) -> list[str]:
+    """Where the levels that an event crossed are not equally sure: the line above gives the highest one's certainty."""
+    lines: list[str] = []
+    for event in found:
+        crossed = [row for row in event["levels"] if row["start_s"] is not None and row["probability"] is not None]
+        if len({certainty_word(level["probability"]) for level in crossed}) < 2:
+            continue
+        form = shown(event["quantity"], event["peak"]["unit"], screen.units)
+        said = ", ".join(
+            f"{level['severity']} from {form.with_unit(level['limit'])} {certainty_word(level['probability'])}"
+            f" ({probability(level['probability'])})"
+            for level in crossed
+        )
+        when = _time(event, roomy=screen.width is None or screen.width >= _ROOMY, dated=False)
+        lines += screen.wrap(f"{screen.safe(event['title'])} at {when}: {said}", "    level by level: ", "      ")
+    return lines
 
 
 def _notes(found: list[Dict], screen: Screen) -> list[str]:

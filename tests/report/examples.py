@@ -78,6 +78,9 @@ LARKSPUR = AircraftInfo(
 FENWICK = AircraftInfo("ZZ-NMC", "F4-203", "Fenwick 4", "normal", "assumed", "14 CFR 23.337 before Amdt 23-64")
 
 
+_NO_HEIGHT = ("height above ground not recorded", "vertical speed not recorded")
+
+
 def digest(letter: str) -> str:
     return (letter * 64)[:64]
 
@@ -395,9 +398,9 @@ def aerobatic() -> LogOutcome:
         feeds=(
             FeedRow("airframe", "load-factor-high", "Positive load factor"),
             FeedRow("airframe", "never-exceed", "Never-exceed speed"),
-            FeedRow("airframe", "flaps-extended", "Flaps-extended speed", ("a flap channel",)),
-            FeedRow("landing", "hard-landing", "Hard landing", ("height above ground", "vertical speed")),
-            FeedRow("landing", "bounce", "Bounced landing", ("height above ground", "vertical speed")),
+            FeedRow("airframe", "flaps-extended", "Flaps-extended speed", ("flap angle not recorded",)),
+            FeedRow("landing", "hard-landing", "Hard landing", _NO_HEIGHT),
+            FeedRow("landing", "bounce", "Bounced landing", _NO_HEIGHT),
         ),
         plots=LogPlots(
             "zz-nma/a.csv",

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
+from exceed.core.outcome import ChannelRow, MethodRow
 from exceed.report.describe import describe
 from exceed.report.show import breadth
 from report import examples, golden
@@ -35,8 +38,8 @@ def test_the_note_says_how_a_column_was_understood_and_which_rules_it_feeds() ->
         "calibrated airspeed: indicated airspeed from IAS; assumes: no position error known: CAS = IAS",
         "flap angle: cannot be had: no column gives it",
         "airframe: 2 of 3 rules: Positive load factor, Never-exceed speed",
-        "not: Flaps-extended speed (lacks a flap channel)",
-        "not: Hard landing, Bounced landing (lacks height above ground, vertical speed)",
+        "not: Flaps-extended speed: flap angle not recorded",
+        "not: Hard landing, Bounced landing: height above ground not recorded, vertical speed not recorded",
         "accelerometer calibrated: 2031-01-10",
     ):
         assert said in text, said
@@ -48,3 +51,10 @@ def test_a_log_that_lost_a_sample_is_not_called_wholly_valid() -> None:
     log = examples.touring()
     channel = replace(log.channels[0], valid_share=0.99996)
     assert " 99.9 % " in describe(replace(log, channels=(channel,)))
+
+
+def test_a_column_keeps_its_own_name_where_a_quantity_comes_from() -> None:
+    log = examples.aerobatic()
+    channels = (*log.channels, ChannelRow("vert_acc_g", "load_factor", "g", 8.0, "name"))
+    methods = (MethodRow("load_factor", "accelerometer", ("vert_acc_g", "roll_rate")),)
+    assert "accelerometer from vert_acc_g, roll rate" in describe(replace(log, channels=channels, methods=methods))

@@ -16,8 +16,10 @@ from hypothesis import strategies as st
 from exceed.core.findings import Extreme
 from exceed.core.outcome import DayOutcome, FlightRow
 from exceed.core.phases import Flight
+from exceed.judge.certainty import certainty_word as judged_word
+from exceed.report.gather import CERTAINTY_BOUNDS, certainty_word
 from exceed.report.model import Summary, schema_summary
-from exceed.report.summary import _STEPS, _probability, summarise
+from exceed.report.summary import _probability, summarise
 from exceed.report.write import to_json
 from report import examples, golden
 
@@ -179,8 +181,13 @@ def test_totals_count_what_the_recordings_hold(summary: dict[str, Any]) -> None:
 def test_rounding_a_probability_never_changes_its_certainty(p: float) -> None:
     rounded = _probability(p)
     assert rounded is not None
-    assert [p >= step for step in _STEPS] == [rounded >= step for step in _STEPS]
+    assert [p >= step for step in CERTAINTY_BOUNDS] == [rounded >= step for step in CERTAINTY_BOUNDS]
     assert rounded == pytest.approx(p, abs=6e-5)
+
+
+@given(st.floats(0.0, 1.0))
+def test_the_words_of_the_report_are_those_of_the_judgement(p: float) -> None:
+    assert certainty_word(p) == judged_word(p)
 
 
 def test_a_flight_row_is_made_from_a_flight() -> None:

@@ -200,3 +200,33 @@ def test_on_a_terminal_what_an_aircraft_file_does_not_have_is_one_row() -> None:
     assert "and 12 more" in text
     piped = [line for line in render_table(made).splitlines() if "does not apply" in line]
     assert len(piped) == 20
+
+
+def test_where_the_levels_are_not_equally_sure_each_is_said() -> None:
+    """The line's certainty is that of the highest level, so `likely` beside a limit surely passed would mislead."""
+    day = summarise(examples.day())
+    event = next(row for recording in day["recordings"] for row in recording["events"] if row["severity"] == "warning")
+    assert "level by level" not in render_table(day)
+    event.update(certainty="likely", probability=0.6572)
+    event["levels"] = [
+        {"severity": "caution", "limit": 6.0, "start_s": 1.0, "end_s": 2.0, "beyond_s": 1.0, "probability": 1.0},
+        {"severity": "warning", "limit": 6.6, "start_s": 1.4, "end_s": 1.6, "beyond_s": 0.2, "probability": 0.6572},
+    ]
+    said = "caution from 6.00 g established (> 99.9 %), warning from 6.60 g likely (65.7 %)"
+    for width in (None, 80, 160):
+        assert said in " ".join(render_table(day, width=width).split())
+
+
+def test_an_inspection_says_before_what(summary: dict[str, Any]) -> None:
+    assert summary["inspections"][0]["before"] == "next flight"
+    line = next(line for line in render_table(summary).splitlines() if line.startswith("  due: ZZ-NMA"))
+    assert "before next flight: Over-g inspection" in line
+
+
+def test_eighty_columns_have_room_for_how_long() -> None:
+    """By how much, how long and how surely: on a common terminal all three stand in the line."""
+    summary = summarise(examples.day())
+    for recording in summary["recordings"]:
+        recording["events"] = [row for row in recording["events"] if row["rule"] == "never-exceed"]
+    head = next(line for line in render_table(summary, width=80).splitlines() if "severity" in line)
+    assert all(word in head for word in ("certainty", "peak", "95 %", "limit", "for"))
