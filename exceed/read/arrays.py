@@ -11,6 +11,7 @@ from exceed.core.recording import Array
 from exceed.read.cells import is_missing
 
 LARGE = 200_000  # rows
+MOST_NANOSECONDS = 2**63 - 1
 
 
 def floats(column: Any) -> tuple[Array, int]:
@@ -86,8 +87,20 @@ def coded(column: Any) -> tuple[NDArray[np.int64], list[str]]:
     return codes, [str(text) for text in column.dictionary.cast(pa.string()).to_pylist()]
 
 
+def of_the_day(column: Any) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
+    """A timestamp column -> (n,) int64 ns since midnight, whatever the date, and where it is empty."""
+    import pyarrow as pa
+
+    factor = {"s": 10**9, "ms": 10**6, "us": 10**3, "ns": 1}[column.type.unit]
+    empty = (
+        column.is_null().to_numpy(zero_copy_only=False) if isinstance(column, pa.Array) else column.is_null().to_numpy()
+    )
+    whole = column.cast(pa.int64()).fill_null(0).to_numpy()
+    return whole % (86400 * 10**9 // factor) * factor, empty
+
+
 def whole_seconds(column: Any) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
-    """A timestamp or time column -> (n,) int64 ns, and where it is empty."""
+    """A timestamp or time column -> (n,) int64 ns, and where it is empty; dates beyond 1678 to 2262 count as empty."""
     import pyarrow as pa
 
     out = np.empty(len(column), np.int64)
@@ -105,5 +118,9 @@ def whole_seconds(column: Any) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
     unit = "d" if pa.types.is_date32(kind) else getattr(kind, "unit", "ns")
     factor = {"d": 86400 * 10**9, "s": 10**9, "ms": 10**6, "us": 10**3, "ns": 1}[unit]
     if factor != 1:
+        # nanoseconds in 64 bits reach from 1678 to 2262: what lies beyond would come out as another date
+        beyond = np.abs(out) > MOST_NANOSECONDS // factor
+        empty |= beyond
+        out[beyond] = 0
         out *= factor
     return out, empty

@@ -102,10 +102,15 @@ def open_source(location: str, shown: str | None = None, most: int = HEAD_BYTES)
         if path.exists() and not path.is_file():
             kind = "a folder" if path.is_dir() else "not a regular file"
             raise fail(shown, f"is {kind}", expected="a log file", do="give the path of a log")
-    with raw(location, shown) as stream:
-        first = stream.read(16)
-        stream.seek(0, os.SEEK_END)
-        size = stream.tell()
+    try:
+        with raw(location, shown) as stream:
+            first = stream.read(16)
+            stream.seek(0, os.SEEK_END)
+            size = stream.tell()
+    except OSError as error:  # a card that is wearing out opens, and fails to read
+        raise fail(
+            shown, f"cannot be read: {_plain(error)}", "a readable file", "copy the log from the recorder again"
+        ) from error
     if size == 0:
         raise fail(shown, "is empty", expected="a CSV or Parquet log", do="copy the log from the recorder again")
     if first.startswith(PARQUET_MAGIC):
@@ -204,7 +209,7 @@ def _pieces(
         if not started:
             raise fail(
                 shown,
-                f"cannot be unpacked ({packed or 'plain'}): {_plain(error)}",
+                f"cannot be unpacked ({packed}): {_plain(error)}" if packed else f"cannot be read: {_plain(error)}",
                 do="copy the log from the recorder again",
             ) from error
         # what came before the damage stands; the damage is said
@@ -297,8 +302,15 @@ def _zip(location: str, shown: str, seen: Callable[[bytes], None] | None, cut: l
 class Utf8Stream(io.RawIOBase):
     """A file-like stream of UTF-8 for the parser: unpacks, recodes, rewrites lines, and hashes on the way."""
 
-    def __init__(self, source: Source, rewrite: Callable[[Iterator[bytes]], Iterator[bytes]] | None = None) -> None:
+    def __init__(
+        self,
+        source: Source,
+        rewrite: Callable[[Iterator[bytes]], Iterator[bytes]] | None = None,
+        clean: bool = False,
+    ) -> None:
+        """`clean`: bytes of a UTF-8 log that are none become marks of replacement."""
         super().__init__()
+        self._clean = clean
         self._file_hash = hashlib.sha256()
         self._content_hash = hashlib.sha256()
         self.cut: list[str] = []
@@ -310,7 +322,7 @@ class Utf8Stream(io.RawIOBase):
 
     def _recoded(self, source: Source) -> Iterator[bytes]:
         decoder = None
-        if source.encoding != "utf-8":
+        if source.encoding != "utf-8" or self._clean:
             decoder = codecs.getincrementaldecoder(source.encoding)(errors="replace")
         skip = source.bom
         for piece in unpacked(

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Channel, Recording
+from exceed.documents.reading import NOT_TEXT
 from exceed.read.look import Survey
 
 
@@ -136,6 +137,8 @@ def _quoted(text: str) -> str:
             out.append("\\t")
         elif ord(letter) < 32 or 0x7F <= ord(letter) < 0xA0:
             out.append(f"\\x{ord(letter):02x}")
+        elif NOT_TEXT.search(letter):
+            out.append(f"\\u{ord(letter):04x}")
         else:
             out.append(letter)
     return "".join(out) + '"'
@@ -158,8 +161,12 @@ def channels_file(survey: Survey, recording: Recording) -> str:
     ]
     by_column = _channels_by_index(survey, recording)
     known: list[str] = []
+    barred: list[str] = []
     for column in survey.columns:
         channel = by_column.get(column.index)
+        if channel is not None and NOT_TEXT.search(column.name):
+            barred.append(f"# {_comment(column.name)}: {channel.quantity}")
+            continue
         # sub-frame columns are one channel of several columns: the file has no word for that, and recognition
         # finds them
         if channel is None or column.group:
@@ -175,6 +182,8 @@ def channels_file(survey: Survey, recording: Recording) -> str:
         known.append(f"  - {{{', '.join(parts)}}}" + (f"   # {_comment(channel.reason)}" if channel.reason else ""))
     if known:
         lines += ["channels:", *known]
+    if barred:
+        lines += ["", "# Recognised as usual: a name with a control character cannot stand in this file.", *barred]
     asked = [row for row in recording.unresolved if row.question]
     if asked:
         lines += ["", "# Open: answer the question, take the # away and move the line under 'channels'."]
@@ -207,7 +216,7 @@ def _clock_lines(survey: Survey, recording: Recording) -> list[str]:
     plan = survey.clock
     names = [survey.columns[place].name for place in plan.columns]
     notes = [f"# {_comment(note)}" for note in recording.clock.notes]
-    if not names or plan.kind == "time_of_day":
+    if not names or plan.kind == "time_of_day" or any(map(NOT_TEXT.search, names)):
         return [*notes, "# clock: {column: NAME, kind: elapsed, unit: s}"]
     if plan.kind == "date_time":
         zone = "UTC" if recording.clock.zone.startswith("UTC") else recording.clock.zone

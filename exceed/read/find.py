@@ -203,11 +203,19 @@ def _walk(folder: str, above: set[str], root: str, skipped: list[Skipped]) -> It
         skipped.append(Skipped(_shown(folder, root), f"cannot be opened ({error.strerror or 'unknown reason'})"))
         return
     for entry in entries:
-        if entry.is_dir():
+        if _is_folder(entry):
             if not entry.name.startswith("."):
                 yield from _walk(entry.path, above | {real}, root, skipped)
         else:
             yield entry.path
+
+
+def _is_folder(entry: os.DirEntry[str]) -> bool:
+    """A link to itself is none, and must not cost the rest of the folder."""
+    try:
+        return entry.is_dir()
+    except OSError:
+        return False
 
 
 def _remote(address: str, skipped: list[Skipped]) -> list[LogPath]:

@@ -100,7 +100,8 @@ class Grid:
 def middle(values: Array) -> float:
     """Median of the finite ones, NaN if there are none."""
     finite = values[np.isfinite(values)]
-    return float(np.median(finite)) if len(finite) else float("nan")
+    with np.errstate(over="ignore"):  # of two figures near 1e308 the middle is infinite, and so is told
+        return float(np.median(finite)) if len(finite) else float("nan")
 
 
 def slope(x: Array, y: Array) -> tuple[float, float, int]:

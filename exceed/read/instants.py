@@ -18,6 +18,7 @@ from exceed.read.stamps import (
     DATE,
     DAY,
     FULL,
+    NO_DATE,
     SECOND,
     TIME,
     UNKNOWN,
@@ -28,6 +29,9 @@ from exceed.read.stamps import (
     parse,
     zone_offset,
 )
+
+# s between rows: quicker than any accelerometer's recorder, slower than any log of a flight
+SHORTEST_STEP, LONGEST_STEP = 1e-6, 3600.0
 
 
 @dataclass(slots=True)
@@ -76,6 +80,7 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
             expected="a time that goes on",
             do="name another clock in a channels file, or check the recorder's clock",
         )
+    _believable(survey, made.time)
     start = None if start0 is None else start0 + made.origin
     if start is None and plan.anchor is not None:
         start, zone = _anchored(survey, parsed, plan, made, notes)
@@ -88,6 +93,20 @@ def instants(survey: Survey, parsed: Parsed, raws: list[RawChannel]) -> Instants
     if len(made.doubled):
         out.rejected.append(_doubled(survey, made, raws, time, fold))
     return out
+
+
+def _believable(survey: Survey, time: Array) -> None:
+    """Raise LogError for rows nearer or further apart than any recorder writes them: unit or column is wrong."""
+    if len(time) < 2:
+        return
+    step = float(np.median(np.diff(time)))
+    if not SHORTEST_STEP <= step <= LONGEST_STEP:
+        raise fail(
+            survey.path,
+            f"its clock goes on by {step:.3g} s a row, which no recorder does",
+            expected=f"a clock that goes on by {SHORTEST_STEP:g} s to {LONGEST_STEP:g} s a row",
+            do="name the clock and its unit in a channels file: clock: {column: NAME, kind: elapsed, unit: s}",
+        )
 
 
 def _counted(survey: Survey, parsed: Parsed, plan: ClockPlan) -> tuple[Array, float | None, str, str]:
@@ -157,6 +176,9 @@ def _stamped(survey: Survey, parsed: Parsed, plan: ClockPlan, notes: list[str]) 
     elif "date" in columns:
         clock, bad, shift, zoned = _time_of_day(columns["time"])
         days, known = _dates(columns["date"], plan, notes)
+        if known and not bad.all() and not (days[~bad] != UNKNOWN).any():
+            notes.append(NO_DATE)
+            known = False
         if known:
             bad |= days == UNKNOWN
             whole = np.where(bad, 0, days) * DAY + clock
@@ -229,11 +251,18 @@ def _full(
     kind = column.type  # type: ignore[attr-defined]
     if pa.types.is_timestamp(kind):
         whole, bad = arrays.whole_seconds(column)
+        if bad.all() and column.null_count < len(column):  # type: ignore[arg-type, attr-defined]
+            notes.append(NO_DATE)
+            whole, bad = arrays.of_the_day(column)
+            return whole, bad, np.zeros(1, np.int64), False, "time_of_day"
         return whole, bad, np.zeros(1, np.int64), kind.tz is not None, plan.kind
     read = parse(column, FULL)
     bad = read.bad | (read.clock == UNKNOWN)
     days, known = _ordered(read, bad, plan, notes)
     if not known:
+        return read.clock, bad, read.shift, read.zoned, "time_of_day"
+    if not bad.all() and not (days[~bad] != UNKNOWN).any():
+        notes.append(NO_DATE)
         return read.clock, bad, read.shift, read.zoned, "time_of_day"
     bad |= days == UNKNOWN
     return np.where(bad, 0, days) * DAY + read.clock, bad, read.shift, read.zoned, plan.kind

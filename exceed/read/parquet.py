@@ -3,8 +3,11 @@
 from __future__ import annotations
 
 import json
+import os
 from collections.abc import Sequence
 from typing import Any
+
+import numpy as np
 
 from exceed.read.container import Digest, Source, fail, is_uri, raw
 from exceed.read.look import Column, Survey
@@ -24,7 +27,8 @@ def _open(source: Source) -> Any:
     try:
         if is_uri(source.location):
             return pq.ParquetFile(raw(source.location, source.shown))
-        return pq.ParquetFile(source.location, memory_map=True)
+        # bytes: a name that is no UTF-8 has no text that arrow would take
+        return pq.ParquetFile(pa.memory_map(os.fsencode(source.location)))
     except (pa.ArrowException, OSError, ValueError, NotImplementedError) as error:
         text = " ".join(str(error).split())[:160]
         raise fail(
@@ -135,6 +139,11 @@ def _plain(column: Any) -> list[Any]:
         texts = naive.cast(pa.string()).to_pylist()
         zoned = pa.types.is_timestamp(column.type) and column.type.tz is not None
         return [text + "Z" if zoned and text is not None else text for text in texts]
+    if pa.types.is_date32(column.type):
+        # Python's dates end with the year 9999
+        return [None if day is None else str(np.datetime64(day, "D")) for day in column.cast(pa.int32()).to_pylist()]
+    if pa.types.is_date64(column.type):
+        return [None if ms is None else str(np.datetime64(ms, "ms")) for ms in column.cast(pa.int64()).to_pylist()]
     return column.to_pylist()  # type: ignore[no-any-return]
 
 

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import contextlib
+import os
 import re
+import sys
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import Any
@@ -98,6 +101,29 @@ def mendable(stray: Sequence[str], layout: Layout) -> bool:
     return False
 
 
+class _SpoiledError(Exception):
+    """A row of another length holds bytes that are no UTF-8, so that arrow cannot hand it over."""
+
+
+@contextlib.contextmanager
+def _unheard(handler: Callable[[Any], str]) -> Iterator[list[bool]]:
+    """Gather instead of print that arrow failed to hand a row to its handler; other faults go where they went."""
+    found: list[bool] = []
+    before = sys.unraisablehook
+
+    def hook(fault: Any) -> None:
+        if fault.object is handler and isinstance(fault.exc_value, UnicodeDecodeError):
+            found.append(True)
+        else:
+            before(fault)
+
+    sys.unraisablehook = hook
+    try:
+        yield found
+    finally:
+        sys.unraisablehook = before
+
+
 class Reader:
     """One text log, read as often as needed. Types: column -> number, text, stamp, stamp_zone or time."""
 
@@ -110,10 +136,13 @@ class Reader:
         types = dict(types)
         texts: set[int] = {place for place, kind in types.items() if kind == "text"}
         digest = Digest(self.source.location) if self.source.direct and self.data is None else None
-        mend = False
+        mend = clean = False
         for attempt in range(8):
             try:
-                parsed = self._once(types, mend)
+                parsed = self._once(types, mend, clean)
+            except _SpoiledError:
+                clean = True
+                continue
             except _Retry as retry:
                 # one column first; if a third fails, most probably all have the same stray rows
                 failing = (
@@ -135,7 +164,7 @@ class Reader:
             self.source.shown, "its columns cannot be read as numbers or as text", do="export the log as CSV again"
         )
 
-    def _once(self, types: dict[int, str], mend: bool) -> Parsed:
+    def _once(self, types: dict[int, str], mend: bool, clean: bool) -> Parsed:
         import pyarrow as pa
         import pyarrow.csv as arrow_csv
 
@@ -162,11 +191,11 @@ class Reader:
         skip = layout.skip
         if self.data is not None:
             handle, skip = pa.BufferReader(self.data), 0
-        elif self.source.direct and rewriter(layout, mend) is None:
+        elif self.source.direct and rewriter(layout, mend) is None and not clean:
             # read, not mapped: pages of a mapped file count as this process's memory
-            handle = pa.OSFile(self.source.location)
+            handle = pa.OSFile(os.fsencode(self.source.location))
         else:
-            stream = Utf8Stream(self.source, rewriter(layout, mend))
+            stream = Utf8Stream(self.source, rewriter(layout, mend), clean)
             handle = pa.PythonFile(stream, mode="r")
         convert = arrow_csv.ConvertOptions(
             column_types={str(k): kinds[kind] for k, kind in types.items()},
@@ -181,10 +210,13 @@ class Reader:
         )
         parsing = arrow_csv.ParseOptions(delimiter=layout.delimiter, invalid_row_handler=uneven)
         try:
-            table = arrow_csv.read_csv(handle, reading, parsing, convert)
+            with _unheard(uneven) as spoiled:
+                table = arrow_csv.read_csv(handle, reading, parsing, convert)
         except pa.ArrowInvalid as error:
             if stream is not None and stream.error is not None:
                 raise stream.error from error
+            if spoiled and not clean:
+                raise _SpoiledError from error
             match = re.search(r"CSV column #(\d+)", str(error))
             if match and types.get(int(match.group(1))) != "text":
                 raise _Retry(int(match.group(1))) from error

@@ -14,6 +14,13 @@ DAY = 86400 * SECOND
 UNKNOWN = np.iinfo(np.int64).min
 
 
+# a date outside these years is that of a clock which was never set; nanoseconds in 64 bits end with 2262
+FIRST_YEAR, LAST_YEAR = 1900, 2199
+NO_DATE = f"no date in the log is of the years {FIRST_YEAR} to {LAST_YEAR}: times are elapsed, UTC is not given"
+# hours east or west of UTC: no place on earth is further
+MOST_ZONE = 14
+
+
 @dataclass(frozen=True, slots=True)
 class ClockPlan:
     """How time will be had. kind: elapsed, epoch, iso, date_time, frame, time_of_day, row or none.
@@ -106,7 +113,7 @@ def days_of(year: Whole, month: Whole, day: Whole) -> Whole:
     length = np.array([0, 31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31])[np.clip(month, 0, 12)] + (
         leap & (month == 2)
     )
-    good = (month >= 1) & (month <= 12) & (day >= 1) & (day <= length)
+    good = (month >= 1) & (month <= 12) & (day >= 1) & (day <= length) & (year >= FIRST_YEAR) & (year <= LAST_YEAR)
     return np.where(good, out, UNKNOWN).astype(np.int64)
 
 
@@ -213,9 +220,8 @@ def _fill(out: Stamps, rows: Whole, letters: NDArray[np.uint8], match: re.Match[
         else:
             assert month is not None
             assert day is not None
-            days = days_of(year, month, day)
-            bad |= days == UNKNOWN
-            out.days[rows] = days
+            # a date that is none leaves the time of day standing
+            out.days[rows] = days_of(year, month, day)
     hour = number("hour", "hour2")
     if hour is not None:
         minute, second = number("minute", "minute2"), number("sec", "sec2")
@@ -245,6 +251,7 @@ def _fill(out: Stamps, rows: Whole, letters: NDArray[np.uint8], match: re.Match[
             ]
             hours = figures[0] * 10 + figures[1] if len(figures) > 1 else figures[0]
             minutes = figures[2] * 10 + figures[3] if len(figures) > 3 else np.zeros(len(rows), np.int64)
+            bad |= (hours > MOST_ZONE) | (minutes > 59)
             sign = -1 if zone[0] == "-" else 1
             out.shift[rows] = sign * (hours * 60 + minutes) * 60 * SECOND
     out.bad[rows] = bad
@@ -312,6 +319,8 @@ def zone_offset(text: str) -> float | None:
     match = re.fullmatch(r"(?:UTC|GMT)?([+-])(\d{1,2})(?::?(\d{2}))?(?::\d{2})?(?:H|HRS?|HOURS?)?", plain)
     if match:
         sign = -1.0 if match.group(1) == "-" else 1.0
+        if int(match.group(2)) > MOST_ZONE:
+            return None
         return sign * (int(match.group(2)) * 3600.0 + int(match.group(3) or 0) * 60.0)
     match = re.fullmatch(r"(\d{1,2}):(\d{2})", plain)
     if match:
