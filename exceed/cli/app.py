@@ -55,7 +55,15 @@ def scan(
     fleet: opt.Fleet = None,
     aircraft: opt.Aircraft = None,
     rules: Annotated[
-        list[str] | None, typer.Option("--rules", metavar="FILE|NAME", help="Rules to judge by; may be repeated.")
+        list[str] | None,
+        typer.Option(
+            "--rules",
+            metavar="FILE|NAME",
+            help=(
+                "Rules to judge by, may be repeated: a file, or airframe, aerobatic, handling, landing, gust, engine. "
+                "Default: the fleet file's, else airframe."
+            ),
+        ),
     ] = None,
     channels: opt.Channels = None,
     loading: opt.Loading = None,
@@ -72,7 +80,8 @@ def scan(
         typer.Option("--fail-at", help="Exit with 1 if an event or undecided stretch reaches this severity."),
     ] = None,
     certainty: Annotated[
-        opt.Certainty, typer.Option("--certainty", help="Lowest certainty shown in table and page.")
+        opt.Certainty,
+        typer.Option("--certainty", help="Lowest certainty shown in table and page; what is hidden is counted."),
     ] = opt.Certainty.possible,
     units: Annotated[opt.Units, typer.Option("--units", help="Units of table and page.")] = opt.Units.trade,
     jobs: Annotated[
@@ -82,7 +91,12 @@ def scan(
         str | None, typer.Option("--dask", metavar="ADDRESS", help="Read the logs on the cluster of this scheduler.")
     ] = None,
     ledger: Annotated[
-        str | None, typer.Option("--ledger", metavar="URL|default", help="Add what was found to a ledger.")
+        str | None,
+        typer.Option(
+            "--ledger",
+            metavar="URL|default",
+            help="Add what was found to a ledger: sqlite:///FILE, postgresql+psycopg://..., or the default one.",
+        ),
     ] = None,
     new_only: Annotated[
         bool, typer.Option("--new-only", help="With --ledger: leave out logs whose content is in it.")
@@ -91,12 +105,15 @@ def scan(
     no_color: Annotated[bool, typer.Option("--no-color", help="Plain text without colour.")] = False,
     debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
 ) -> None:
-    """Read logs, judge them, print the events.
+    """Read logs, judge them, print the events and what is due.
 
     \b
     exceed scan sample_logs
     exceed scan day/ --rules airframe --rules aerobatic --json day.json
     exceed scan sortie.csv --aircraft larkspur.yaml --mass "900 kg" --fail-at caution
+
+    Exit codes: 0 done; 1 an event or undecided stretch at or above --fail-at; 2 wrong use or a wrong YAML file,
+    nothing was scanned; 3 some logs failed; 4 both 1 and 3; 130 interrupted.
     """
     settings = opt.settings(
         paths, fleet=fleet, aircraft=aircraft, rules=rules, channels=channels, loading=loading,
@@ -134,7 +151,9 @@ def describe(
     no_color: Annotated[bool, typer.Option("--no-color", help="Plain text without colour.")] = False,
     debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
 ) -> None:
-    """What is in a log: clock, channels, quality, flights, extremes, and which rules it can feed.
+    """What is in a log and how each column was understood.
+
+    Clock, channels, quality, flights, extremes, and which rules it can feed.
 
     \b
     exceed describe sortie.csv
@@ -162,7 +181,7 @@ def trace(
     mass: opt.Mass = None,
     debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
 ) -> None:
-    """Every recorded and derived quantity, sample by sample, to a table.
+    """Every quantity, recorded or derived, sample by sample.
 
     \b
     exceed trace sortie.csv --out sortie-trace.parquet
@@ -198,7 +217,9 @@ def envelope(
     units: Annotated[opt.Units, typer.Option("--units", help="Units of table and page.")] = opt.Units.trade,
     debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
 ) -> None:
-    """The V-n diagram of an aeroplane: corners, limits, stall and gust speeds, each with its source.
+    """The V-n diagram of an aeroplane as figures and a plot.
+
+    Corners, limits, stall and gust speeds, each with its source.
 
     \b
     exceed envelope aircraft.yaml --mass "905 kg" --altitude "5000 ft"
@@ -228,7 +249,9 @@ def spectrum(
     ] = None,
     debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of an internal error.")] = False,
 ) -> None:
-    """Level crossings, peaks and rainflow cycles of load factor, per flight hour and per 1,000 h.
+    """Load factor counted: level crossings, peaks, rainflow cycles.
+
+    Per ASTM E1049, per flight hour and per 1,000 h.
 
     \b
     exceed spectrum sample_logs
@@ -246,9 +269,9 @@ def spectrum(
 
 @app.command()
 def lint(
-    files: Annotated[list[Path], typer.Argument(metavar="FILE...", help="Aircraft, rules, channels, ... files.")],
+    files: Annotated[list[Path], typer.Argument(metavar="FILE...", help="Aircraft, rules, channels, loading, fleet.")],
 ) -> None:
-    """Check any of our YAML files: where, what is wrong, what is expected, what to do.
+    """Check YAML files of ours: what is wrong, where, what to do.
 
     \b
     exceed lint aircraft.yaml my-rules.yaml
@@ -278,7 +301,7 @@ def template(
 def schema(
     kind: Annotated[opt.SchemaKind, typer.Argument(help="aircraft, rules, channels, loading, fleet or summary.")],
 ) -> None:
-    """Print the JSON Schema of one of our files, for editors and checkers.
+    """Print the JSON Schema of a file, for editors and checkers.
 
     \b
     exceed schema rules > rules.schema.json

@@ -13,7 +13,8 @@ app = typer.Typer(
     no_args_is_help=True,
     rich_markup_mode=None,
     help=(
-        "The history of each airframe: events, decisions, inspections, totals, trends.\n\n"
+        "The history of each airframe, in a database.\n\n"
+        "Events, decisions, inspections, totals, trends.\n\n"
         "Start with:  exceed scan sample_logs --ledger default"
     ),
 )

@@ -13,18 +13,37 @@ if TYPE_CHECKING:
 
 Fleet = Annotated[
     Path | None,
-    typer.Option("--fleet", metavar="FILE", help="Fleet file; default: the nearest fleet.yaml."),
+    typer.Option(
+        "--fleet", metavar="FILE", help="Fleet file; default: the nearest fleet.yaml, in the log's folder or above it."
+    ),
 ]
 Aircraft = Annotated[
     str | None,
-    typer.Option("--aircraft", metavar="FILE|CATEGORY", help="Aircraft file, or a category whose limits are assumed."),
+    typer.Option(
+        "--aircraft",
+        metavar="FILE|CATEGORY",
+        help=(
+            "Aircraft file, or a published category whose limits are assumed: aerobatic, utility, normal, ... "
+            "(a wrong word lists them all)."
+        ),
+    ),
 ]
-Channels = Annotated[Path | None, typer.Option("--channels", metavar="FILE", help="What the log's columns mean.")]
-Loading = Annotated[Path | None, typer.Option("--loading", metavar="FILE", help="Loading sheet.")]
+Channels = Annotated[
+    Path | None,
+    typer.Option("--channels", metavar="FILE", help="What the log's columns mean; 'describe --write' starts one."),
+]
+Loading = Annotated[
+    Path | None, typer.Option("--loading", metavar="FILE", help="Loading sheet: what was on board at take-off.")
+]
 Registration = Annotated[
     str | None, typer.Option("--registration", metavar="REG", help="The aeroplane, where the log does not say.")
 ]
-Mass = Annotated[str | None, typer.Option("--mass", metavar='"900 kg"', help="Take-off mass, with its unit.")]
+Mass = Annotated[
+    str | None,
+    typer.Option(
+        "--mass", metavar='"900 kg"', help="Take-off mass, with its unit; of a category the maximum take-off mass."
+    ),
+]
 
 
 class Severity(StrEnum):

@@ -61,7 +61,7 @@ def _row(name: str, rate: bool, own: Mapping[str, str] | None, found: Faults, pa
         found.note(
             path,
             f"'{name}' is not a quantity",
-            "a quantity of the trace table, 'airspeed', or one declared under 'quantities'",
+            "a quantity that 'exceed template rules' lists, 'airspeed', or one declared under 'quantities'",
             f"write '{near}' if that is meant" if near else f"declare it: 'quantities: {{{name}: UNIT}}'",
         )
     return row
