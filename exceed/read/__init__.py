@@ -39,9 +39,12 @@ def __getattr__(name: str) -> Any:
 
 def survey(path: Any, *, channels: object | None = None, declared: Mapping[str, str] | None = None) -> Survey:
     """Look at a log without reading it; see `surveying.survey`."""
+    import numpy as np
+
     from exceed.read.surveying import survey as look
 
-    return look(path, channels=channels, declared=declared)
+    with np.errstate(over="ignore"):  # as in `load`
+        return look(path, channels=channels, declared=declared)
 
 
 def load(
@@ -51,9 +54,13 @@ def load(
     ranges: Mapping[str, tuple[float, float]] | None = None,
 ) -> Recording:
     """Read the columns of the wanted quantities; see `loading.load`."""
+    import numpy as np
+
     from exceed.read.loading import load as read
 
-    return read(survey, wanted, ranges=ranges)
+    # a log may hold figures near 1e308; what overflows on the way is infinite, and told as out of range
+    with np.errstate(over="ignore"):
+        return read(survey, wanted, ranges=ranges)
 
 
 def read_log(

@@ -25,8 +25,9 @@ def resolution(values: Array) -> float:
     if len(levels) < 3:
         return 0.0
     steps = np.diff(levels)
-    largest = float(np.max(np.abs(levels)))
-    steps = steps[steps > 1e-9 * max(largest, 1e-30)]
+    # the usual size, not the largest: one cell of 1e200 must not become the step of all
+    usual = float(np.median(np.abs(levels[levels != 0.0])))
+    steps = steps[(steps > 1e-9 * max(usual, 1e-30)) & (steps < 1e15 * max(usual, 1e-30))]
     if not len(steps):
         return 0.0
     least = float(np.percentile(steps, 1)) if len(steps) > 200 else float(np.min(steps))

@@ -20,6 +20,8 @@ from exceed.read.measure import clipped_ends, noise_of
 BLOCK = 1 << 16
 _DEG = np.pi / 180.0
 _MOST_ROWS = 500
+# SI; of a quantity that only a file declares nothing is known but that no sensor reads this
+_BEYOND_SENSE = 1e30
 
 # how far a value can jump and come back within two sample intervals: constant + rate * interval, SI; and the longest
 # interval at which that can be judged at all, s (common practice, no source: wide of what aerobatic aeroplanes do)
@@ -173,7 +175,7 @@ def _out_of_range(series: Series, sensor: tuple[float, float] | None, out: Check
     bounds = (
         sorted((row.unit.to_si(row.plausible[0]), row.unit.to_si(row.plausible[1])))
         if row is not None
-        else [-np.inf, np.inf]
+        else [-_BEYOND_SENSE, _BEYOND_SENSE]
     )
     if sensor is not None:
         # a sample at the end of the range, a step or a hundredth of it beyond, is clipped and stays

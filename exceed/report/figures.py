@@ -45,11 +45,17 @@ def thin(time: Array, values: Array, most: int = MOST_POINTS) -> tuple[Array, Ar
     return time[rows], values[rows]
 
 
+def _rounded(values: Array, digits: int) -> Array:
+    """Rounded where there is something to round: numpy scales first, and makes 1e308 infinite."""
+    small = np.abs(values) < 1e15
+    return np.where(small, np.round(np.where(small, values, 0.0), digits), values)
+
+
 def plain(values: Array, digits: int) -> list[float | None]:
     """A JSON-ready list: rounded, None where not finite."""
     return [
         value if finite else None
-        for value, finite in zip(np.round(values, digits).tolist(), np.isfinite(values).tolist(), strict=True)
+        for value, finite in zip(_rounded(values, digits).tolist(), np.isfinite(values).tolist(), strict=True)
     ]
 
 
