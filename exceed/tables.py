@@ -90,7 +90,8 @@ def table_schema(trace: Trace, outcome: LogOutcome) -> pa.Schema:
 
     table = {
         "exceed": __version__,
-        "log": outcome.path,
+        # a name that is no UTF-8 as escapes
+        "log": outcome.path.encode("utf-8", "backslashreplace").decode(),
         "sha256": outcome.sha256 or "",
         "content_sha256": outcome.content_sha256 or "",
         "registration": outcome.registration or "",
