@@ -49,6 +49,7 @@ class Cluster:
             stdin=subprocess.DEVNULL,
             stdout=self.log,
             stderr=self.log,
+            start_new_session=True,
             env={**os.environ, "PYTHONPATH": path, "DASK_DISTRIBUTED__SCHEDULER__ALLOWED_FAILURES": "1"},
         )
 
@@ -58,14 +59,10 @@ class Cluster:
 
     def end(self) -> None:
         for process in (*self.workers, self.scheduler):
-            process.send_signal(signal.SIGCONT)
-            process.terminate()
-        for process in (*self.workers, self.scheduler):
-            try:
-                process.wait(timeout=10)
-            except subprocess.TimeoutExpired:
-                process.kill()
-                process.wait()
+            # its session: a worker that is started again when it ends is a child of the process that does so
+            with contextlib.suppress(ProcessLookupError):
+                os.killpg(process.pid, signal.SIGKILL)
+            process.wait()
         self.log.close()
 
 
@@ -137,42 +134,42 @@ def test_an_error_of_the_work_itself_is_a_failed_log(two, named, run):
     assert "a fault of the work itself" in done.outcomes[1].problem.problem
 
 
-def test_a_worker_lost_in_the_middle_is_made_up_for(tmp_path, named, run):
+def lose(made: Cluster, number: int, begun: Path) -> threading.Thread:
+    """Kills a worker once a log is being read; of two, the other must do its work."""
+
+    def wait() -> None:
+        while not begun.exists():
+            time.sleep(0.02)
+        made.workers[number].kill()
+
+    helper = threading.Thread(target=wait)
+    helper.start()
+    return helper
+
+
+def test_a_lost_worker_is_made_up_for_and_a_lost_cluster_fails_what_is_left(tmp_path, named, run, monkeypatch):
+    logs = named("slow", *[f"log-{number}" for number in range(6)])
+    begun = tmp_path / "begun"
     with running(tmp_path / "cluster", 1) as made:
-        logs = named("slow", *[f"log-{number}" for number in range(6)])
-
-        def lose() -> None:
-            while not (tmp_path / "begun").exists():
-                time.sleep(0.02)
-            made.hire()
-            made.workers[0].kill()
-
-        helper = threading.Thread(target=lose)
-        helper.start()
+        helper = lose(made, 0, begun)
+        hired = threading.Timer(0.0, made.hire)
+        hired.start()
         done = each_on_cluster(logs, run, made.address, None, strange.wait_the_first_time)
         helper.join()
-    assert [one.status for one in done.outcomes] == ["ok"] * 7
+        hired.join()
+        assert [one.status for one in done.outcomes] == ["ok"] * 7
 
-
-def test_a_cluster_that_is_lost_fails_what_is_left_and_one_without_workers_is_said(tmp_path, named, run, monkeypatch):
-    with running(tmp_path / "cluster", 1) as made:
-        logs = named("slow", "other")
-
-        def lose() -> None:
-            while not (tmp_path / "begun").exists():
-                time.sleep(0.02)
-            made.workers[0].kill()
-
-        helper = threading.Thread(target=lose)
-        helper.start()
-        done = each_on_cluster(logs, run, made.address, None, strange.wait_for_ever, patience=3.0)
+        begun.unlink()
+        helper = lose(made, 1, begun)
+        done = each_on_cluster(logs, run, made.address, None, strange.wait_for_ever, patience=1.0)
         helper.join()
+        said = "was not read: the cluster's scheduler or its last worker was lost"
+        assert {one.problem.problem for one in done.outcomes if one.status == "failed"} == {said}
+        assert done.outcomes[0].status == "failed"
+
         monkeypatch.setattr(cluster, "CONNECT", 1.0)
         with pytest.raises(UsageError, match="has no worker"):
             each_on_cluster(logs, run, made.address, None, strange.answer)
-    said = "was not read: the cluster's scheduler or its last worker was lost"
-    assert {one.problem.problem for one in done.outcomes if one.status == "failed"} == {said}
-    assert done.outcomes[0].status == "failed"
 
 
 def test_an_interrupt_leaves_what_was_done(two, day):
