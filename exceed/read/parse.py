@@ -102,7 +102,7 @@ def mendable(stray: Sequence[str], layout: Layout) -> bool:
 
 
 class _SpoiledError(Exception):
-    """A row of another length holds bytes that are no UTF-8, so that arrow cannot hand it over."""
+    """There are bytes that are no UTF-8: in a cell, or in a row of another length that arrow then cannot hand over."""
 
 
 @contextlib.contextmanager
@@ -203,7 +203,7 @@ class Reader:
             null_values=missing_spellings(set(self.missing)),
             strings_can_be_null=True,
             decimal_point=layout.decimal if layout.decimal != layout.delimiter else ".",
-            check_utf8=False,
+            check_utf8=True,
         )
         reading = arrow_csv.ReadOptions(
             column_names=[str(k) for k in range(layout.width)], skip_rows=skip, block_size=BLOCK
@@ -215,7 +215,7 @@ class Reader:
         except pa.ArrowInvalid as error:
             if stream is not None and stream.error is not None:
                 raise stream.error from error
-            if spoiled and not clean:
+            if (spoiled or "invalid UTF8" in str(error)) and not clean:
                 raise _SpoiledError from error
             match = re.search(r"CSV column #(\d+)", str(error))
             if match and types.get(int(match.group(1))) != "text":

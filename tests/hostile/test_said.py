@@ -97,6 +97,20 @@ def test_a_log_cut_in_the_middle_of_a_letter_keeps_its_rows(tmp_path: Path) -> N
     assert any("another number of cells" in note for note in found["notes"])
 
 
+@pytest.mark.parametrize("cell", [b"\xff", b"1.0\xff", b"\xed\xa0\x80"])
+def test_a_cell_that_is_no_letter_costs_its_cell_only(tmp_path: Path, cell: bytes) -> None:
+    """Beyond the first block, where the coding of letters is told."""
+    lines = case.text(count=20_000).encode().splitlines()
+    lines[15_000] = b"1874.875," + cell + b",100.0,17999"
+    (tmp_path / "log.csv").write_bytes(b"\n".join(lines) + b"\n")
+    done = CliRunner().invoke(app, ["scan", str(tmp_path / "log.csv"), "--json", "-"], prog_name="exceed")
+    assert (done.exit_code, done.stderr) == (0, "")
+    (found,) = json.loads(done.stdout)["recordings"]
+    assert found["rows"] == 20_000
+    (row,) = (one for one in found["rejected"] if one["quantity"] == "load_factor")
+    assert (row["reason"], row["samples"], row["start_s"]) == ("not_a_number", 1, 1874.875)
+
+
 def test_a_file_that_opens_and_cannot_be_read_is_said(tmp_path: Path) -> None:
     (tmp_path / "log.csv").symlink_to("/proc/self/mem")
     done = CliRunner().invoke(app, ["scan", str(tmp_path / "log.csv"), "--quiet"], prog_name="exceed")
