@@ -140,9 +140,18 @@ class View:
             "interval": interval,
             "limit": f"{limit} {unit}".strip(),
             "assumed": event["limit"]["assumed"],
+            "level": self.level_text(event),
             "lasting": duration(event["duration_s"]),
             "phase": event["phase"],
         }
+
+    def level_text(self, event: Dict) -> str:
+        """The level that the certainty speaks of, where it is not the limit itself."""
+        level = next((row for row in event["levels"] if row["severity"] == event["severity"]), None)
+        if level is None or level["limit"] is None or level["limit"] == event["limit"]["value"]:
+            return ""
+        form = shown(event["quantity"], event["peak"]["unit"], self.system)
+        return f"{event['severity']} from {form.with_unit(level['limit'])}"
 
     def sentence(self, recording: Dict, event: Dict, *, undecided: bool) -> str:
         """What happened, in one or two plain sentences."""

@@ -57,6 +57,9 @@ def extremes(summary: Dict, screen: Screen) -> list[str]:
         place += many
         for note in flight["notes"]:
             lines += screen.wrap(screen.safe(note), "    note: ")
+    if any(row[-1] for row in rows):
+        text = "of limit: the nearest that a value came to a limit while its rule applied"
+        lines += [screen.paint(line, "faint") for line in screen.wrap(text, "  ")]
     if left:
         text = "quantities without a limit are left out here; the JSON and the page have them all"
         lines += [screen.paint(line, "faint") for line in screen.wrap(text, "  ")]

@@ -297,3 +297,10 @@ def test_a_ladder_keeps_its_labels_apart_and_points_at_an_open_end() -> None:
 def test_a_log_without_anything_still_has_a_page() -> None:
     text = words_of(Reader(page_of(DayOutcome((LogOutcome("a.csv"),), ""))))
     assert "No flight." in text
+
+
+def test_the_row_of_an_event_names_the_level_that_its_certainty_speaks_of(page: str) -> None:
+    # 8.98 g against a limit of 6.00 g is a warning from 6.60 g on; what is at its limit's own level needs no word
+    rows = re.findall(r'data-name="limit">(.*?)</td>', page)
+    assert any(row.startswith("6.00 g") and "warning from 6.60 g" in row for row in rows)
+    assert not any("caution from 6.00 g" in row for row in rows)
