@@ -99,11 +99,17 @@ def scan(*words: str, **more) -> subprocess.CompletedProcess[str]:
 
 def test_a_cluster_gives_the_same_summary_as_this_machine(two, day):
     """The paths are relative to a folder in which no worker was started, and the fleet file is found by them."""
-    here = scan("day", "--jobs", "1", "--json", "-", cwd=day.parent)
-    there = scan("day", "--dask", two.address, "--json", "-", cwd=day.parent)
+    # this log says not whose it is: only a pattern relative to the fleet file does
+    log = day / "zz-nma" / "again.csv"
+    log.write_text("".join(line for line in log.read_text().splitlines(keepends=True) if not line.startswith("#")))
+    paths = ("day/zz-nma", "day/zz-nmj", "day/broken.csv")
+    here = scan(*paths, "--jobs", "1", "--json", "-", cwd=day.parent)
+    there = scan(*paths, "--dask", two.address, "--json", "-", cwd=day.parent)
     assert there.stderr == here.stderr
     assert there.returncode == here.returncode == 3
-    assert len(summary_of(here.stdout)["recordings"]) == 5
+    owners = {one["path"]: one["registration"] for one in summary_of(here.stdout)["recordings"]}
+    assert len(owners) == 5
+    assert owners["again.csv"] == "ZZ-NMA"
     assert summary_of(there.stdout) == summary_of(here.stdout)
 
 

@@ -91,9 +91,9 @@ def test_the_estimate_covers_what_reading_and_judging_really_take(log, tmp_path)
     peaks = [peak(path) for path in (short, longer)]
     need = estimate(survey(longer), None) - estimate(survey(short), None)
     taken = peaks[1] - peaks[0]
-    assert taken < 1.2 * need
+    assert taken < need
     # nor is it so careful that it refuses what would easily fit
-    assert need < 6 * taken
+    assert need < 4 * taken
 
 
 def peak(path: Path) -> int:
@@ -111,7 +111,7 @@ def peak(path: Path) -> int:
 def test_a_log_too_large_is_one_failed_log_and_the_others_go_on(log, day, monkeypatch):
     target = day / "zz-nma" / "long.csv"
     target.write_bytes(log.read_bytes())
-    monkeypatch.setenv("EXCEED_MEMORY", "12 MB")
+    monkeypatch.setenv("EXCEED_MEMORY", "7 MB")
     for jobs in ("1", "2"):
         ended = scan(str(day), "--jobs", jobs, "--json", "-")
         assert ended.returncode == 3
