@@ -73,6 +73,7 @@ def scan(
     registration: str | None = None,
     mass: str | None = None,
     jobs: int | None = 1,
+    dask: str | None = None,
 ) -> Result:
     """Read logs, judge them, and give events and assessment.
 
@@ -88,7 +89,9 @@ def scan(
         loading=_text(loading),
         registration=registration,
         mass=mass,
-        jobs=jobs,
+        # the cluster has its own processes
+        jobs=jobs if dask is None else None,
+        dask=dask,
     )
     found = pipeline.scan(settings)
     if found.interrupted:

@@ -113,6 +113,11 @@ def test_a_cluster_gives_the_same_summary_as_this_machine(two, day):
     assert summary_of(there.stdout) == summary_of(here.stdout)
 
 
+def test_the_python_api_takes_a_cluster_too(two, day):
+    here, there = exceed.scan(day), exceed.scan(day, dask=two.address)
+    assert {**there.summary, "created": ""} == {**here.summary, "created": ""}
+
+
 def test_every_worker_works_and_order_stays(two, named, run):
     names = [f"log-{number}" for number in range(60)]
     seen: list[int] = []
