@@ -610,6 +610,14 @@ def test_a_terminal_gets_its_width_and_colour(desk: Path, width: int) -> None:
     assert max(map(len, plain.split("\n"))) <= width
 
 
+@pytest.mark.parametrize("width", ["1", "-5", "abc"])
+def test_an_absurd_width_is_survived(desk: Path, width: str) -> None:
+    code, text = on_terminal("envelope", "larkspur.yaml", folder=desk, environment={"COLUMNS": width})
+    assert code == 0
+    assert "Larkspur" in text
+    assert CAUTIONS[-1].split()[-1] in text
+
+
 @pytest.mark.parametrize("environment", [{"NO_COLOR": "1"}, {"TERM": "dumb"}])
 def test_no_colour_where_nobody_wants_it(desk: Path, environment: dict[str, str]) -> None:
     code, text = on_terminal(
@@ -629,7 +637,7 @@ def test_a_pipe_gets_one_event_a_line_whatever_columns_says(desk: Path) -> None:
 
 
 def test_a_plain_c_locale_gets_plain_letters(desk: Path, tmp_path: Path) -> None:
-    shutil.copy(desk / "lark.csv", tmp_path / "flight.csv")
+    shutil.copy(desk / "lark.csv", tmp_path / "Flug-Übung.csv")
     environment = {"LC_ALL": "C", "PYTHONUTF8": "0", "PYTHONCOERCECLOCALE": "0"}
     done = process("scan", ".", "--aircraft", str(desk / "larkspur.yaml"), folder=tmp_path, environment=environment)
     assert (done.code, done.err) == (0, "")
