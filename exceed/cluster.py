@@ -89,15 +89,20 @@ def _installed() -> None:
 @contextlib.contextmanager
 def _quiet() -> Iterator[None]:
     """What the library logs and warns of is said here in other words, or is none of a user's concern."""
-    logger = logging.getLogger("distributed")
-    before = logger.level
-    logger.setLevel(logging.CRITICAL + 1)
+    import distributed.client  # noqa: F401
+
+    # its parts have levels of their own, set on import
+    names = ["distributed", *(name for name in logging.root.manager.loggerDict if name.startswith("distributed."))]
+    before = {name: logging.getLogger(name).level for name in names}
+    for name in names:
+        logging.getLogger(name).setLevel(logging.CRITICAL + 1)
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
             yield
     finally:
-        logger.setLevel(before)
+        for name, level in before.items():
+            logging.getLogger(name).setLevel(level)
 
 
 @contextlib.contextmanager

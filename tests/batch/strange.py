@@ -61,7 +61,7 @@ def wait_for_ever(log: LogPath, run: object) -> LogOutcome:
     """A log called `slow` never ends, and one called `pause` until it is told; a mark says that it has begun."""
     folder = Path(log.root)
     if "slow" in log.shown:
-        (folder / "begun").touch()
+        (folder / "begun").write_text(f"{os.getpid()}\n")
         time.sleep(300)
     if "pause" in log.shown:
         (folder / "pause-begun").touch()
@@ -80,7 +80,8 @@ def wait_the_first_time(log: LogPath, run: object) -> LogOutcome:
     """A log called `slow` never ends in the process that meets it first."""
     if "slow" in log.shown:
         try:
-            (Path(log.root) / "begun").touch(exist_ok=False)
+            with (Path(log.root) / "begun").open("x") as mark:
+                mark.write(f"{os.getpid()}\n")
         except FileExistsError:
             return answer(log, run)
         time.sleep(300)

@@ -26,6 +26,9 @@ TESTS = Path(__file__).resolve().parents[1]
 # the library leaves sockets to the collector
 pytestmark = pytest.mark.filterwarnings("ignore::ResourceWarning", "ignore::pytest.PytestUnraisableExceptionWarning")
 
+# should the tests themselves be killed
+ENDS = ("--idle-timeout", "120s")
+
 
 class Cluster:
     """A scheduler and its workers, as processes of their own, in another folder than the tests'."""
@@ -34,7 +37,9 @@ class Cluster:
         self.folder = folder
         self.log = (folder / "log.txt").open("wb")
         where = folder / "scheduler.json"
-        self.scheduler = self._start("scheduler", "--port", "0", "--host", "127.0.0.1", "--scheduler-file", str(where))
+        self.scheduler = self._start(
+            "scheduler", "--port", "0", "--host", "127.0.0.1", "--scheduler-file", str(where), *ENDS
+        )
         until = time.monotonic() + 60
         while not where.exists() and time.monotonic() < until:
             time.sleep(0.05)
@@ -54,8 +59,8 @@ class Cluster:
         )
 
     def hire(self, *, nanny: bool = False) -> None:
-        words = ("worker", self.address, "--nthreads", "1", "--host", "127.0.0.1", "--nanny" if nanny else "--no-nanny")
-        self.workers.append(self._start(*words))
+        words = ["worker", self.address, "--nthreads", "1", "--host", "127.0.0.1", "--death-timeout", "30"]
+        self.workers.append(self._start(*words, "--nanny" if nanny else "--no-nanny"))
 
     def end(self) -> None:
         for process in (*self.workers, self.scheduler):
@@ -145,13 +150,16 @@ def test_an_error_of_the_work_itself_is_a_failed_log(two, named, run):
     assert "a fault of the work itself" in done.outcomes[1].problem.problem
 
 
-def lose(made: Cluster, number: int, begun: Path) -> threading.Thread:
-    """Kills a worker once a log is being read; of two, the other must do its work."""
+def lose(begun: Path, process: subprocess.Popen[bytes] | None = None) -> threading.Thread:
+    """Kills the worker that has begun with the slow log, or another process then."""
 
     def wait() -> None:
-        while not begun.exists():
+        while not begun.exists() or not begun.read_text().endswith("\n"):
             time.sleep(0.02)
-        made.workers[number].kill()
+        if process is not None:
+            process.kill()
+        else:
+            os.kill(int(begun.read_text()), signal.SIGKILL)
 
     helper = threading.Thread(target=wait)
     helper.start()
@@ -162,7 +170,7 @@ def test_a_lost_worker_is_made_up_for_and_a_lost_cluster_fails_what_is_left(tmp_
     logs = named("slow", *[f"log-{number}" for number in range(6)])
     begun = tmp_path / "begun"
     with running(tmp_path / "cluster", 1) as made:
-        helper = lose(made, 0, begun)
+        helper = lose(begun)
         hired = threading.Timer(0.0, made.hire)
         hired.start()
         done = each_on_cluster(logs, run, made.address, None, strange.wait_the_first_time)
@@ -171,7 +179,7 @@ def test_a_lost_worker_is_made_up_for_and_a_lost_cluster_fails_what_is_left(tmp_
         assert [one.status for one in done.outcomes] == ["ok"] * 7
 
         begun.unlink()
-        helper = lose(made, 1, begun)
+        helper = lose(begun)
         done = each_on_cluster(logs, run, made.address, None, strange.wait_for_ever, patience=1.0)
         helper.join()
         said = "was not read: the cluster's scheduler or its last worker was lost"
@@ -181,6 +189,16 @@ def test_a_lost_worker_is_made_up_for_and_a_lost_cluster_fails_what_is_left(tmp_
         monkeypatch.setattr(cluster, "CONNECT", 1.0)
         with pytest.raises(UsageError, match="has no worker"):
             each_on_cluster(logs, run, made.address, None, strange.answer)
+
+
+def test_a_lost_scheduler_fails_what_is_left_without_a_traceback(tmp_path, named, run, capfd):
+    logs = named("slow", "other")
+    with running(tmp_path / "cluster", 2) as made:
+        helper = lose(tmp_path / "begun", made.scheduler)
+        done = each_on_cluster(logs, run, made.address, None, strange.wait_for_ever, patience=1.0)
+        helper.join()
+    assert done.outcomes[0].problem.problem == "was not read: the cluster's scheduler or its last worker was lost"
+    assert capfd.readouterr() == ("", "")
 
 
 def test_an_interrupt_leaves_what_was_done(two, day):
