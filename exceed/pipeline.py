@@ -144,6 +144,7 @@ def failed(path: str, error: ExceedError) -> LogOutcome:
 def _assess(log: LogPath, run: Run) -> LogOutcome:
     assigned = assign(log, run)
     member = assigned.member
+    _possible_mass(log, run, member)
     names = wanted(member, plots=run.settings.plots)
     recording = read(assigned, names)
     _something_recorded(assigned.survey)
@@ -156,9 +157,30 @@ def _assess(log: LogPath, run: Run) -> LogOutcome:
         from exceed.drawing import log_plots
 
         plots = log_plots(log.shown, trace, compiled, findings, member.aircraft)
-    return outcome(
-        log.shown, member, assigned.registration, trace, findings, compiled, notes=assigned.notes, plots=plots
-    )
+    notes = [*assigned.notes, *_mass_not_used(run, trace)]
+    return outcome(log.shown, member, assigned.registration, trace, findings, compiled, notes=notes, plots=plots)
+
+
+def _possible_mass(log: LogPath, run: Run, member: Member) -> None:
+    """Raise LogError for a take-off mass that this aeroplane cannot have: a slip would pick the wrong limits."""
+    empty = member.aircraft.mass.empty if member.aircraft is not None else None
+    if run.mass is not None and empty is not None and run.mass < empty:
+        raise LogError(
+            Problem(
+                log.shown,
+                f"--mass {run.settings.mass} is less than the empty mass of {empty}",
+                f"a take-off mass above {empty}",
+                "correct --mass",
+            )
+        )
+
+
+def _mass_not_used(run: Run, trace: Trace) -> list[str]:
+    """What to say where loading sheets went before --mass."""
+    sheets = [str(row.flight) for row in trace.masses if row.method.startswith("loading sheet")]
+    if run.mass is None or not sheets:
+        return []
+    return [f"--mass is not used for flight {', '.join(sheets)}: the loading sheet goes before it"]
 
 
 def _something_recorded(found: Survey) -> None:

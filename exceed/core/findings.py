@@ -65,6 +65,7 @@ class Task:
     ata: str | None = None
     before: str | None = None
     wanted: bool = True  # severity and certainty reach what the rule asks for
+    severity: str = "caution"  # from which on it is asked for
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -6,7 +6,7 @@ either.
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -70,11 +70,17 @@ class TaskSpec:
     severity: str = "caution"
     certainty: str = "possible"
 
-    def of(self, severity: str, certainty: str) -> Task:
-        """What an event of this severity and certainty asks for."""
-        reached = SEVERITIES.index(severity) >= SEVERITIES.index(self.severity)
-        sure = CERTAINTIES.index(certainty) >= CERTAINTIES.index(self.certainty)
-        return Task(self.text, self.ata, self.before, reached and sure)
+    def of(self, steps: Sequence[tuple[str, str]]) -> Task:
+        """What an event asks for that reached these levels, (severity, certainty): one that suffices is enough.
+
+        A limit surely passed asks for its inspection though a higher level may only have been passed.
+        """
+        words = [
+            certainty for severity, certainty in steps if SEVERITIES.index(severity) >= SEVERITIES.index(self.severity)
+        ]
+        surest = max(words, key=CERTAINTIES.index, default="doubtful")
+        wanted = bool(words) and CERTAINTIES.index(surest) >= CERTAINTIES.index(self.certainty)
+        return Task(self.text, self.ata, self.before, wanted, self.severity)
 
 
 @dataclass(frozen=True, slots=True)

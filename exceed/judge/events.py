@@ -332,6 +332,8 @@ def _finished(rule: Compiled, event: Event, crossed: list[int], top: int, lasted
     chance = event.levels[top].probability * lasted
     word = certainty.certainty_word(chance)
     severity = event.levels[top].severity
+    reached = [event.levels[index] for index in sorted({*(step for step in crossed if step <= top), top})]
+    steps = [(level.severity, certainty.certainty_word(level.probability * lasted)) for level in reached]
     start, end = event.start, event.end
     if crossed and event.levels[crossed[0]].start is not None:
         lowest = event.levels[crossed[0]]
@@ -344,7 +346,7 @@ def _finished(rule: Compiled, event: Event, crossed: list[int], top: int, lasted
         certainty=word,
         start=start,
         end=end,
-        task=rule.task.of(severity, word) if rule.task is not None else None,
+        task=rule.task.of(steps) if rule.task is not None else None,
     )
 
 

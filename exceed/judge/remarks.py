@@ -50,4 +50,5 @@ def larger_elsewhere(rule: Compiled, strip: Strip, at: int) -> str | None:
     here, there = round(unit.from_si(float(strip.value[at])), decimals + 1), round(unit.from_si(most), decimals + 1)
     if rule.side * (there - here) <= 0.0:
         return None
-    return f"a larger value, {there:.{decimals + 1}f} {rule.quantity.shown}, stands elsewhere under another limit"
+    way = "larger" if rule.side > 0.0 else "lower"
+    return f"a {way} value, {there:.{decimals + 1}f} {rule.quantity.shown}, stands elsewhere under another limit"

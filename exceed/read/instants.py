@@ -32,6 +32,7 @@ from exceed.read.stamps import (
 
 # s between rows: quicker than any accelerometer's recorder, slower than any log of a flight
 SHORTEST_STEP, LONGEST_STEP = 1e-6, 3600.0
+NO_ZONE = "no time zone is stated: taken as UTC"
 
 
 @dataclass(slots=True)
@@ -159,7 +160,7 @@ def _apart(parsed: Parsed, plan: ClockPlan, notes: list[str]) -> tuple[Array, fl
         return readings, base * 86400.0 - away, zone, "date_time"
     zone, away = _zone(plan, False, notes, (plan.day or 0) * 86400.0)
     if plan.day is None:
-        notes.append("the stamps have no date, and no date is stated: times are elapsed, UTC is not given")
+        _undated(notes)
         return readings, None, zone, "time_of_day"
     notes.append("the date is the preamble's")
     return readings, plan.day * 86400.0 - away, zone, "time_of_day"
@@ -201,11 +202,18 @@ def _stamped(survey: Survey, parsed: Parsed, plan: ClockPlan, notes: list[str]) 
         readings += (base % DAY) / 1e9
         if plan.day is None:
             if not any("date" in note for note in notes):
-                notes.append("the stamps have no date, and no date is stated: times are elapsed, UTC is not given")
+                _undated(notes)
             return readings, None, zone, kind
         notes.append("the date is the preamble's")
         return readings, plan.day * 86400.0 - away, zone, kind
     return readings, base / 1e9 - away, zone, kind
+
+
+def _undated(notes: list[str]) -> None:
+    """Times of day alone give no UTC, so that it was to be taken as such is no longer worth saying."""
+    if NO_ZONE in notes:
+        notes.remove(NO_ZONE)
+    notes.append("the stamps have no date, and no date is stated: times are elapsed, UTC is not given")
 
 
 def _zone(plan: ClockPlan, zoned: bool, notes: list[str], moment: float) -> tuple[str, float]:
@@ -225,7 +233,7 @@ def _zone(plan: ClockPlan, zoned: bool, notes: list[str], moment: float) -> tupl
             return plan.zone, place - plan.offset
         notes.append(f"the zone '{plan.zone}' is not understood: taken as UTC")
     else:
-        notes.append("no time zone is stated: taken as UTC")
+        notes.append(NO_ZONE)
     return "UTC, assumed", -plan.offset
 
 

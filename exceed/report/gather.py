@@ -106,6 +106,17 @@ def severity_rank(severity: str) -> int:
     return SEVERITIES.index(severity)
 
 
+def _surest(event: Event) -> str:
+    """The certainty with which an inspection is asked for: that of the surest crossed level that asks for it."""
+    least = severity_rank(event.task.severity) if event.task is not None else 0
+    words = [
+        certainty_word(level.probability)
+        for level in event.levels
+        if level.start is not None and least <= severity_rank(level.severity) < severity_rank(event.severity)
+    ]
+    return max([event.certainty, *words], key=certainty_rank)
+
+
 def inspection_rows(logs: list[LogOutcome], recordings: list[Dict]) -> list[Dict]:
     """What is due, one row per aeroplane, rule and task: to be decided where only undecided stretches ask for it."""
     rows: dict[tuple[str, str, str], Dict] = {}
@@ -117,6 +128,7 @@ def inspection_rows(logs: list[LogOutcome], recordings: list[Dict]) -> list[Dict
             for event, written in zip(ordered_events(found), shown, strict=True):
                 if event.task is None or not event.task.wanted:
                     continue
+                sure = _surest(event)
                 # logs without a registration may come from different aeroplanes
                 owner = plain_registration(log.registration) or f"log {log.path}"
                 row = rows.setdefault(
@@ -129,7 +141,7 @@ def inspection_rows(logs: list[LogOutcome], recordings: list[Dict]) -> list[Dict
                         "ata": event.task.ata,
                         "before": event.task.before,
                         "status": status,
-                        "certainty": event.certainty,
+                        "certainty": sure,
                         "rule": event.rule,
                         "events": [],
                     },
@@ -138,8 +150,8 @@ def inspection_rows(logs: list[LogOutcome], recordings: list[Dict]) -> list[Dict
                     row["events"].append(written["id"])
                 if status == "due":
                     row["status"] = "due"
-                if certainty_rank(event.certainty) > certainty_rank(row["certainty"]):
-                    row["certainty"] = event.certainty
+                if certainty_rank(sure) > certainty_rank(row["certainty"]):
+                    row["certainty"] = sure
     for (owner, rule, task), row in rows.items():
         text = "\x1f".join([owner, rule, task, row["events"][0]])
         row["id"] = hashlib.sha256(text.encode()).hexdigest()[:12]

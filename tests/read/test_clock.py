@@ -295,3 +295,10 @@ def test_a_clock_that_stands_still_is_an_error(tmp_path: Path) -> None:
         "its clock stands still: every row has the same time\n  expected: a time that goes on\n"
         "  do: name another clock in a channels file, or check the recorder's clock"
     )
+
+
+def test_times_of_day_without_a_date_are_not_said_to_be_utc(tmp_path: Path) -> None:
+    recording = log(tmp_path, simple(heading="Elapsed,NZ [g],IAS [kt],PALT [ft]", stamps=stamps("%H:%M:%S.@@@")))
+    assert recording.clock.start is None
+    assert any("UTC is not given" in note for note in recording.clock.notes)
+    assert "no time zone is stated: taken as UTC" not in recording.clock.notes
