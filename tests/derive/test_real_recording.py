@@ -1,4 +1,4 @@
-"""Derived quantities against what a real aeroplane's own systems reported (see tests/real/README.md)."""
+"""Derived quantities against what a real aeroplane's own systems reported (see tests/data/real/SOURCES.md)."""
 
 from __future__ import annotations
 
@@ -28,7 +28,7 @@ COLUMNS = {
 
 @lru_cache(maxsize=1)
 def recording() -> Recording:
-    table = pyarrow.csv.read_csv(Path(__file__).parents[1] / "real" / "parabolas.csv.gz")
+    table = pyarrow.csv.read_csv(Path(__file__).parents[1] / "data" / "real" / "parabolas.csv.gz")
     time = np.array(table["timestamp"].to_numpy(), dtype=float) / 1000.0
     time -= time[0]
     channels = {
