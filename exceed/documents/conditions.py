@@ -6,6 +6,7 @@ from typing import Annotated, Any, ClassVar
 
 from pydantic import Field, model_validator
 
+from exceed.core.phases import AIRBORNE, PHASES
 from exceed.documents.fields import (
     Any_,
     Faults,
@@ -21,21 +22,6 @@ from exceed.documents.fields import (
 )
 from exceed.documents.values import Value
 
-# words of the CAST/ICAO common taxonomy for phases of flight, see [CICTT]; `airborne` is a group
-PHASES = (
-    "standing",
-    "taxi",
-    "take-off",
-    "initial climb",
-    "climb",
-    "cruise",
-    "descent",
-    "manoeuvring",
-    "approach",
-    "landing",
-    "unknown",
-)
-AIRBORNE = "airborne"
 # take-off and landing are partly airborne
 _IN_AIRBORNE = frozenset(PHASES) - {"standing", "taxi"}
 
