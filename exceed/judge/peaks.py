@@ -55,6 +55,7 @@ _UP_95 = (1.38, 1.91, 2.04, 1.51, 0.00)  # to the upper end of the 95 % interval
 _DOWN_1 = (0.38, 0.14, 0.27)
 _DOWN_95 = (0.55, 0.53, 0.88)
 _HARMLESS = 2.0  # prediction errors up to so many standard uncertainties of the sensor leave a peak sized
+_DROWNED = 0.3  # so large a share of the sensor's error may lie between samples without being seen in the result
 _NOISE_BELOW = 2.2  # the lower end lies at least so many times the noise below the recorded extreme
 
 
@@ -158,6 +159,10 @@ def size_peak(
         spread = math.hypot(standard_uncertainty, known_noise if known_noise is not None else step)
         ratio = 1.0 if few else _ratio(u, v, place, known_noise or step)[1]
         return _open(side, seen, float(t[index]), spread, ratio, clipped, standard_uncertainty)
+    white = known_noise if known_noise is not None else step
+    between = float(bend(u, v)[place])
+    if noise is not None and math.hypot(between, white) <= _DROWNED * standard_uncertainty:
+        return _plain(side, seen, float(t[index]), between, white, standard_uncertainty)
     s = _spread(u, v, place, step, known_noise, standard_uncertainty)
     error, ratio = _ratio(u, v, place, s.noise)
     pace = interval * QUICKEST / quickest
@@ -168,7 +173,7 @@ def size_peak(
     up_features, down_features = _features(seen, s, error, ratio, pace)
     up_1, up_95 = float(np.dot(_UP_1, up_features)), float(np.dot(_UP_95, up_features))
     down_1, down_95 = float(np.dot(_DOWN_1, down_features)), float(np.dot(_DOWN_95, down_features))
-    room = float(bend(u, v)[place]) + 6.0 * s.noise
+    room = between + 6.0 * s.noise
     # never beyond what the quick filter allows, or the filter would hide what this would show
     estimate = min(s.middle, seen + room)
     up_95 = min(up_95, seen + room - estimate)
@@ -194,6 +199,17 @@ def size_peak(
         False,
         ratio,
         standard_uncertainty,
+    )
+
+
+def _plain(side: int, seen: float, time: float, between: float, white: float, uncertainty: float) -> Peak:
+    """A peak whose part between samples drowns in the sensor's error: the sample, and that error about it."""
+    spread = math.hypot(uncertainty, white)
+    below, above = _Z95 * spread, math.hypot(_Z95 * spread, between)
+    low, high = (seen - below, seen + above) if side > 0 else (-seen - above, -seen + below)
+    outward = math.hypot(_Z_OUT * spread, 0.8 * between)
+    return Peak(
+        side, side * seen, side * seen, low, high, time, spread, spread, outward, True, False, 0.0, uncertainty
     )
 
 
