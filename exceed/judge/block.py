@@ -15,7 +15,7 @@ Mask = NDArray[np.bool_]
 
 # samples on either side that a block sees beyond its own: crossings need one, the room between samples eight
 HALO = 8
-SIZE = 65536
+SIZE = 131072
 
 
 def gap_of(grid: Grid) -> float:

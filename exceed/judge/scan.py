@@ -181,7 +181,7 @@ def scan_rule(rule: Compiled, block: Block, uncertainty: float = 0.0) -> RuleSca
     release = rule.release if rule.release_share is None else rule.release_share * np.abs(limit)
 
     core = block.core
-    if passed[core].any() or _touches(passed, core):
+    if passed[core].any():
         where = _Places(block, known)
         for index, level in enumerate(rule.levels):
             excess = lowest if index == 0 else rule.excess(value, rule.threshold(level, limit))
@@ -204,10 +204,6 @@ def scan_rule(rule: Compiled, block: Block, uncertainty: float = 0.0) -> RuleSca
             scan.near += float(np.sum(block.shares[core][inside[core]]))
     _find_closest(scan, rule, block, live, value, limit)
     return scan
-
-
-def _touches(mask: Mask, core: slice) -> bool:
-    return bool(mask[core].any())
 
 
 class _Places:

@@ -76,7 +76,6 @@ def load(
         chosen = sorted([*chosen, *witnesses], key=lambda column: column.index)
     parsed = _parse(survey, chosen)
     count = parsed.rows
-    arrays.give_back(count)
     if count == 0:
         raise fail(survey.path, "holds no rows of data", do="check that the export is complete")
     raws, notes, rejected_cells = raw_channels(survey, chosen, parsed)

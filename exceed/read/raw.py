@@ -18,6 +18,8 @@ from exceed.read.look import Column, Survey
 from exceed.read.parse import Parsed, Reader
 from exceed.read.table import Layout, split
 
+# bytes converted before memory is given back to the system: each time costs as much as converting a column
+BETWEEN_RETURNS = 96 << 20
 OddCells = tuple[Column, NDArray[np.int64], list[str], str]
 
 
@@ -50,6 +52,7 @@ def raw_channels(
     odd: list[OddCells] = []
     repeats = 0
     made: list[RawChannel] = []
+    converted = 0
     last = not quiet and _cut_last_cell(survey, parsed)
     if last:
         notes.append("the last line has no end: its last cell may be cut and is not used")
@@ -62,7 +65,10 @@ def raw_channels(
                 values = values if values.flags.writeable else values.copy()
                 values[-1] = np.nan
             pieces.append(values)
-            arrays.give_back(len(values))
+            converted += values.nbytes
+            if converted > BETWEEN_RETURNS:
+                arrays.give_back(len(values))
+                converted = 0
             if cells is not None:
                 name = survey.columns[place].name
                 odd.append((survey.columns[place], cells[0], cells[1], name))
