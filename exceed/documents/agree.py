@@ -6,9 +6,10 @@ import itertools
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
+from exceed.core.phases import AIRBORNE
 from exceed.core.quantities import QUANTITIES, Quantity
 from exceed.documents import facts
-from exceed.documents.conditions import AIRBORNE, Condition, never, state_words
+from exceed.documents.conditions import Condition, never, state_words
 from exceed.documents.fields import Faults, Path, an, nearest
 from exceed.documents.limits import ConstantLimit, FactLimit, RelativeLimit, TableLimit
 from exceed.documents.order import levels_in_order

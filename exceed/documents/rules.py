@@ -20,11 +20,12 @@ from typing import Annotated, Any, ClassVar, Literal
 
 from pydantic import Field, ValidationInfo, model_validator
 
+from exceed.core.phases import AIRBORNE
 from exceed.core.quantities import QUANTITIES, Quantity, declared
 from exceed.core.units import UNITS
 from exceed.documents import facts
 from exceed.documents.aircraft import Aircraft
-from exceed.documents.conditions import AIRBORNE, RATE_OF, Condition, never, split_rate, state_words
+from exceed.documents.conditions import RATE_OF, Condition, never, split_rate, state_words
 from exceed.documents.facts import Fact
 from exceed.documents.fields import (
     Choice,
