@@ -139,7 +139,9 @@ def _say_failures(summary: dict[str, Any], shown: dict[str, Any]) -> None:
     if not shown["quiet"] and shown["json"] != "-":
         return
     if not summary["recordings"]:
-        Terminal.err("exceed: no log was found, so nothing was assessed")
+        left = len(summary.get("skipped") or ())
+        why = f"{left} {'file' if left == 1 else 'files'} left out, no log to read" if left else "no log was found"
+        Terminal.err(f"exceed: {why}, so nothing was assessed")
     for recording in summary["recordings"]:
         if recording["status"] == "failed":
             Terminal.err(f"exceed: {_problem_text(recording)}")
