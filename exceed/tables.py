@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import datetime
 import json
 import os
 import tempfile
@@ -127,8 +126,3 @@ def frame(trace: Trace, outcome: LogOutcome) -> Any:
     """The table as a pandas frame, for the Python API."""
     schema = table_schema(trace, outcome)
     return pa.Table.from_batches(batches(trace, schema), schema=schema).to_pandas()
-
-
-def utc(epoch: float) -> datetime.datetime:
-    """UTC seconds since 1970 as an instant."""
-    return datetime.datetime.fromtimestamp(epoch, datetime.UTC)

@@ -9,7 +9,6 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from exceed.core.phases import PHASES
 from exceed.core.quantities import QUANTITIES, TRACE_ORDER, Quantity, declared
 from exceed.core.recording import Array
 from exceed.core.trace import Grid, Trace
@@ -105,11 +104,6 @@ def trace_blocks(trace: Trace, columns: list[Column] | None = None, size: int = 
             inside = (place >= 0) & (when <= ends[np.maximum(place, 0)])
             flight = np.where(inside, numbers[np.maximum(place, 0)], 0)
         yield Block(start, stop, when, flight, trace.track.phases.at(when), values)
-
-
-def phase_names() -> tuple[str, ...]:
-    """Words that the codes of `Block.phase` stand for."""
-    return PHASES
 
 
 def methods_of(trace: Trace) -> list[dict[str, Any]]:

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import replace
 from typing import Literal
 
 import numpy as np
@@ -140,20 +139,6 @@ def is_undecided(peak: Peak, level: float) -> bool:
     hides = _ends(peak, False)[-1] - peak.side * peak.recorded >= WORTH_ASKING * peak.standard_uncertainty
     sure = probability_beyond(peak, level) >= POSSIBLE and hidden_beyond(peak, level) >= POSSIBLE
     return peak.sized and hides and sure
-
-
-def _opened(peak: Peak) -> Peak:
-    spread = peak.down if peak.side > 0 else peak.up
-    return replace(
-        peak,
-        estimate=peak.recorded,
-        low=peak.recorded - _Z95 * spread if peak.side > 0 else None,
-        high=peak.recorded + _Z95 * spread if peak.side < 0 else None,
-        down=spread,
-        up=spread,
-        outward=_SCORES[4] * spread,
-        sized=False,
-    )
 
 
 # --- what may hide between samples ------------------------------------------------------------------------------------

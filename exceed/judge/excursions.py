@@ -206,15 +206,6 @@ def _unbroken(runs: Runs, breaks: Index) -> Mask:
     return np.asarray(after == before)
 
 
-def parts(runs: Runs, events: Runs) -> Index:
-    """(k,) which event each stretch lies in; -1 for none. Both by their samples."""
-    if len(events) == 0:
-        return np.full(len(runs), -1, dtype=np.int64)
-    home = np.searchsorted(events.first, runs.first, side="right") - 1
-    inside = (home >= 0) & (runs.last <= events.last[np.maximum(home, 0)])
-    return np.where(inside, home, -1).astype(np.int64)
-
-
 def enough_in_window(start: Array, flight: Index, window: float | None, least: int) -> list[Index]:
     """Groups of stretches of which `least` begin within `window` s (None: in one flight), wherever the window lies.
 

@@ -7,7 +7,6 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from exceed.core.intervals import runs
 from exceed.core.recording import Array
 
 SEAM_LEAST = 60.0
@@ -222,10 +221,3 @@ def _parted(
     jumps[back + 1] = -steps[back] + seam
     moved = readings + np.cumsum(jumps)
     return moved, tuple((float(moved[at]), float(moved[at + 1])) for at in back.tolist())
-
-
-def gaps_without(rows: NDArray[np.int64], count: int) -> NDArray[np.int64]:
-    """(k, 2) stretches of rows of the file that were left out."""
-    mask = np.ones(count, bool)
-    mask[rows] = False
-    return runs(mask)

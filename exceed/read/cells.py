@@ -84,12 +84,6 @@ def is_number(cell: str, decimal: str = ".") -> bool:
     return bool((NUMBER_DOT if decimal == "." else NUMBER_COMMA).fullmatch(text))
 
 
-def is_stamp(cell: str) -> bool:
-    """A date, a time of day, or both."""
-    text = cell.strip()
-    return bool(STAMP.fullmatch(text)) and not is_number(text)
-
-
 def form(cell: str) -> str:
     """number, stamp, empty or word: enough to tell data from headings."""
     if is_missing(cell):

@@ -3,21 +3,10 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
-from typing import Protocol
 
 from exceed.read.container import Source
 from exceed.read.stamps import ClockPlan
 from exceed.read.table import Layout
-
-
-class ChannelEntry(Protocol):
-    """One channel of a channels file."""
-
-    column: str
-    quantity: str
-    unit: str | None
-    positive: str | None
-    datum: str | None
 
 
 @dataclass(frozen=True, slots=True)

@@ -10,13 +10,11 @@ import numpy as np
 
 from exceed.core.quantities import QUANTITIES
 from exceed.core.recording import Array, Channel, Index, Rejected, Unresolved, frozen, median_interval
-from exceed.core.units import UNITS
 from exceed.read import evidence, probe, quality, rates
 from exceed.read.instants import Instants
 from exceed.read.look import Column, Survey
 from exceed.read.measure import resolution
 from exceed.read.raw import OddCells, RawChannel
-from exceed.read.recognise import QUESTIONS, kind_of
 
 
 @dataclass(slots=True)
@@ -283,14 +281,3 @@ def _moment(value: Any, time: Instants, default: float) -> float:
         return default
     stamp = value.timestamp() if hasattr(value, "timestamp") else None
     return default if stamp is None else stamp - time.start
-
-
-def unit_question(column: Column, declared: Mapping[str, str]) -> str:
-    """The question that a channels file puts for an open unit."""
-    return QUESTIONS.get(kind_of(column.quantity or "", declared), "Which unit is it in?")
-
-
-def scale_of(unit: str) -> tuple[float, float]:
-    """(factor, offset) to SI."""
-    row = UNITS[unit]
-    return row.factor, row.offset
