@@ -18,7 +18,7 @@ from exceed.core.trace import Grid, Trace
 from exceed.judge import certainty
 from exceed.judge.block import SIZE, Block
 from exceed.judge.compiled import Compiled
-from exceed.judge.excursions import Edges, Index, Runs, find_edges, pair
+from exceed.judge.excursions import CUT_END, CUT_START, Edges, Index, Runs, find_edges, pair
 
 Mask = NDArray[np.bool_]
 
@@ -231,8 +231,6 @@ class _Places:
 
     def _placed(self, edges: Edges, first: bool) -> Edges:
         """Back to grid places; a stretch at the recording's very first or last sample is cut by that."""
-        from exceed.judge.excursions import CUT_END, CUT_START
-
         place = self.index[edges.place] + self.block.offset
         cut = edges.cut.copy()
         cut[place == (0 if first else self.block.whole - 1)] = CUT_START if first else CUT_END
